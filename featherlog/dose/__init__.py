@@ -1,0 +1,1 @@
+"""The dose that matched edges add up to along the junction axis, and its figures of merit."""

@@ -1,0 +1,1 @@
+"""Frames, rotations and field edge planes: where a jaw's edge lies in the patient."""

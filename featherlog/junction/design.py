@@ -1,0 +1,222 @@
+"""The junction design of one course: what a physicist decides before anything is solved.
+
+Lengths in cm, angles in degrees, doses in Gy. Points are in patient axes (DICOM): x to the
+patient's left, y to posterior, z to superior.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from datetime import date  # noqa: TC003 - msgspec reads the annotations at run time
+from enum import StrEnum
+
+from featherlog.geometry.frames import PatientPosition, Point  # noqa: TC001 - as above
+
+
+class Technique(StrEnum):
+    """How the match at a junction is made."""
+
+    SKIN_GAP = "skin gap"
+    HALF_BEAM = "half-beam"
+
+
+class MovedBy(StrEnum):
+    """What moves a field when the junction moves: its jaws, or the table under it."""
+
+    JAWS = "jaws"
+    COUCH = "couch"
+
+
+class End(StrEnum):
+    """The two ends of a field along the junction axis."""
+
+    SUPERIOR = "superior"
+    INFERIOR = "inferior"
+
+
+class Side(StrEnum):
+    """The side of the patient on which a beam enters."""
+
+    ANTERIOR = "anterior"
+    POSTERIOR = "posterior"
+    LEFT = "left"
+    RIGHT = "right"
+
+
+class Pattern(StrEnum):
+    """How positions are assigned to fractions."""
+
+    BLOCKS = "blocks"
+    DAILY = "daily"
+    LIST = "list"
+    NO_SHIFT = "no shift"
+
+
+class Weekday(StrEnum):
+    """Days of the week, in calendar order."""
+
+    MONDAY = "Monday"
+    TUESDAY = "Tuesday"
+    WEDNESDAY = "Wednesday"
+    THURSDAY = "Thursday"
+    FRIDAY = "Friday"
+    SATURDAY = "Saturday"
+    SUNDAY = "Sunday"
+
+
+@dataclass(frozen=True, slots=True)
+class Phase:
+    """Consecutive fractions with one prescription."""
+
+    name: str
+    fractions: int
+    dose_per_fraction_gy: float
+
+
+@dataclass(frozen=True, slots=True)
+class Beam:
+    """One beam at its position A geometry.
+
+    ``side_jaws_cm`` are the signed IEC positions of the two jaws that do not form junction edges.
+    ``weight`` is the beam's part of its field's dose; the weights of a field sum to 1.
+    """
+
+    name: str
+    energy: str
+    gantry_deg: float
+    collimator_deg: float
+    couch_deg: float
+    isocentre_cm: Point
+    ssd_cm: float
+    side_jaws_cm: tuple[float, float]
+    weight: float
+
+
+@dataclass(frozen=True, slots=True)
+class Border:
+    """The outer end of the first or last field: the edge passes through this point.
+
+    A ``held`` border stays in the patient; a free one travels with the isocentre.
+    """
+
+    point_cm: Point
+    held: bool
+
+
+@dataclass(frozen=True, slots=True)
+class Reach:
+    """An outer end given by its jaw: distance from the beam axis at the isocentre plane.
+
+    Positive away from the axis on the field's own side, negative across it.
+    """
+
+    reach_cm: float
+
+
+@dataclass(frozen=True, slots=True)
+class Field:
+    """One treated region. ``follows`` names the junction whose offset the table follows."""
+
+    name: str
+    beams: tuple[Beam, ...]
+    moved_by: MovedBy
+    follows: str | None
+
+
+@dataclass(frozen=True, slots=True)
+class CriticalStructure:
+    """A structure whose dose at the junction is reported, by its depth below the entrance skin."""
+
+    name: str
+    depth_cm: float
+
+
+@dataclass(frozen=True, slots=True)
+class Junction:
+    """Where the inferior edge of one field meets the superior edge of the next.
+
+    ``skin_point_cm`` is the point on the entrance skin straight above the match point; depths are
+    measured from it into the patient. Exactly one of ``match_depth_cm`` and ``skin_gap_cm`` is
+    given. ``thickness_cm`` puts the opposite skin; ``lateral_limits_cm`` are the two coordinates
+    across the axis at which the mismatch is stated. ``reference_dose_gy`` is the whole course's dose
+    that every percent at this junction names.
+    """
+
+    name: str
+    technique: Technique
+    entrance: Side
+    skin_point_cm: Point
+    match_depth_cm: float | None
+    skin_gap_cm: float | None
+    thickness_cm: float | None
+    lateral_limits_cm: tuple[float, float]
+    critical: CriticalStructure | None
+    report_depths_cm: tuple[float, ...]
+    reference_dose_gy: float
+    gap_tolerance_cm: float
+    skin_slope_deg: float | None
+
+
+@dataclass(frozen=True, slots=True)
+class Position:
+    """One of the places the junctions are put.
+
+    ``offset_cm`` holds each junction's signed move from position A, positive to superior;
+    ``meterset_mu`` each beam's meterset at this position.
+    """
+
+    label: str
+    offset_cm: dict[str, float]
+    meterset_mu: dict[str, float]
+
+
+@dataclass(frozen=True, slots=True)
+class SequencePattern:
+    """The rule that assigns positions to fractions, and the treatment days.
+
+    ``block_fractions`` belongs to blocks, ``positions`` is the order for blocks and daily cycling,
+    the full assignment for a list, and the single position for no shift.
+    """
+
+    pattern: Pattern
+    positions: tuple[str, ...]
+    block_fractions: int | None
+    start_date: date
+    weekdays: tuple[Weekday, ...]
+    closed_dates: tuple[date, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Course:
+    """The whole design of one patient's matched-field treatment.
+
+    Fields run from superior to inferior and junction k lies between field k and field k + 1, so
+    there is one junction fewer than fields. ``identifiers`` holds the two identifiers by name.
+    """
+
+    key: str
+    patient_name: str
+    identifiers: dict[str, str]
+    site: str
+    plan_label: str
+    note: str
+    patient_position: PatientPosition
+    machine: str
+    fractions_a_day: int
+    phases: tuple[Phase, ...]
+    fields: tuple[Field, ...]
+    superior_border: Border | Reach
+    inferior_border: Border | Reach
+    junctions: tuple[Junction, ...]
+    positions: tuple[Position, ...]
+    sequence: SequencePattern
+
+    @property
+    def fractions(self) -> int:
+        """The prescribed number of fractions, all phases together."""
+        return sum(phase.fractions for phase in self.phases)
+
+    @property
+    def beams(self) -> tuple[Beam, ...]:
+        """Every beam, in field order."""
+        return tuple(beam for field in self.fields for beam in field.beams)

@@ -1,0 +1,160 @@
+"""What a solved design says, ready to be stored, printed and delivered.
+
+These records hold no behaviour beyond look-ups and import no numerical library, so that the
+console can read an approved plan without one. Lengths in cm, angles in degrees, IEC 61217 signs.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from featherlog.junction.machine import Jaw  # noqa: TC001 - msgspec reads annotations at run time
+
+Triple = tuple[float, float, float]
+
+
+@dataclass(frozen=True, slots=True)
+class EdgeLine:
+    """A field edge as a plane in patient axes: every r with normal · r = offset_cm."""
+
+    normal: Triple
+    offset_cm: float
+
+    def z_at(self, x_cm: float, y_cm: float) -> float:
+        """Return the edge coordinate: the plane's z (cm) at lateral x and height y."""
+        return (self.offset_cm - self.normal[0] * x_cm - self.normal[1] * y_cm) / self.normal[2]
+
+
+@dataclass(frozen=True, slots=True)
+class BeamSetting:
+    """One beam at one position.
+
+    ``jaw_cm`` is what the machine is set to, ``exact_jaw_cm`` what the geometry asks for before
+    rounding. ``superior_jaw`` and ``inferior_jaw`` name the jaws that form the two ends, and
+    ``superior_edge`` and ``inferior_edge`` are their planes after rounding.
+    """
+
+    beam: str
+    energy: str
+    weight: float
+    gantry_deg: float
+    collimator_deg: float
+    couch_deg: float
+    isocentre_cm: Triple
+    ssd_cm: float
+    meterset_mu: float
+    jaw_cm: dict[Jaw, float]
+    exact_jaw_cm: dict[Jaw, float]
+    superior_jaw: Jaw
+    inferior_jaw: Jaw
+    superior_edge: EdgeLine
+    inferior_edge: EdgeLine
+
+
+@dataclass(frozen=True, slots=True)
+class FieldSetting:
+    """One field at one position. ``moved_cm`` is its isocentre's move from position A (+ superior).
+
+    ``table_from_a_cm`` is the table move from position A: lateral, longitudinal, vertical.
+    ``table_from_first_field_cm`` is the table move from the first field's isocentre to this one's.
+    """
+
+    field: str
+    moved_by: str
+    moved_cm: float
+    table_from_a_cm: Triple
+    table_from_first_field_cm: Triple
+    beams: tuple[BeamSetting, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class SkinGap:
+    """The gap between the light-field edges on one skin side (+ gap, - overlap).
+
+    ``superior_part_cm`` and ``inferior_part_cm`` are each field's part, measured from the match
+    point's level; ``expected_cm`` is their sum after rounding, ``exact_cm`` before.
+    """
+
+    side: str
+    exact_cm: float
+    expected_cm: float
+    superior_part_cm: float
+    inferior_part_cm: float
+
+
+@dataclass(frozen=True, slots=True)
+class Mismatch:
+    """The mismatch at one point, worst over beam pairs, before and after rounding (+ gap)."""
+
+    place: str
+    x_cm: float
+    y_cm: float
+    exact_cm: float
+    rounded_cm: float
+
+
+@dataclass(frozen=True, slots=True)
+class JunctionSetting:
+    """One junction at one position.
+
+    ``rounding_cm`` is the worst change of any beam pair's mismatch that rounding makes.
+    ``three_field_overlap_cm`` is the length at the critical depth covered by more beams than
+    either field has, and ``gap_without_overlap_cm`` the skin gap that would remove it.
+    """
+
+    junction: str
+    offset_cm: float
+    match_point_cm: Triple
+    match_depth_cm: float
+    skin_gaps: tuple[SkinGap, ...]
+    mismatches: tuple[Mismatch, ...]
+    rounding_cm: float
+    three_field_overlap_cm: float | None
+    gap_without_overlap_cm: float | None
+
+
+@dataclass(frozen=True, slots=True)
+class PositionSettings:
+    """Everything to set at one position."""
+
+    label: str
+    fields: tuple[FieldSetting, ...]
+    junctions: tuple[JunctionSetting, ...]
+
+    def junction(self, name: str) -> JunctionSetting:
+        """Return the named junction's setting."""
+        return next(junction for junction in self.junctions if junction.junction == name)
+
+    def meterset(self, beam: str) -> float:
+        """Return the named beam's planned meterset (MU)."""
+        return next(b.meterset_mu for f in self.fields for b in f.beams if b.beam == beam)
+
+
+@dataclass(frozen=True, slots=True)
+class PlannedFraction:
+    """One prescribed fraction: its number in the course, phase, dose and position."""
+
+    number: int
+    phase: str
+    dose_gy: float
+    position: str
+
+
+@dataclass(frozen=True, slots=True)
+class Plan:
+    """A solved design: settings of every position, the fractions, and what to be warned of."""
+
+    positions: tuple[PositionSettings, ...]
+    fractions: tuple[PlannedFraction, ...]
+    warnings: tuple[str, ...]
+
+    def position(self, label: str) -> PositionSettings:
+        """Return the settings of the labelled position; ``KeyError`` where there is none."""
+        for position in self.positions:
+            if position.label == label:
+                return position
+        raise KeyError(label)
+
+    def fraction(self, number: int) -> PlannedFraction:
+        """Return the planned fraction of that number, counted from 1."""
+        return self.fractions[number - 1]

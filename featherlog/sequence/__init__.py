@@ -1,0 +1,1 @@
+"""Which position each fraction gets, on which days, and what differs in the record."""

@@ -1,0 +1,188 @@
+"""The therapist's day: what to set for one fraction, and the list of courses due."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from featherlog.views.common import (  # noqa: TC001 - msgspec reads annotations at run time
+    DepartureLine,
+    Heading,
+)
+
+
+@dataclass(frozen=True, slots=True)
+class JawView:
+    """One jaw. ``edge`` is superior, inferior or side; ``previous_cm`` None at the first fraction.
+
+    ``words`` says which way the edge it forms moves in the patient, empty when it stays.
+    """
+
+    jaw: str
+    edge: str
+    cm: float
+    previous_cm: float | None
+    words: str
+
+
+@dataclass(frozen=True, slots=True)
+class BeamView:
+    """One beam to set. ``to_deliver_mu`` is what remains of ``planned_mu`` in this fraction."""
+
+    beam: str
+    energy: str
+    gantry_deg: float
+    collimator_deg: float
+    couch_deg: float
+    ssd_cm: float
+    planned_mu: float
+    delivered_mu: float
+    to_deliver_mu: float
+    jaws: tuple[JawView, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class TableMoveView:
+    """A table move in IEC 61217 signs and in words; ``words`` is empty when nothing moves."""
+
+    lateral_cm: float
+    longitudinal_cm: float
+    vertical_cm: float
+    words: tuple[str, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class FieldView:
+    """One field to set. ``since_last`` is its isocentre's table move since the last fraction.
+
+    ``from_field_before`` is the table move from the field treated before it on the same day, None
+    for the first field.
+    """
+
+    field: str
+    moved_by: str
+    since_last: TableMoveView
+    from_field_before: TableMoveView | None
+    beams: tuple[BeamView, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class GapView:
+    """The gap to measure on one skin side (+ gap, - overlap) and the range that is accepted."""
+
+    side: str
+    expected_cm: float
+    tolerance_cm: float
+
+
+@dataclass(frozen=True, slots=True)
+class EdgeView:
+    """One field edge for the side view: axis coordinate at the entrance skin and at depth."""
+
+    field: str
+    beam: str
+    z_at_skin_cm: float
+    z_at_depth_cm: float
+
+
+@dataclass(frozen=True, slots=True)
+class SideView:
+    """The edges that meet at a junction, seen from the side.
+
+    The entrance skin is at depth 0; edges are drawn from there to ``depth_cm``.
+    ``previous_edges`` are those of the fraction before, empty when nothing moved.
+    """
+
+    entrance: str
+    depth_cm: float
+    match_depth_cm: float
+    match_z_cm: float
+    critical_name: str
+    critical_depth_cm: float | None
+    superior_edges: tuple[EdgeView, ...]
+    inferior_edges: tuple[EdgeView, ...]
+    previous_edges: tuple[EdgeView, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class JunctionView:
+    """One junction today. ``moves_cm`` is its move since the last fraction (+ toward the head)."""
+
+    junction: str
+    technique: str
+    superior_field: str
+    inferior_field: str
+    offset_cm: float
+    moves_cm: float
+    words: str
+    gaps: tuple[GapView, ...]
+    side_view: SideView
+
+
+@dataclass(frozen=True, slots=True)
+class NextShift:
+    """The next fraction whose position differs, with its projected date (ISO 8601)."""
+
+    fraction: int
+    position: str
+    projected_date: str
+
+
+@dataclass(frozen=True, slots=True)
+class DayView:
+    """One fraction of one course, as the therapist needs it.
+
+    ``status`` is ``ready``, ``complete`` (nothing left to treat) or ``stop``; ``stop_reasons`` say
+    why and whom to call. ``shift`` is ``yes``, ``no`` or ``first`` (there is no earlier fraction).
+    ``part_delivered`` is true when this fraction was begun and its remainder is locked to
+    ``position``. ``page_code`` names this page's state of the course.
+    """
+
+    heading: Heading
+    status: str
+    stop_reasons: tuple[str, ...]
+    fraction: int
+    fractions: int
+    phase: str
+    dose_gy: float
+    projected_date: str
+    position: str
+    previous_position: str | None
+    shift: str
+    shift_words: str
+    part_delivered: bool
+    junctions: tuple[JunctionView, ...]
+    fields: tuple[FieldView, ...]
+    table_reference: str
+    open_departures: tuple[DepartureLine, ...]
+    next_shift: NextShift | None
+    page_code: str
+    ledger_head: str
+    printed_at: str
+    caution: str
+
+
+@dataclass(frozen=True, slots=True)
+class DueLine:
+    """One course in the list of a day."""
+
+    course: str
+    patient_name: str
+    machine: str
+    fraction: int
+    fractions: int
+    position: str
+    shift: str
+    due: str
+    projected_date: str
+    attention: str
+
+
+@dataclass(frozen=True, slots=True)
+class DueList:
+    """The courses due on a date, on one machine or all."""
+
+    date: str
+    machine: str
+    lines: tuple[DueLine, ...]
+    demo: bool
+    caution: str
