@@ -33,7 +33,9 @@ class RefusedError(FeatherlogError):
     """A rule of safe practice stops this step before the beam; nothing was written."""
 
     exit_code: ClassVar[int] = 4
-    meaning: ClassVar[str] = "A rule of safe practice stops this step; the message says whom to call."
+    meaning: ClassVar[str] = (
+        "A rule of safe practice or a machine limit stops this step; the message says why."
+    )
 
 
 class NotFoundError(FeatherlogError):

@@ -30,7 +30,7 @@ STILL_CM = 5e-4
 
 
 def signed(value_cm: float, digits: int = 1) -> str:
-    """Return a length with its sign always written and a true minus: ``+1.0``, ``−0.5``, ``0.0``."""
+    """Return a length with its sign written and a true minus: ``+1.0``, ``−0.5``, ``0.0``."""
     text = f"{value_cm:+.{digits}f}"
     if float(text) == 0:
         return f"{0:.{digits}f}"
@@ -52,7 +52,7 @@ def junction_move(name: str, move_cm: float) -> str:
 
 
 _TABLE_WORDS = (
-    ("lateral", "to the right of a viewer facing the gantry", "to the left of a viewer facing the gantry"),
+    ("lateral", "to the right, seen facing the gantry", "to the left, seen facing the gantry"),
     ("longitudinal", "toward the gantry", "away from the gantry"),
     ("vertical", "up", "down"),
 )

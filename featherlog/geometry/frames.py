@@ -8,31 +8,24 @@ This is the only module that holds a sign convention. Lengths in cm, angles in d
 
 from __future__ import annotations
 
-from enum import StrEnum
 from typing import TYPE_CHECKING
 
 import numpy as np
 
+from featherlog.geometry.patient import PatientPosition, Point
+
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
-Point = tuple[float, float, float]
-"""A point or displacement in patient axes, cm."""
-
-
-class PatientPosition(StrEnum):
-    """Patient Position (0018,5100) as in DICOM: head or feet first, supine or prone."""
-
-    HFS = "HFS"
-    HFP = "HFP"
-    FFS = "FFS"
-    FFP = "FFP"
-
-    @property
-    def head_first(self) -> bool:
-        """Tell whether the head points toward the gantry."""
-        return self in (PatientPosition.HFS, PatientPosition.HFP)
-
+__all__ = [
+    "PatientPosition",
+    "Point",
+    "patient_from_beam",
+    "patient_from_table",
+    "rotation_y",
+    "rotation_z",
+    "table_move",
+]
 
 # Rows: patient x, y, z. Columns: table-top x, y, z.
 _PATIENT_FROM_TABLE = {

@@ -10,7 +10,7 @@ from dataclasses import dataclass
 from datetime import date  # noqa: TC003 - msgspec reads the annotations at run time
 from enum import StrEnum
 
-from featherlog.geometry.frames import PatientPosition, Point  # noqa: TC001 - as above
+from featherlog.geometry.patient import PatientPosition, Point  # noqa: TC001 - as above
 
 
 class Technique(StrEnum):
@@ -115,7 +115,10 @@ class Reach:
 
 @dataclass(frozen=True, slots=True)
 class Field:
-    """One treated region. ``follows`` names the junction whose offset the table follows."""
+    """One treated region.
+
+    ``follows`` names the junction whose offset the table follows; None when moved by the jaws.
+    """
 
     name: str
     beams: tuple[Beam, ...]
@@ -138,8 +141,8 @@ class Junction:
     ``skin_point_cm`` is the point on the entrance skin straight above the match point; depths are
     measured from it into the patient. Exactly one of ``match_depth_cm`` and ``skin_gap_cm`` is
     given. ``thickness_cm`` puts the opposite skin; ``lateral_limits_cm`` are the two coordinates
-    across the axis at which the mismatch is stated. ``reference_dose_gy`` is the whole course's dose
-    that every percent at this junction names.
+    across the axis at which the mismatch is stated. ``reference_dose_gy`` is the whole course's
+    dose that every percent at this junction names.
     """
 
     name: str

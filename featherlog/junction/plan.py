@@ -8,21 +8,11 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from featherlog.geometry.planes import EdgePlane
 from featherlog.junction.machine import Jaw  # noqa: TC001 - msgspec reads annotations at run time
 
 Triple = tuple[float, float, float]
-
-
-@dataclass(frozen=True, slots=True)
-class EdgeLine:
-    """A field edge as a plane in patient axes: every r with normal · r = offset_cm."""
-
-    normal: Triple
-    offset_cm: float
-
-    def z_at(self, x_cm: float, y_cm: float) -> float:
-        """Return the edge coordinate: the plane's z (cm) at lateral x and height y."""
-        return (self.offset_cm - self.normal[0] * x_cm - self.normal[1] * y_cm) / self.normal[2]
+EdgeLine = EdgePlane
 
 
 @dataclass(frozen=True, slots=True)

@@ -1,0 +1,111 @@
+"""What a machine cannot do, named with the limit and the value, and the nearest offset it can."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from featherlog.geometry.beams import GeometryError
+from featherlog.junction.edges import place_rounded
+from featherlog.junction.machine import Jaw
+
+if TYPE_CHECKING:
+    from collections.abc import Callable, Iterator
+
+    from featherlog.junction.design import Course, Position
+    from featherlog.junction.edges import Chain, PlacedBeam
+    from featherlog.junction.machine import Machine, Range
+
+# How far and how finely the nearest admissible offset is looked for, cm.
+_SEARCH_CM = 15.0
+_COARSE_CM = 0.25
+_FINE_CM = 0.01
+
+
+def limit_faults(machine: Machine, chain: Chain) -> tuple[str, ...]:
+    """Return one sentence for every limit that the placed fields pass."""
+    return tuple(
+        fault
+        for field in chain
+        for beam in field.beams
+        for fault in (*_jaw_faults(machine, beam), *_angle_faults(machine, beam))
+    )
+
+
+def nearest_admissible(
+    course: Course, machine: Machine, depths: dict[str, float], position: Position
+) -> str:
+    """Say which offset nearest to the asked one the machine can deliver.
+
+    All junctions are moved together, outward from the asked offsets in both directions, and the
+    boundary is then narrowed to 0.01 cm on the admissible side.
+    """
+
+    def admissible(shift_cm: float) -> bool:
+        offsets = {name: value + shift_cm for name, value in position.offset_cm.items()}
+        try:
+            chain = place_rounded(course, machine, depths, offsets)
+        except GeometryError:
+            return False
+        return not limit_faults(machine, chain)
+
+    steps = round(_SEARCH_CM / _COARSE_CM)
+    for count in range(1, steps + 1):
+        for sign in (-1, 1):
+            if admissible(sign * count * _COARSE_CM):
+                shift = _narrow(admissible, sign, count)
+                return f"the nearest admissible offset is {_offsets(position, shift)}"
+    return f"no offset within {_SEARCH_CM:.0f} cm of it is admissible"
+
+
+def _narrow(admissible: Callable[[float], bool], sign: int, count: int) -> float:
+    fine = round(_COARSE_CM / _FINE_CM)
+    for step in range(fine):
+        shift = sign * ((count - 1) * _COARSE_CM + (step + 1) * _FINE_CM)
+        if admissible(shift):
+            return shift
+    return sign * count * _COARSE_CM
+
+
+def _offsets(position: Position, shift_cm: float) -> str:
+    values = {name: value + shift_cm for name, value in position.offset_cm.items()}
+    if len(set(values.values())) == 1:
+        return f"{next(iter(values.values())):+.2f} cm"
+    return ", ".join(f"{name} {value:+.2f} cm" for name, value in values.items())
+
+
+def _jaw_faults(machine: Machine, placed: PlacedBeam) -> Iterator[str]:
+    settings = placed.jaws
+    for jaw, value in settings.items():
+        travel = machine.jaw_travel_cm[jaw]
+        if not travel.holds(value):
+            yield (
+                f"jaw {jaw} of beam {placed.beam.name} would stand at {value:+.2f} cm, beyond its "
+                f"travel {_range(travel)} cm"
+            )
+    for low, high in ((Jaw.X1, Jaw.X2), (Jaw.Y1, Jaw.Y2)):
+        opening = settings[high] - settings[low]
+        if opening <= 0:
+            yield f"jaws {low} and {high} of beam {placed.beam.name} would close on each other"
+        elif opening > machine.largest_opening_cm + 1e-9:
+            yield (
+                f"jaws {low} and {high} of beam {placed.beam.name} would open {opening:.2f} cm, "
+                f"wider than {machine.largest_opening_cm:.2f} cm"
+            )
+
+
+def _angle_faults(machine: Machine, placed: PlacedBeam) -> Iterator[str]:
+    beam = placed.beam
+    for name, value, allowed in (
+        ("gantry", beam.gantry_deg, machine.gantry_deg),
+        ("collimator", beam.collimator_deg, machine.collimator_deg),
+        ("couch", beam.couch_deg, machine.couch_deg),
+    ):
+        if not allowed.holds(value):
+            yield (
+                f"{name} angle of beam {beam.name} is {value:.1f} degrees, outside "
+                f"{_range(allowed)} degrees"
+            )
+
+
+def _range(allowed: Range) -> str:
+    return f"{allowed.low:+.1f} to {allowed.high:+.1f}"

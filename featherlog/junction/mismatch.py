@@ -1,0 +1,141 @@
+"""What two field edges leave between them: skin gaps, mismatch, overlap of more than two beams.
+
+Lengths in cm along the junction axis, + gap and - overlap.
+"""
+
+from __future__ import annotations
+
+from itertools import pairwise, product
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from featherlog.junction.edges import pair_mismatches, stated_points, worst
+from featherlog.junction.plan import JunctionSetting, Mismatch, SkinGap
+from featherlog.junction.points import OPPOSITE, OUTWARD, point_at_depth
+
+if TYPE_CHECKING:
+    from featherlog.geometry.patient import Point
+    from featherlog.junction.design import Junction, Side
+    from featherlog.junction.edges import PlacedBeam, PlacedField
+
+Pair = tuple["PlacedField", "PlacedField"]
+
+# A beam lights a skin side when it meets it at more than about six degrees.
+_LEAST_LIGHT = 0.1
+
+
+def junction_setting(
+    junction: Junction,
+    *,
+    offset_cm: float,
+    match_point_cm: Point,
+    match_depth_cm: float,
+    exact: Pair,
+    rounded: Pair,
+) -> JunctionSetting:
+    """Return everything to be said of one junction at one position.
+
+    ``exact`` and ``rounded`` are the superior and inferior field before and after rounding.
+    """
+    overlap = three_field_overlap(junction, match_point_cm[2], rounded)
+    gaps = skin_gaps(junction, match_point_cm[2], exact, rounded)
+    entrance = next((gap.expected_cm for gap in gaps if gap.side == junction.entrance.value), None)
+    removed = None if overlap is None or entrance is None else entrance + overlap
+    points = stated_points(junction, match_depth_cm, offset_cm)
+    return JunctionSetting(
+        junction=junction.name,
+        offset_cm=offset_cm,
+        match_point_cm=match_point_cm,
+        match_depth_cm=match_depth_cm,
+        skin_gaps=gaps,
+        mismatches=tuple(
+            Mismatch(
+                name,
+                point[0],
+                point[1],
+                worst(pair_mismatches(*exact, point)),
+                worst(pair_mismatches(*rounded, point)),
+            )
+            for name, across in points.items()
+            for point in across
+        ),
+        rounding_cm=_rounding(points, exact, rounded),
+        three_field_overlap_cm=overlap,
+        gap_without_overlap_cm=removed,
+    )
+
+
+def entrance_gap(junction: Junction, upper: PlacedField, lower: PlacedField) -> float:
+    """Return the gap (cm) on the entrance skin between the beams that light it.
+
+    For beams on one side at depth d it is d·(j1/SAD1 + j2/SAD2), the textbook gap; here it comes
+    from the edge planes. Zero where no pair of beams lights that skin.
+    """
+    z = junction.skin_point_cm[2]
+    gap = _gap(junction, junction.entrance, z, (upper, lower))
+    return 0.0 if gap is None else gap[0] + gap[1]
+
+
+def skin_gaps(
+    junction: Junction, match_z_cm: float, exact: Pair, rounded: Pair
+) -> tuple[SkinGap, ...]:
+    """Return the gap on the entrance skin and, where it is known, on the opposite skin."""
+    gaps = []
+    for side in (junction.entrance, OPPOSITE[junction.entrance]):
+        before = _gap(junction, side, match_z_cm, exact)
+        after = _gap(junction, side, match_z_cm, rounded)
+        if before is not None and after is not None:
+            gaps.append(SkinGap(side.value, sum(before), sum(after), *after))
+    return tuple(gaps)
+
+
+def three_field_overlap(junction: Junction, match_z_cm: float, pair: Pair) -> float | None:
+    """Return the length (cm) at the critical depth that more beams cover than either field has.
+
+    For opposed pairs of lengths L1 and L2 whose edges all meet at depth d it is, at depth z,
+    (L1 - L2)(z - d)/(2·SSD) (Khan, The Physics of Radiation Therapy, adjacent fields; from memory).
+    None without a critical structure, or when a field has a single beam.
+    """
+    upper, lower = pair
+    if junction.critical is None or min(len(upper.beams), len(lower.beams)) < 2:  # noqa: PLR2004 - a pair of beams
+        return None
+    x, y, _ = point_at_depth(junction, junction.critical.depth_cm, match_z_cm)
+    ends = sorted(beam.inferior_edge.z_at(x, y) for beam in upper.beams)
+    starts = sorted(beam.superior_edge.z_at(x, y) for beam in lower.beams)
+    cuts = sorted({*ends, *starts})
+    normal = max(len(ends), len(starts))
+    return sum(
+        high - low
+        for low, high in pairwise(cuts)
+        if sum(end < high for end in ends) + sum(start > low for start in starts) > normal
+    )
+
+
+def _gap(
+    junction: Junction, side: Side, match_z_cm: float, pair: Pair
+) -> tuple[float, float] | None:
+    depth = 0.0 if side is junction.entrance else junction.thickness_cm
+    if depth is None:
+        return None
+    x, y, _ = point_at_depth(junction, depth, match_z_cm)
+    upper, lower = ([beam for beam in field.beams if _lights(beam, side)] for field in pair)
+    parts = [
+        (above.inferior_edge.z_at(x, y) - match_z_cm, match_z_cm - below.superior_edge.z_at(x, y))
+        for above, below in product(upper, lower)
+    ]
+    return max(parts, key=lambda part: abs(sum(part)), default=None)
+
+
+def _lights(beam: PlacedBeam, side: Side) -> bool:
+    axis, sign = OUTWARD[side]
+    return bool(sign * beam.frame.toward_source[axis] > _LEAST_LIGHT)
+
+
+def _rounding(points: dict[str, tuple[Point, ...]], exact: Pair, rounded: Pair) -> float:
+    changes = [
+        np.subtract(pair_mismatches(*rounded, point), pair_mismatches(*exact, point))
+        for across in points.values()
+        for point in across
+    ]
+    return float(worst(np.concatenate(changes)))
