@@ -1,0 +1,40 @@
+"""From a design to a whole plan: settings of every position, the fractions, and the warnings."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from featherlog.junction.plan import Plan, PlannedFraction
+from featherlog.junction.solve import solve
+from featherlog.sequence.pattern import assign
+from featherlog.sequence.warnings import warnings
+
+if TYPE_CHECKING:
+    from featherlog.junction.design import Course
+    from featherlog.junction.machine import Machine
+
+
+def plan_course(course: Course, machine: Machine) -> Plan:
+    """Solve a design on a machine and assign its positions to its fractions.
+
+    Raises RefusedError where the machine cannot deliver a position.
+    """
+    settings = solve(course, machine)
+    fractions = plan_fractions(course)
+    return Plan(settings, fractions, warnings(course, machine, settings, fractions))
+
+
+def plan_fractions(course: Course) -> tuple[PlannedFraction, ...]:
+    """Return every prescribed fraction; numbers run through all phases."""
+    doses = [
+        (phase.name, phase.dose_per_fraction_gy)
+        for phase in course.phases
+        for _ in range(phase.fractions)
+    ]
+    positions = assign(course.sequence, course.fractions)
+    return tuple(
+        PlannedFraction(number, phase, dose, position)
+        for number, ((phase, dose), position) in enumerate(
+            zip(doses, positions, strict=True), start=1
+        )
+    )
