@@ -1,1 +1,1 @@
-"""The database: the append-only ledger, the projections written with it, and migrations."""
+"""The append-only ledger, the projections made from it, and the database that keeps both."""

@@ -1,0 +1,58 @@
+"""Which schema this program knows, and the quick check that a database has it."""
+
+from __future__ import annotations
+
+import re
+from typing import TYPE_CHECKING
+
+from sqlalchemy import inspect, text
+
+from featherlog.errors import StoreError
+
+if TYPE_CHECKING:
+    from sqlalchemy import Connection
+
+REVISIONS = ("0001",)
+"""Every schema revision, oldest first; the last is the one this program works with."""
+
+_FOREIGN = (
+    "This is not a featherlog database; name another, or make one with "
+    "`featherlog database create`."
+)
+
+
+def schema_revision(connection: Connection) -> str | None:
+    """Return the revision a database says it has; None before the first.
+
+    Raises:
+        StoreError: it is not a featherlog database.
+    """
+    if not inspect(connection).has_table("alembic_version"):
+        raise StoreError(_FOREIGN)
+    version: str | None = connection.execute(
+        text("SELECT version_num FROM alembic_version")
+    ).scalar()
+    # Other programs number their revisions in the same table, but not in four digits.
+    if version is not None and not re.fullmatch(r"\d{4}", version):
+        raise StoreError(_FOREIGN)
+    return version
+
+
+def check_schema(connection: Connection) -> None:
+    """Pass where the schema is the one this program works with.
+
+    Raises:
+        StoreError: it is older, newer, or not featherlog's.
+    """
+    version = schema_revision(connection)
+    if version == REVISIONS[-1]:
+        return
+    if version is None or version in REVISIONS:
+        raise StoreError(
+            f"The database is older ({version or 'empty'}) than this program ({REVISIONS[-1]}); "
+            "run `featherlog database upgrade`."
+        )
+    raise StoreError(
+        f"The database ({version}) is newer than this program ({REVISIONS[-1]}); "
+        "install a newer featherlog."
+    )
