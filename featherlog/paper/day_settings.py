@@ -1,0 +1,159 @@
+"""The settings table of the shift sheet: every field and beam, old and new."""
+
+from __future__ import annotations
+
+from itertools import groupby
+from typing import TYPE_CHECKING, Any
+
+from reportlab.lib.styles import ParagraphStyle
+
+from featherlog.paper import style
+from featherlog.paper.fonts import Markup, join, safe, strong
+from featherlog.paper.style import grid, para, shares
+from featherlog.paper.wording import figure, meterset
+from featherlog.words import STILL_CM
+
+if TYPE_CHECKING:
+    from collections.abc import Iterator
+
+    from reportlab.platypus import Table
+
+    from featherlog.views.day import BeamView, DayView, FieldView, JawView
+
+TICK = "☐"
+_HEADS = (
+    "Beam",
+    "Gantry°",
+    "Coll.°",
+    "Couch°",
+    "SSD cm",
+    "MU",
+    "Edge",
+    "Jaw, cm",
+    "Edge moves",
+    "",
+)
+_PARTS = (100, 37, 33, 35, 36, 42, 46, 108, 82, 16)
+_NUMBERS = range(1, 6)
+_FIELD_LINE = ParagraphStyle("field", parent=style.BODY, leading=13)
+_NEW_VALUE_PT = 11
+_JAW_LINE = ParagraphStyle("jaw", parent=style.BODY, leading=12)
+_EDGE_COLUMN = 6
+
+
+def settings_table(view: DayView, width: float, padding: float) -> Table:
+    """Return one table of all fields; changed jaws are bold and framed.
+
+    ``padding`` is the room above and below each line, in points.
+    """
+    rows = [_head_row(part=view.part_delivered)]
+    commands: list[tuple[Any, ...]] = [("RIGHTPADDING", (5, 0), (5, -1), 6)]
+    for field in view.fields:
+        commands += _field_rules(len(rows))
+        rows.append([_field_line(field)] + [""] * (len(_HEADS) - 1))
+        for beam in field.beams:
+            first = len(rows)
+            rows += _beam_rows(beam, part=view.part_delivered)
+            commands += _beam_rules(first, len(rows) - 1)
+            commands += [
+                _changed_frame(first + i) for i, jaws in enumerate(_lines(beam)) if _changed(jaws)
+            ]
+    return grid(rows, shares(width, *_PARTS), *commands, padding=(2, padding), repeat_rows=1)
+
+
+def _head_row(*, part: bool) -> list[Any]:
+    heads = ["MU left" if part and head == "MU" else head for head in _HEADS]
+    return [
+        para(safe(head), style.SMALL_RIGHT if column in _NUMBERS else style.SMALL)
+        for column, head in enumerate(heads)
+    ]
+
+
+def _field_rules(row: int) -> list[tuple[Any, ...]]:
+    return [
+        ("SPAN", (0, row), (-1, row)),
+        ("LINEABOVE", (0, row), (-1, row), style.RULE_PT, "black"),
+        ("TOPPADDING", (0, row), (-1, row), 2.5),
+    ]
+
+
+def _beam_rules(first: int, last: int) -> list[tuple[Any, ...]]:
+    spans = [("SPAN", (column, first), (column, last)) for column in range(_EDGE_COLUMN)]
+    return [*spans, ("LINEABOVE", (0, first), (-1, first), style.HAIR_PT, "black")]
+
+
+def _changed_frame(row: int) -> tuple[Any, ...]:
+    return ("BOX", (_EDGE_COLUMN, row), (-1, row), style.RULE_PT, "black")
+
+
+def _field_line(field: FieldView) -> list[Any]:
+    name = Markup(f'<font size="11">{strong(field.field)}</font>')
+    facts = [name, safe(f"moved by {field.moved_by}")]
+    if not field.since_last.words:
+        facts.append(safe("TABLE stays as in the last fraction"))
+    before = field.from_field_before.words if field.from_field_before else ()
+    return [
+        para(join("  ·  ", facts), _FIELD_LINE),
+        *(_table_line("from the field before", words) for words in before),
+        *(_table_line("since the last fraction", words) for words in field.since_last.words),
+    ]
+
+
+def _table_line(since: str, words: str) -> Any:  # noqa: ANN401 - a reportlab flowable
+    return para(join(" ", [safe(TICK), strong(words), safe(since)]))
+
+
+def _lines(beam: BeamView) -> Iterator[tuple[JawView, ...]]:
+    """Yield the jaws of one line: a changed jaw alone, unchanged ones of one edge together."""
+    for _, jaws in groupby(beam.jaws, key=_line_key):
+        yield tuple(jaws)
+
+
+def _line_key(jaw: JawView) -> tuple[str, bool, str]:
+    changed = _changed((jaw,))
+    return jaw.edge, changed, jaw.jaw if changed else ""
+
+
+def _changed(jaws: tuple[JawView, ...]) -> bool:
+    return any(
+        jaw.previous_cm is not None and abs(jaw.cm - jaw.previous_cm) >= STILL_CM for jaw in jaws
+    )
+
+
+def _beam_rows(beam: BeamView, *, part: bool) -> list[list[Any]]:
+    angles = (beam.gantry_deg, beam.collimator_deg, beam.couch_deg, beam.ssd_cm)
+    left: list[Any] = [
+        _beam_name(beam, part=part),
+        *(para(safe(figure(value)), style.VALUE) for value in angles),
+        para(strong(meterset(beam.to_deliver_mu)), style.VALUE),
+    ]
+    blank = [""] * _EDGE_COLUMN
+    return [
+        (blank if number else left) + _jaw_cells(jaws) for number, jaws in enumerate(_lines(beam))
+    ]
+
+
+def _beam_name(beam: BeamView, *, part: bool) -> list[Any]:
+    lines = [para(strong(beam.beam)), para(safe(beam.energy), style.SMALL)]
+    if part:
+        given = f"{meterset(beam.delivered_mu)} of {meterset(beam.planned_mu)} given"
+        lines.append(para(safe(given), style.SMALL))
+    if part and beam.to_deliver_mu == 0:
+        lines.append(para(strong("DO NOT TREAT AGAIN"), style.SMALL))
+    return lines
+
+
+def _jaw_cells(jaws: tuple[JawView, ...]) -> list[Any]:
+    return [
+        para(safe(jaws[0].edge), style.SMALL),
+        para(join(" · ", [_jaw(jaw) for jaw in jaws]), _JAW_LINE),
+        para(safe(jaws[0].words), style.SMALL),
+        para(safe(TICK)),
+    ]
+
+
+def _jaw(jaw: JawView) -> Markup:
+    if jaw.previous_cm is not None and _changed((jaw,)):
+        old = safe(f"{jaw.jaw}  {figure(jaw.previous_cm)} →")
+        return Markup(f'{old} <font size="{_NEW_VALUE_PT}">{strong(figure(jaw.cm))}</font>')
+    return safe(f"{jaw.jaw}  {figure(jaw.cm)}")

@@ -1,0 +1,224 @@
+"""The summed dose along a junction, as a vector picture for paper and screen."""
+
+from __future__ import annotations
+
+from functools import partial
+from typing import TYPE_CHECKING, Any
+
+from reportlab.graphics import renderSVG
+from reportlab.graphics.shapes import Drawing
+from reportlab.platypus import PageBreak
+
+from featherlog.errors import NotFoundError
+from featherlog.paper import ink, style
+from featherlog.paper.fonts import BOLD, REGULAR, join, register, safe, strong
+from featherlog.paper.layout import Furniture, build_pdf, space
+from featherlog.paper.plot import Axes, add_axes, add_levels, add_marks
+from featherlog.paper.style import grid, para, shares
+from featherlog.paper.wording import figure, signed_figure
+from featherlog.words import DOSE_CAUTION
+
+if TYPE_CHECKING:
+    from collections.abc import Sequence
+
+    from reportlab.platypus import Flowable, Table
+
+    from featherlog.paper.ink import Dash
+    from featherlog.paper.style import PageSize
+    from featherlog.views.dose import DoseCurve, DoseFigures, DoseLine, DoseView, JunctionDose
+
+_WIDE_PT, _TALL_PT = 520.0, 190.0
+# Three depths and their figures fit one page at this height.
+_PAGE_TALL_PT = 136.0
+_LEFT_PT, _RIGHT_PT, _BOTTOM_PT, _TOP_PT = 34.0, 42.0, 26.0, 30.0
+_SAMPLE_PT = 26.0
+
+# Width, dash and tone: told apart on a photocopy and where curves lie on each other.
+_PENS: dict[str, tuple[float, Dash, Any]] = {
+    "planned": (3.4, (12.0, 2.0), ink.GREY),
+    "unfeathered": (0.8, (7.0, 2.0, 1.5, 2.0), ink.BLACK),
+    "delivered": (1.5, ink.SOLID, ink.BLACK),
+    "predicted": (1.5, (3.0, 2.0), ink.BLACK),
+}
+_OTHER_PEN: tuple[float, Dash, Any] = (0.8, (1.0, 1.5), ink.BLACK)
+_LEVELS_PERCENT = (95.0, 100.0, 107.0)
+_ROOM = 0.06
+_SVG_FONTS = {
+    REGULAR: {"family": f"{REGULAR}, sans-serif"},
+    BOLD: {"family": f"{REGULAR}, sans-serif", "weight": "bold"},
+}
+
+
+def dose_drawing(
+    junction: JunctionDose, place: str, *, width: float = _WIDE_PT, height: float = _TALL_PT
+) -> Drawing:
+    """Return the profile at one of a junction's depths, head at the left, size in points.
+
+    Planned, delivered, predicted and unfeathered dose in Gy, levels at 95, 100 and 107 % of the
+    junction's reference dose, and the match point of each position.
+
+    Raises:
+        NotFoundError: The junction has no profile of that name.
+        InputError: A label holds a character that the font cannot print.
+    """
+    register()
+    line = _line(junction, place)
+    axes = Axes(
+        left=_LEFT_PT,
+        bottom=_BOTTOM_PT,
+        width=width - _LEFT_PT - _RIGHT_PT,
+        height=height - _BOTTOM_PT - _TOP_PT,
+        z_range_cm=(min(line.z_cm), max(line.z_cm)),
+        dose_range_gy=_dose_range(line, junction.reference_dose_gy),
+    )
+    drawing = Drawing(width, height)
+    add_marks(drawing, axes, junction.position_z_cm)
+    add_levels(drawing, axes, _levels(junction.reference_dose_gy))
+    for item in sorted(line.curves, key=_depth_of_ink):
+        _add_curve(drawing, axes, line, item)
+    add_axes(drawing, axes)
+    _add_legend(drawing, [item.name for item in line.curves], height - 10)
+    return drawing
+
+
+def dose_svg(
+    junction: JunctionDose, place: str, *, width: float = _WIDE_PT, height: float = _TALL_PT
+) -> str:
+    """Return ``dose_drawing`` as SVG text.
+
+    Raises:
+        NotFoundError: The junction has no profile of that name.
+        InputError: A label holds a character that the font cannot print.
+    """
+    drawing = dose_drawing(junction, place, width=width, height=height)
+    title = safe(f"Junction {junction.junction}, dose along the axis: {place}")
+    text = str(renderSVG.drawToString(drawing, fontHacks=_SVG_FONTS))
+    return text.replace("<title>...</title>", f"<title>{title}</title>").replace(
+        "<desc>...</desc>", f"<desc>{safe(DOSE_CAUTION)}</desc>"
+    )
+
+
+def _line(junction: JunctionDose, place: str) -> DoseLine:
+    for line in junction.lines:
+        if line.place == place:
+            return line
+    known = ", ".join(line.place for line in junction.lines)
+    raise NotFoundError(f'Junction {junction.junction} has no profile "{place}"; it has: {known}.')
+
+
+def _levels(reference_gy: float) -> list[tuple[str, float]]:
+    return [(f"{percent:.0f} %", reference_gy * percent / 100) for percent in _LEVELS_PERCENT]
+
+
+def _dose_range(line: DoseLine, reference_gy: float) -> tuple[float, float]:
+    doses = [dose for item in line.curves for dose in item.dose_gy]
+    low = min([*doses, reference_gy * min(_LEVELS_PERCENT) / 100])
+    high = max([*doses, reference_gy * max(_LEVELS_PERCENT) / 100])
+    room = (high - low) * _ROOM
+    return max(0.0, low - room), high + room
+
+
+def _depth_of_ink(item: DoseCurve) -> int:
+    return list(_PENS).index(item.name) if item.name in _PENS else len(_PENS)
+
+
+def _add_curve(drawing: Drawing, axes: Axes, line: DoseLine, item: DoseCurve) -> None:
+    if not item.dose_gy:
+        return
+    width, dash, color = _PENS.get(item.name, _OTHER_PEN)
+    points = list(zip(map(axes.x, line.z_cm), map(axes.y, item.dose_gy), strict=True))
+    drawing.add(ink.curve(points, width=width, dash=dash, color=color))
+
+
+def _add_legend(drawing: Drawing, names: Sequence[str], y: float) -> None:
+    x = _LEFT_PT
+    for name in names:
+        width, dash, color = _PENS.get(name, _OTHER_PEN)
+        drawing.add(
+            ink.line((x, y + 3), (x + _SAMPLE_PT, y + 3), width=width, dash=dash, color=color)
+        )
+        drawing.add(ink.label((x + _SAMPLE_PT + 4, y), name))
+        x += _SAMPLE_PT + ink.label_width(name) + 14
+
+
+def dose_pdf(view: DoseView, page_size: PageSize = "A4") -> bytes:
+    """Return the dose estimate as a PDF: each junction on its own page, a picture for each depth.
+
+    Raises:
+        InputError: A name holds a character that the font cannot print.
+    """
+    furniture = Furniture(
+        title="Junction dose",
+        heading=view.heading,
+        demo=view.heading is not None and view.heading.demo,
+        notes=(view.caution,),
+        marks=(),
+    )
+    return build_pdf(furniture, partial(_dose_story, view), page_size)
+
+
+def _dose_story(view: DoseView, width: float) -> list[Flowable]:
+    body: list[Flowable] = []
+    for number, junction in enumerate(view.junctions):
+        if number:
+            body.append(PageBreak())
+        body += _dose_page(view, junction, width)
+    return body
+
+
+def _dose_page(view: DoseView, junction: JunctionDose, width: float) -> list[Flowable]:
+    progress = f"{view.delivered_fractions} of {view.fractions} fractions delivered"
+    reference = f"percent of {figure(junction.reference_dose_gy)} Gy"
+    body: list[Flowable] = [
+        para(safe(f"JUNCTION {junction.junction}"), style.LEAD),
+        para(safe(f"{progress}; {reference}. {view.model}")),
+    ]
+    for line in junction.lines:
+        place = f"x {signed_figure(line.x_cm)}, y {signed_figure(line.y_cm)} cm"
+        title = join("  ", [strong(line.place), safe(f"depth {figure(line.depth_cm)} cm, {place}")])
+        body += [
+            space(6),
+            para(title),
+            dose_drawing(junction, line.place, width=width, height=_PAGE_TALL_PT),
+        ]
+    return [*body, space(8), figures_table(junction.lines, width)]
+
+
+_FIGURE_HEADS = (
+    "Place", "Dose", "Max Gy", "%", "at z cm", "Min Gy", "%", "at z cm", ">107 % cm", "<95 % cm"
+)  # fmt: skip
+_FIGURE_PARTS = (76, 64, 46, 40, 44, 46, 40, 44, 54, 50)
+
+
+def figures_table(lines: Sequence[DoseLine], width: float) -> Table:
+    """Return the figures of every curve: maximum and minimum with their places, lengths."""
+    rows: list[list[Any]] = [[para(safe(head), style.SMALL) for head in _FIGURE_HEADS]]
+    for line in lines:
+        kept = [(item.name, item.figures) for item in line.curves if item.figures is not None]
+        named = [_figure_cells(name, figures) for name, figures in kept]
+        firsts = [line.place, *[""] * (len(named) - 1)]
+        rows += [
+            [para(safe(first), style.SMALL), *cells]
+            for first, cells in zip(firsts, named, strict=False)
+        ]
+    return grid(
+        rows,
+        shares(width, *_FIGURE_PARTS),
+        ("LINEBELOW", (0, 0), (-1, 0), style.HAIR_PT, "black"),
+        padding=(2, 0.8),
+        repeat_rows=1,
+    )
+
+
+def _figure_cells(name: str, figures: DoseFigures) -> list[Flowable]:
+    numbers = (
+        f"{figures.maximum_gy:.2f}",
+        f"{figures.maximum_percent:.1f}",
+        signed_figure(round(figures.maximum_z_cm, 1)),
+        f"{figures.minimum_gy:.2f}",
+        f"{figures.minimum_percent:.1f}",
+        signed_figure(round(figures.minimum_z_cm, 1)),
+        f"{figures.over_107_cm:.2f}",
+        f"{figures.under_95_cm:.2f}",
+    )
+    return [para(safe(name), style.SMALL), *(para(safe(text), style.SMALL) for text in numbers)]
