@@ -66,3 +66,18 @@ def table_move(move_cm: tuple[float, float, float]) -> tuple[str, ...]:
         for component, (axis, plus, minus) in zip(move_cm, _TABLE_WORDS, strict=True)
         if abs(component) >= STILL_CM
     )
+
+
+def jaw_move(jaw: str, change_cm: float, end: str | None) -> str:
+    """Say how a jaw moves: opens or closes, by how much, and which way its edge goes.
+
+    ``end`` is superior or inferior for a jaw that forms an end of the field, None for a side jaw.
+    X1 and Y1 open toward negative positions, X2 and Y2 toward positive ones (IEC 61217).
+    """
+    if abs(change_cm) < STILL_CM:
+        return ""
+    outward = change_cm if jaw.endswith("2") else -change_cm
+    what = f"{'opens' if outward > 0 else 'closes'} {abs(change_cm):.1f} cm"
+    if end is None:
+        return what
+    return f"{what}, {toward(outward if end == 'superior' else -outward)}"

@@ -123,10 +123,14 @@ def gap_departures(gaps: Iterable[MeasuredGap]) -> tuple[Departure, ...]:
 
 
 def order_departures(
-    fraction: int, expected: int | None, prescribed: int, *, confirmed: bool
+    fraction: int, expected: int | None, prescribed: int, *, confirmed: bool, approved: bool
 ) -> tuple[Departure, ...]:
     """Return the departures of which fraction was recorded and whether it was confirmed before."""
     found = []
+    if not approved:
+        found.append(
+            Departure("not approved", MINOR, f"fraction {fraction} was treated before approval")
+        )
     if fraction > prescribed:
         found.append(
             Departure(

@@ -16,6 +16,9 @@ if TYPE_CHECKING:
     from featherlog.junction.plan import Plan
     from featherlog.sequence.progress import FractionState
 
+# Sides are compared in whole fractions; smaller differences of meterset are departures.
+_APART = 0.5
+
 
 def unequal_sides(
     plan: Plan, states: Mapping[int, FractionState], next_fraction: int
@@ -31,12 +34,9 @@ def unequal_sides(
     reasons += [
         f"fields {upper} and {lower} have had {given[upper]:.2f} and {given[lower]:.2f} fractions"
         for upper, lower in pairwise(given)
-        if abs(given[upper] - given[lower]) > _EQUAL
+        if abs(given[upper] - given[lower]) >= _APART
     ]
     return tuple(reasons)
-
-
-_EQUAL = 0.05
 
 
 def fractions_given(plan: Plan, states: Mapping[int, FractionState]) -> dict[str, float]:

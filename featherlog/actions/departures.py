@@ -1,0 +1,46 @@
+"""Departures of a course, and the reasons given for them."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from featherlog import words
+from featherlog.actions.desk import at_desk, signing_desk
+from featherlog.actions.stored import departure_lines, load
+from featherlog.errors import InputError, NotFoundError
+from featherlog.store import queries
+from featherlog.store.entry import Kind
+
+if TYPE_CHECKING:
+    from featherlog.views.common import DepartureLine
+
+
+def list_departures(database: str | None, key: str) -> tuple[DepartureLine, ...]:
+    """Return every departure of a course, by number; NotFoundError where there is no course."""
+    with at_desk(database) as desk:
+        load(desk, key)
+        return departure_lines(queries.departures(desk.connection, key))
+
+
+def explain(database: str | None, key: str, number: int, *, by: str, reason: str) -> None:
+    """Give the reason for an open departure.
+
+    Raises InputError without a reason, NotFoundError where there is no such open departure.
+    """
+    if not reason.strip():
+        raise InputError("--reason is empty, but must say why the departure happened")
+    with signing_desk(database) as desk:
+        roles = (words.THERAPIST, words.PHYSICIST, words.PHYSICIAN)
+        role = desk.role_of(by, "explain a departure", *roles)
+        load(desk, key)
+        rows = queries.departures(desk.connection, key)
+        if not any(row.number == number and row.status == "open" for row in rows):
+            raise NotFoundError(f"course {key} has no open departure {number}")
+        desk.append(
+            Kind.DEPARTURE_EXPLAINED,
+            {"departure": number, "reason": reason.strip()},
+            course=key,
+            who=by,
+            role=role,
+            meaning="I give the reason for this departure",
+        )

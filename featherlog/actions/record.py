@@ -1,0 +1,266 @@
+"""What was delivered, after the beam: never refused when true; what differs is a departure."""
+
+from __future__ import annotations
+
+from dataclasses import asdict, dataclass
+from typing import TYPE_CHECKING, Any
+
+from featherlog.actions.confirm import measured, two_people
+from featherlog.actions.desk import Desk, signing_desk
+from featherlog.actions.stored import Stored, delivered_beams, load
+from featherlog.errors import InputError
+from featherlog.sequence.calendar import next_date
+from featherlog.sequence.departures import (
+    Departure,
+    MeasuredGap,
+    beams_by_field,
+    gap_departures,
+    meterset_departures,
+    order_departures,
+    position_departures,
+)
+from featherlog.sequence.progress import (
+    DeliveredBeam,
+    FractionState,
+    Progress,
+    fraction_states,
+    progress,
+)
+from featherlog.store import queries
+from featherlog.store.entry import Kind
+
+if TYPE_CHECKING:
+    from collections.abc import Mapping
+
+    from featherlog.junction.plan import PositionSettings
+
+
+@dataclass(frozen=True, slots=True)
+class Delivery:
+    """What the people at the console say was delivered.
+
+    ``fraction`` None means the one that was due. ``position`` is where every field was treated,
+    None when it was as confirmed; ``field_positions`` name fields that were elsewhere.
+    ``metersets_mu`` holds the beams whose meterset differs from what was to be delivered.
+    ``gaps_cm`` are measured gaps by junction or "junction:side" (+ gap). ``reason`` explains what
+    differs and may be empty.
+    """
+
+    fraction: int | None
+    position: str | None
+    field_positions: Mapping[str, str]
+    metersets_mu: Mapping[str, float]
+    gaps_cm: Mapping[str, float]
+    reason: str
+
+
+@dataclass(frozen=True, slots=True)
+class Recorded:
+    """What the record came to: the ledger entry, the fraction, and what differed."""
+
+    entry: int
+    fraction: int
+    positions: tuple[tuple[str, str], ...]
+    complete: bool
+    departures: tuple[Departure, ...]
+    explained: bool
+    next_fraction: int | None
+    next_position: str | None
+    next_date: str | None
+
+
+def record(
+    database: str | None, key: str, *, by: str, verified_by: str, delivery: Delivery
+) -> Recorded:
+    """Record one fraction, or the part of one that was delivered.
+
+    Raises:
+        InputError: a field, beam, position or gap that the course does not have, a meterset that
+            is not a number of MU, or no position for a fraction that was not confirmed.
+        RefusedError: performer and verifier are not two qualified people.
+    """
+    with signing_desk(database) as desk:
+        role = two_people(desk, by, verified_by, "record a fraction")
+        stored = load(desk, key)
+        number = _fraction(stored, delivery.fraction)
+        confirmed = _confirmed_position(desk, stored, number)
+        beams = _beams(stored, number, delivery, confirmed)
+        states = _states_after(stored, beams)
+        departures = _departures(stored, states[number], beams, delivery, confirmed)
+        after = progress(stored.plan, states)
+        following = _next_date(desk, stored, after, number)
+        entry = desk.append(
+            Kind.FRACTION_RECORDED,
+            {
+                "fraction": number,
+                "performer": by,
+                "verifier": verified_by,
+                "beams": [_without(asdict(beam), "fraction") for beam in beams],
+                "gaps": [
+                    {"junction": name, "side": side, "gap_cm": gap}
+                    for (name, side), gap in measured(stored, delivery.gaps_cm).items()
+                ],
+                "departures": [
+                    {**asdict(departure), "reason": delivery.reason.strip()}
+                    for departure in departures
+                ],
+                "after": {
+                    "next_fraction": after.next_fraction,
+                    "next_position": after.position,
+                    "next_date": following,
+                    "part_delivered": after.part_delivered,
+                    "fractions_complete": after.complete,
+                    "complete": after.next_fraction is None,
+                },
+            },
+            course=key,
+            who=by,
+            role=role,
+            meaning=f"We record fraction {number} as delivered",
+        )
+    return Recorded(
+        entry=entry.number,
+        fraction=number,
+        positions=tuple(dict.fromkeys((beam.field, beam.position) for beam in beams)),
+        complete=states[number].complete,
+        departures=departures,
+        explained=bool(delivery.reason.strip()),
+        next_fraction=after.next_fraction,
+        next_position=after.position,
+        next_date=following,
+    )
+
+
+def _fraction(stored: Stored, asked: int | None) -> int:
+    if asked is not None:
+        if asked < 1:
+            raise InputError(f"--fraction is {asked}, but must be 1 or more")
+        return asked
+    # A fraction beyond the prescribed count is recorded all the same, under the next number.
+    return stored.progress.next_fraction or max(stored.states) + 1
+
+
+def _confirmed_position(desk: Desk, stored: Stored, number: int) -> str | None:
+    confirmations = queries.confirmations(desk.connection, stored.row.key, number)
+    valid = [c for c in confirmations if c.state_hash == stored.row.state_hash]
+    return valid[-1].position if valid else None
+
+
+def _beams(
+    stored: Stored, number: int, delivery: Delivery, confirmed: str | None
+) -> tuple[DeliveredBeam, ...]:
+    everywhere = delivery.position or confirmed
+    fields = {field.field for field in stored.plan.positions[0].fields}
+    _known("--field-position", delivery.field_positions, fields, "field")
+    if everywhere is None and set(delivery.field_positions) != fields:
+        raise InputError(
+            f"fraction {number} was not confirmed, so the record must say where it was treated: "
+            "give --position"
+        )
+    names = {beam.beam for field in stored.plan.positions[0].fields for beam in field.beams}
+    _known("--meterset", delivery.metersets_mu, names, "beam")
+    state = stored.states.get(number)
+    rows = []
+    for field in stored.plan.positions[0].fields:
+        label = delivery.field_positions.get(field.field, everywhere or "")
+        settings = _settings(stored, label)
+        for beam in field.beams:
+            planned = settings.meterset(beam.beam)
+            due = _remaining(state, beam.beam) * planned
+            given = delivery.metersets_mu.get(beam.beam, due)
+            rows.append(DeliveredBeam(number, field.field, beam.beam, label, given, planned))
+    return tuple(_with_something(rows))
+
+
+def _with_something(rows: list[DeliveredBeam]) -> list[DeliveredBeam]:
+    given = [row for row in rows if row.meterset_mu > 0]
+    if not given:
+        raise InputError("no beam has any MU, so there is nothing to record")
+    return rows
+
+
+def _remaining(state: FractionState | None, beam: str) -> float:
+    return max(0.0, 1 - state.parts[beam]) if state else 1.0
+
+
+def _settings(stored: Stored, label: str) -> PositionSettings:
+    try:
+        return stored.plan.position(label)
+    except KeyError:
+        labels = ", ".join(position.label for position in stored.plan.positions)
+        raise InputError(
+            f"there is no position {label!r} in this course; it has {labels}"
+        ) from None
+
+
+def _known(option: str, given: Mapping[str, object], allowed: set[str], what: str) -> None:
+    for name in given:
+        if name not in allowed:
+            names = ", ".join(sorted(allowed))
+            raise InputError(f"{option} names {what} {name!r}, but this course has {names}")
+
+
+def _states_after(stored: Stored, beams: tuple[DeliveredBeam, ...]) -> dict[int, FractionState]:
+    delivered = [*delivered_beams(stored.deliveries), *beams]
+    return fraction_states(stored.plan, delivered, stored.machine.tolerances.meterset_percent)
+
+
+def _departures(
+    stored: Stored,
+    state: FractionState,
+    beams: tuple[DeliveredBeam, ...],
+    delivery: Delivery,
+    confirmed: str | None,
+) -> tuple[Departure, ...]:
+    number = state.number
+    planned = _planned_position(stored, number)
+    where = {**state.field_position, **beams_by_field(beams)}
+    mu = {beam.beam: beam.planned_mu for beam in beams}
+    return (
+        *order_departures(
+            number,
+            stored.progress.next_fraction,
+            stored.course.fractions,
+            confirmed=confirmed is not None,
+            approved=stored.approved,
+        ),
+        *position_departures(stored.plan, planned, where),
+        *meterset_departures(state.parts, mu, stored.machine.tolerances.meterset_percent),
+        *gap_departures(_gaps(stored, beams, delivery)),
+    )
+
+
+def _planned_position(stored: Stored, number: int) -> str:
+    if number in stored.states:
+        return stored.states[number].began_at
+    return stored.plan.fraction(min(number, stored.course.fractions)).position
+
+
+def _gaps(
+    stored: Stored, beams: tuple[DeliveredBeam, ...], delivery: Delivery
+) -> list[MeasuredGap]:
+    settings = stored.plan.position(beams[0].position)
+    tolerance = {j.name: j.gap_tolerance_cm for j in stored.course.junctions}
+    expected = {
+        (j.junction, gap.side): gap.expected_cm for j in settings.junctions for gap in j.skin_gaps
+    }
+    return [
+        MeasuredGap(name, side, gap, expected[name, side], tolerance[name])
+        for (name, side), gap in measured(stored, delivery.gaps_cm).items()
+    ]
+
+
+def _next_date(desk: Desk, stored: Stored, after: Progress, number: int) -> str | None:
+    if after.next_fraction is None:
+        return None
+    today = desk.now.date()
+    given = {row.fraction for row in stored.deliveries if row.at[:10] == today.isoformat()}
+    # The remainder of a broken fraction is due the same day: it takes no place of its own.
+    count = len({*given, number} - ({after.next_fraction} if after.part_delivered else set()))
+    return next_date(
+        stored.course.sequence, stored.course.fractions_a_day, today, count
+    ).isoformat()
+
+
+def _without(values: dict[str, Any], key: str) -> dict[str, Any]:
+    return {name: value for name, value in values.items() if name != key}

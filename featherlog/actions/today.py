@@ -1,0 +1,178 @@
+"""Where the junction is today, and what to set: one course, or the list of a day."""
+
+from __future__ import annotations
+
+from datetime import date
+from typing import TYPE_CHECKING
+
+from featherlog import words
+from featherlog.actions.day_view import field_views, junction_views, page_code
+from featherlog.actions.desk import Desk, at_desk
+from featherlog.actions.stored import Stored, departure_lines, load
+from featherlog.errors import InputError, NotFoundError
+from featherlog.sequence.calendar import project_dates
+from featherlog.sequence.gate import unequal_sides
+from featherlog.sequence.pattern import shift_fractions
+from featherlog.sequence.progress import previous_position
+from featherlog.store import ledger, queries
+from featherlog.views.day import DayView, DueLine, DueList, NextShift
+
+if TYPE_CHECKING:
+    from featherlog.store.rows import CourseRow
+
+
+def today(database: str | None, key: str) -> DayView:
+    """Return what to set for the next fraction of a course, or why to stop.
+
+    Raises NotFoundError where there is no such course.
+    """
+    with at_desk(database) as desk:
+        return day_view(desk, load(desk, key))
+
+
+def due_list(database: str | None, *, day: str | None, machine: str | None) -> DueList:
+    """Return the courses due on a date (ISO 8601; today when None), on one machine or all.
+
+    Raises InputError for a date that is not one, NotFoundError for an unknown machine.
+    """
+    with at_desk(database) as desk:
+        if machine is not None and queries.machine_content(desk.connection, machine) is None:
+            raise NotFoundError(f"there is no machine {machine!r}; see `featherlog machine list`")
+        on = _date(day) if day else desk.now.date()
+        rows = [row for row in queries.due(desk.connection, machine) if _is_due(row, on)]
+        lines = tuple(_due_line(load(desk, row.key), on) for row in rows)
+        return DueList(on.isoformat(), machine or "", lines, desk.demo, words.CAUTION)
+
+
+def day_view(desk: Desk, stored: Stored) -> DayView:
+    """Return the view of a course's next fraction."""
+    departures = [
+        row for row in queries.departures(desk.connection, stored.row.key) if row.status == "open"
+    ]
+    head = ledger.head(desk.connection)
+    number = stored.progress.next_fraction or stored.plan.fractions[-1].number
+    position = stored.progress.position or ""
+    before = previous_position(stored.plan, stored.states, number)
+    planned = stored.plan.fraction(number)
+    reasons = stop_reasons(stored)
+    now = stored.plan.position(position) if position else None
+    last = stored.plan.position(before) if before else None
+    state = stored.states.get(number)
+    return DayView(
+        heading=stored.heading(demo=desk.demo),
+        status=_status(stored, reasons),
+        stop_reasons=reasons,
+        fraction=number,
+        fractions=stored.course.fractions,
+        phase=planned.phase,
+        dose_gy=planned.dose_gy,
+        projected_date=stored.row.next_date or "",
+        position=position,
+        previous_position=before,
+        shift=shift_of(before, position),
+        shift_words=_shift_words(before, position, number),
+        part_delivered=stored.progress.part_delivered,
+        junctions=junction_views(stored.course, now, last) if now else (),
+        fields=field_views(now, last, state.parts if state else {}) if now else (),
+        table_reference=words.RELATIVE_ONLY,
+        open_departures=departure_lines(departures),
+        next_shift=next_shift(stored),
+        page_code=page_code(
+            stored.revision.code, stored.progress.next_fraction, stored.row.state_hash
+        ),
+        ledger_head=f"{head.number}:{head.hash[:12]}" if head else "",
+        printed_at=desk.stamp,
+        caution=words.CAUTION,
+    )
+
+
+def _status(stored: Stored, reasons: tuple[str, ...]) -> str:
+    if reasons:
+        return "stop"
+    return "complete" if stored.progress.next_fraction is None else "ready"
+
+
+def stop_reasons(stored: Stored) -> tuple[str, ...]:
+    """Return why the next fraction may not be treated as things stand; empty when it may."""
+    if not stored.approved:
+        revision = stored.revision
+        return (f"revision {revision.number} of this design is {revision.state}, not approved",)
+    fraction, position = stored.progress.next_fraction, stored.progress.position
+    if fraction is None or stored.progress.part_delivered:
+        return ()
+    before = previous_position(stored.plan, stored.states, fraction)
+    if before in (None, position):
+        return ()
+    return unequal_sides(stored.plan, stored.states, fraction)
+
+
+def shift_of(before: str | None, position: str) -> str:
+    """Return ``first``, ``yes`` or ``no``: whether the junction moves for this fraction."""
+    if before is None:
+        return "first"
+    return "no" if before == position else "yes"
+
+
+def _shift_words(before: str | None, position: str, fraction: int) -> str:
+    if not position:
+        return "No fraction is left to treat."
+    if before is None:
+        return f"First fraction: set position {position}."
+    if before == position:
+        return f"No shift: position {position}, as in fraction {fraction - 1}."
+    return f"Shift: from position {before} to position {position}, after fraction {fraction - 1}."
+
+
+def next_shift(stored: Stored) -> NextShift | None:
+    """Return the next fraction after the one due whose position differs; None when there is none.
+
+    Its date is projected from the date of the fraction due.
+    """
+    due, on = stored.progress.next_fraction, stored.row.next_date
+    positions = [fraction.position for fraction in stored.plan.fractions]
+    later = [number for number in shift_fractions(positions) if due and number > due]
+    if not later or due is None or on is None:
+        return None
+    number = later[0]
+    dates = project_dates(
+        stored.course.sequence,
+        number - due + 1,
+        stored.course.fractions_a_day,
+        date.fromisoformat(on),
+    )
+    return NextShift(number, positions[number - 1], dates[-1].isoformat())
+
+
+def _is_due(row: CourseRow, on: date) -> bool:
+    return row.next_date is not None and date.fromisoformat(row.next_date) <= on
+
+
+def _due_line(stored: Stored, on: date) -> DueLine:
+    row, progress = stored.row, stored.progress
+    position, number = progress.position or "", progress.next_fraction or 0
+    before = previous_position(stored.plan, stored.states, number)
+    due = row.next_date or ""
+    attention = [f"{row.open_departures} open departure(s)"] if row.open_departures else []
+    if progress.part_delivered:
+        attention.append(f"fraction {number} part delivered: finish it at {position}")
+    if stop_reasons(stored):
+        attention.insert(0, "STOP: see this course")
+    return DueLine(
+        course=row.key,
+        patient_name=row.patient_name,
+        machine=row.machine,
+        fraction=number,
+        fractions=row.fractions,
+        position=position,
+        shift=shift_of(before, position),
+        due="today" if due == on.isoformat() else f"since {due}",
+        projected_date=due,
+        attention="; ".join(attention),
+    )
+
+
+def _date(text: str) -> date:
+    try:
+        return date.fromisoformat(text)
+    except ValueError:
+        raise InputError(f"--date is {text!r}, but must be a date such as 2026-03-02") from None
