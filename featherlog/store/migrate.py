@@ -15,7 +15,7 @@ from typing import TYPE_CHECKING
 
 from sqlalchemy import func, insert, inspect, select
 
-from featherlog.errors import RefusedError
+from featherlog.errors import InputError, RefusedError
 from featherlog.store.engine import migrating, open_engine, sqlite_file
 from featherlog.store.schema import REVISIONS, schema_revision
 from featherlog.store.tables import ledger_entry, store_property
@@ -84,9 +84,13 @@ def downgrade(url: str, revision: str, *, lose_records: bool = False) -> Path | 
         lose_records: go on even though the ledger has entries.
 
     Raises:
+        InputError: the revision is not known.
         RefusedError: the ledger has entries, and they would be lost.
         StoreError: it cannot be reached, or is not a featherlog database.
     """
+    known = ("base", *REVISIONS)
+    if revision not in known:
+        raise InputError(f"The revision {revision!r} is not known; allowed: {', '.join(known)}.")
     return _step(url, "downgrade", revision, lose_records=lose_records)
 
 

@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from sqlalchemy import delete, insert, update
+from sqlalchemy import delete, exc, insert, update
 
 from featherlog.errors import IntegrityError
 from featherlog.store import projecting_delivery, projecting_designs
@@ -41,6 +41,11 @@ def apply(connection: Connection, entry: Entry) -> None:
         raise IntegrityError(
             f"Ledger entry {entry.number} ({entry.kind}) lacks {missing} in its content."
         ) from missing
+    except exc.IntegrityError as error:
+        raise IntegrityError(
+            f"Ledger entry {entry.number} ({entry.kind}) does not fit those before it: "
+            f"{str(error.orig).splitlines()[0]}."
+        ) from error
 
 
 def empty(connection: Connection) -> None:

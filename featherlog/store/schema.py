@@ -22,20 +22,24 @@ _FOREIGN = (
 
 
 def schema_revision(connection: Connection) -> str | None:
-    """Return the revision a database says it has; None before the first.
+    """Return the known revision a database is at; None before the first.
 
     Raises:
-        StoreError: it is not a featherlog database.
+        StoreError: the database is newer than this program, or not featherlog's.
     """
     if not inspect(connection).has_table("alembic_version"):
         raise StoreError(_FOREIGN)
-    version: str | None = connection.execute(
-        text("SELECT version_num FROM alembic_version")
-    ).scalar()
-    # Other programs number their revisions in the same table, but not in four digits.
-    if version is not None and not re.fullmatch(r"\d{4}", version):
+    query = text("SELECT version_num FROM alembic_version")
+    version: str | None = connection.execute(query).scalar()
+    if version is None or version in REVISIONS:
+        return version
+    # Other programs number their revisions in a table of this name too, but not in four digits.
+    if not re.fullmatch(r"\d{4}", version):
         raise StoreError(_FOREIGN)
-    return version
+    raise StoreError(
+        f"The database ({version}) is newer than this program ({REVISIONS[-1]}); "
+        "install a newer featherlog."
+    )
 
 
 def check_schema(connection: Connection) -> None:
@@ -45,14 +49,8 @@ def check_schema(connection: Connection) -> None:
         StoreError: it is older, newer, or not featherlog's.
     """
     version = schema_revision(connection)
-    if version == REVISIONS[-1]:
-        return
-    if version is None or version in REVISIONS:
+    if version != REVISIONS[-1]:
         raise StoreError(
             f"The database is older ({version or 'empty'}) than this program ({REVISIONS[-1]}); "
             "run `featherlog database upgrade`."
         )
-    raise StoreError(
-        f"The database ({version}) is newer than this program ({REVISIONS[-1]}); "
-        "install a newer featherlog."
-    )
