@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 from featherlog.exchange.kinds import choice, flag, interval, number, point, text
 from featherlog.geometry.frames import patient_from_beam
-from featherlog.junction.design import Beam, Border, End, Field, MovedBy, Reach
+from featherlog.junction.design import Beam, Border, End, Field, MovedBy
 
 if TYPE_CHECKING:
     from featherlog.exchange.toml_fields import Table
@@ -23,9 +23,10 @@ _ENTRY_CM = replace(
     point(_COORDINATE_CM),
     allowed=f"{point(_COORDINATE_CM).allowed} (or isocentre_cm given for the whole field)",
 )
+_BORDER = "{ reach_cm = … } or { point_cm = [x, y, z], held = true or false }"
 _HALF_TURN_DEG = 180.0
 _DIGITS = 9  # of a computed isocentre: far below any distance that can be set
-_NO_BORDER = Reach(0.0)
+_NO_BORDER = Border(reach_cm=0.0)
 
 
 def read_fields(
@@ -38,7 +39,7 @@ def read_fields(
     )
 
 
-def read_borders(tables: tuple[Table, ...]) -> tuple[Border | Reach, Border | Reach]:
+def read_borders(tables: tuple[Table, ...]) -> tuple[Border, Border]:
     """Read the superior border of the first field and the inferior border of the last."""
     for end, fields in ((End.SUPERIOR, tables[1:]), (End.INFERIOR, tables[:-1])):
         for table in fields:
@@ -55,10 +56,10 @@ def _refuse_border(table: Table, end: End) -> None:
         table.fault(key, f"is given, but only the {place} field has one, as a junction ends this")
 
 
-def _border(table: Table, end: End) -> Border | Reach:
-    border = table.table(f"{end}_border")
+def _border(table: Table, end: End) -> Border:
+    border = table.table(f"{end}_border", _BORDER)
     if border.has("reach_cm"):
-        return Reach(border.take("reach_cm", _JAW_CM))
+        return Border(reach_cm=border.take("reach_cm", _JAW_CM))
     return Border(border.take("point_cm", point(_COORDINATE_CM)), border.take("held", flag()))
 
 

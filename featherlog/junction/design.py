@@ -94,23 +94,16 @@ class Beam:
 
 @dataclass(frozen=True, slots=True)
 class Border:
-    """The outer end of the first or last field: the edge passes through this point.
+    """The outer end of the first or last field: a point its edge passes through, or a jaw reach.
 
-    A ``held`` border stays in the patient; a free one travels with the isocentre.
+    A ``held`` point stays in the patient; a free one travels with the isocentre. ``reach_cm`` is
+    the distance from the beam axis to the edge at the isocentre plane, positive away from the axis
+    on the field's own side and negative across it. Exactly one of point and reach is given.
     """
 
-    point_cm: Point
-    held: bool
-
-
-@dataclass(frozen=True, slots=True)
-class Reach:
-    """An outer end given by its jaw: distance from the beam axis at the isocentre plane.
-
-    Positive away from the axis on the field's own side, negative across it.
-    """
-
-    reach_cm: float
+    point_cm: Point | None = None
+    held: bool = False
+    reach_cm: float | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -208,8 +201,8 @@ class Course:
     fractions_a_day: int
     phases: tuple[Phase, ...]
     fields: tuple[Field, ...]
-    superior_border: Border | Reach
-    inferior_border: Border | Reach
+    superior_border: Border
+    inferior_border: Border
     junctions: tuple[Junction, ...]
     positions: tuple[Position, ...]
     sequence: SequencePattern

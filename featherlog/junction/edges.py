@@ -12,7 +12,7 @@ from itertools import pairwise, product
 from typing import TYPE_CHECKING
 
 from featherlog.geometry.beams import BeamFrame, GeometryError, beam_frame
-from featherlog.junction.design import Border, Reach
+from featherlog.junction.design import Border
 from featherlog.junction.machine import Jaw
 from featherlog.junction.points import across, places, point_at_depth
 
@@ -169,7 +169,7 @@ def _place(
     offsets_cm: dict[str, float],
     moves: list[float],
 ) -> Chain:
-    targets: list[Point | Border | Reach] = [
+    targets: list[Point | Border] = [
         course.superior_border,
         *(match_point(j, depths[j.name], offsets_cm[j.name]) for j in course.junctions),
         course.inferior_border,
@@ -189,7 +189,7 @@ def _place_beam(
     machine: Machine,
     beam: Beam,
     move_cm: float,
-    ends: tuple[Point | Border | Reach, Point | Border | Reach],
+    ends: tuple[Point | Border, Point | Border],
 ) -> PlacedBeam:
     x, y, z = beam.isocentre_cm
     frame = beam_frame(
@@ -210,14 +210,15 @@ def _place_beam(
     return PlacedBeam(beam, frame, superior, inferior)
 
 
-def _end(frame: BeamFrame, target: Point | Border | Reach, direction: int, move_cm: float) -> End:
+def _end(frame: BeamFrame, target: Point | Border, direction: int, move_cm: float) -> End:
     axis, side = frame.end_axis(direction)
-    if isinstance(target, Reach):
-        return End(axis, side, side * target.reach_cm)
-    if isinstance(target, Border):
-        x, y, z = target.point_cm
-        target = (x, y, z if target.held else z + move_cm)
-    return End(axis, side, frame.jaw_through(target, axis))
+    if not isinstance(target, Border):
+        return End(axis, side, frame.jaw_through(target, axis))
+    if target.point_cm is None:
+        return End(axis, side, side * (target.reach_cm or 0.0))
+    x, y, z = target.point_cm
+    point = (x, y, z if target.held else z + move_cm)
+    return End(axis, side, frame.jaw_through(point, axis))
 
 
 def _with_ends(
