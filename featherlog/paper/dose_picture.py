@@ -31,6 +31,7 @@ _WIDE_PT, _TALL_PT = 520.0, 190.0
 # Three depths and their figures fit one page at this height.
 _PAGE_TALL_PT = 136.0
 _LEFT_PT, _RIGHT_PT, _BOTTOM_PT, _TOP_PT = 34.0, 42.0, 26.0, 30.0
+_BARE_TOP_PT, _LEGEND_PT = 20.0, 12.0
 _SAMPLE_PT = 26.0
 
 # Width, dash and tone: told apart on a photocopy and where curves lie on each other.
@@ -50,7 +51,12 @@ _SVG_FONTS = {
 
 
 def dose_drawing(
-    junction: JunctionDose, place: str, *, width: float = _WIDE_PT, height: float = _TALL_PT
+    junction: JunctionDose,
+    place: str,
+    *,
+    width: float = _WIDE_PT,
+    height: float = _TALL_PT,
+    with_legend: bool = True,
 ) -> Drawing:
     """Return the profile at one of a junction's depths, head at the left, size in points.
 
@@ -67,7 +73,7 @@ def dose_drawing(
         left=_LEFT_PT,
         bottom=_BOTTOM_PT,
         width=width - _LEFT_PT - _RIGHT_PT,
-        height=height - _BOTTOM_PT - _TOP_PT,
+        height=height - _BOTTOM_PT - (_TOP_PT if with_legend else _BARE_TOP_PT),
         z_range_cm=(min(line.z_cm), max(line.z_cm)),
         dose_range_gy=_dose_range(line, junction.reference_dose_gy),
     )
@@ -77,7 +83,16 @@ def dose_drawing(
     for item in sorted(line.curves, key=_depth_of_ink):
         _add_curve(drawing, axes, line, item)
     add_axes(drawing, axes)
-    _add_legend(drawing, [item.name for item in line.curves], height - 10)
+    if with_legend:
+        _add_legend(drawing, [item.name for item in line.curves], height - _LEGEND_PT + 2)
+    return drawing
+
+
+def legend(names: Sequence[str], width: float) -> Drawing:
+    """Return the legend alone, for pictures that stand side by side."""
+    register()
+    drawing = Drawing(width, _LEGEND_PT)
+    _add_legend(drawing, names, 2)
     return drawing
 
 
@@ -181,7 +196,7 @@ def _dose_page(view: DoseView, junction: JunctionDose, width: float) -> list[Flo
             para(title),
             dose_drawing(junction, line.place, width=width, height=_PAGE_TALL_PT),
         ]
-    return [*body, space(8), figures_table(junction.lines, width)]
+    return [*body, space(8), figures_table([(line.place, line) for line in junction.lines], width)]
 
 
 _FIGURE_HEADS = (
@@ -190,13 +205,13 @@ _FIGURE_HEADS = (
 _FIGURE_PARTS = (76, 64, 46, 40, 44, 46, 40, 44, 54, 50)
 
 
-def figures_table(lines: Sequence[DoseLine], width: float) -> Table:
-    """Return the figures of every curve: maximum and minimum with their places, lengths."""
+def figures_table(lines: Sequence[tuple[str, DoseLine]], width: float) -> Table:
+    """Return the figures of each named line's curves: extremes with their places, and lengths."""
     rows: list[list[Any]] = [[para(safe(head), style.SMALL) for head in _FIGURE_HEADS]]
-    for line in lines:
+    for place, line in lines:
         kept = [(item.name, item.figures) for item in line.curves if item.figures is not None]
         named = [_figure_cells(name, figures) for name, figures in kept]
-        firsts = [line.place, *[""] * (len(named) - 1)]
+        firsts = [place, *[""] * (len(named) - 1)]
         rows += [
             [para(safe(first), style.SMALL), *cells]
             for first, cells in zip(firsts, named, strict=False)

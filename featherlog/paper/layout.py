@@ -24,6 +24,9 @@ if TYPE_CHECKING:
     from featherlog.views.common import Heading
 
 _GAP_PT = 5.0
+_WRITE_PT = 14.0
+SIGNED = "name, signature, date and time"
+"""What a person who signs writes."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -185,3 +188,14 @@ def _foot(furniture: Furniture, width: float, page: str, pages: int) -> Table:
 def space(points: float) -> Flowable:
     """Return empty room between blocks."""
     return Spacer(0, points)
+
+
+def lines_to_fill(width: float, *captions: str) -> Table:
+    """Return lines to write on, one below the other, each over its caption."""
+    rows: list[list[Flowable]] = []
+    rules: list[tuple[str, tuple[int, int], tuple[int, int], float, str]] = []
+    for caption in captions:
+        rows += [[space(_WRITE_PT)], [para(safe(caption), style.SMALL)]]
+        last = len(rows) - 1
+        rules.append(("LINEABOVE", (0, last), (-1, last), style.FINE_PT, "black"))
+    return grid(rows, [width], *rules, padding=(0, 1))

@@ -11,8 +11,9 @@ from featherlog.paper import style
 from featherlog.paper.day_answer import answer_box, complete_box, locked_banner, stop_page
 from featherlog.paper.day_junctions import diagrams, junction_blocks
 from featherlog.paper.day_settings import TICK, settings_table
+from featherlog.paper.departures import departure_line
 from featherlog.paper.fonts import join, safe, strong
-from featherlog.paper.layout import Furniture, build_pdf, count_pages, space
+from featherlog.paper.layout import SIGNED, Furniture, build_pdf, count_pages, lines_to_fill, space
 from featherlog.paper.style import grid, para, shares
 from featherlog.words import RECORD_CAUTION, THIS_FRACTION_ONLY
 
@@ -25,7 +26,15 @@ if TYPE_CHECKING:
 
 # Diagram height and room about each line of settings, in points, from airy to dense. Diagrams
 # shrink, text never does; None sends the diagrams to a page of their own.
-_ARRANGEMENTS = ((175.0, 2.4), (160.0, 1.6), (140.0, 1.0), (120.0, 0.6), (90.0, 0.4), (None, 0.4))
+_ARRANGEMENTS = (
+    (175.0, 2.4),
+    (160.0, 1.6),
+    (140.0, 1.0),
+    (120.0, 0.6),
+    (90.0, 0.4),
+    (None, 1.6),
+    (None, 0.1),
+)
 _ALONE_HEIGHT_PT = 240.0
 _CHECKS = (
     "Patient: both identifiers",
@@ -34,7 +43,6 @@ _CHECKS = (
     "Table: direction and amount",
     "Skin gap measured",
 )
-_PEOPLE = ("Performer", "Verifier")
 
 
 def shift_sheet(view: DayView, page_size: PageSize = "A4") -> bytes:
@@ -49,9 +57,11 @@ def shift_sheet(view: DayView, page_size: PageSize = "A4") -> bytes:
     furniture = _furniture(view)
     if view.status != "ready":
         return build_pdf(furniture, partial(_closed, view), page_size)
-    stories = [partial(_sheet, view, *arrangement) for arrangement in _ARRANGEMENTS]
-    fitting = (s for s in stories if count_pages(furniture, s, page_size) == 1)
-    return build_pdf(furniture, next(fitting, stories[-1]), page_size)
+    for height, padding in _ARRANGEMENTS:
+        story = partial(_sheet, view, height, padding)
+        if count_pages(furniture, story, page_size) == (1 if height else 2):
+            break
+    return build_pdf(furniture, story, page_size)
 
 
 def _furniture(view: DayView) -> Furniture:
@@ -96,13 +106,7 @@ def _table_reference(view: DayView) -> list[Flowable]:
 def _open_matters(departures: tuple[DepartureLine, ...]) -> list[Flowable]:
     if not departures:
         return [para(join(" ", [strong("Open matters:"), safe("none")]))]
-    return [para(strong("Open matters"), style.LEAD), *(_departure(line) for line in departures)]
-
-
-def _departure(line: DepartureLine) -> Flowable:
-    reason = f" (reason: {line.reason})" if line.reason else ""
-    title = strong(f"No. {line.number}, fraction {line.fraction}, {line.kind} ({line.grade}):")
-    return para(join(" ", [title, safe(f"{line.detail}{reason}")]))
+    return [para(strong("Open matters"), style.LEAD), *map(departure_line, departures)]
 
 
 def _sign_off(width: float) -> Table:
@@ -110,15 +114,14 @@ def _sign_off(width: float) -> Table:
     middle = (len(checks) + 1) // 2
     read_back = [
         para(safe("Read back by two people: first box performer, second verifier"), style.SMALL),
-        grid([[checks[:middle], checks[middle:]]], shares(width * 0.6, 1, 1), padding=(0, 1)),
+        grid(
+            [[checks[:middle], checks[middle:]]],
+            shares(width * 0.6, 1, 1),
+            ("VALIGN", (0, 0), (-1, -1), "TOP"),
+            padding=(0, 1),
+        ),
     ]
-    people = grid(
-        [[para(safe(f"{who}: name, signature, time"), style.SMALL)] for who in _PEOPLE],
-        [width * 0.37],
-        ("LINEABOVE", (0, 0), (-1, -1), style.FINE_PT, "black"),
-        ("BOTTOMPADDING", (0, 0), (0, 0), 18),
-        padding=(0, 1),
-    )
+    people = lines_to_fill(width * 0.37, *(f"{who}: {SIGNED}" for who in ("Performer", "Verifier")))
     return grid(
         [[read_back, "", people]],
         shares(width, 60, 3, 37),

@@ -1,0 +1,20 @@
+"""Departures as they are listed on every paper."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from featherlog.paper.fonts import join, safe, strong
+from featherlog.paper.style import para
+
+if TYPE_CHECKING:
+    from reportlab.platypus import Paragraph
+
+    from featherlog.views.common import DepartureLine
+
+
+def departure_line(line: DepartureLine) -> Paragraph:
+    """Return one departure: number, fraction, kind and grade in bold, then what happened."""
+    reason = f" (reason: {line.reason})" if line.reason else ""
+    title = strong(f"No. {line.number}, fraction {line.fraction}, {line.kind} ({line.grade}):")
+    return para(join(" ", [title, safe(f"{line.detail}{reason}")]))
