@@ -72,7 +72,7 @@ def _course(root: Table, sad_cm: float) -> Course:
     field_tables = root.tables("field", at_least=2)
     superior_border, inferior_border = read_borders(field_tables)
     return Course(
-        key=about.take("key", letters(20, also="-")),
+        key=about.take("key", letters(20, dashes=True)),
         patient_name=about.take("patient_name", text(private=True)),
         identifiers=about.named("identifiers", text(private=True)),
         site=about.take("site", text()),

@@ -77,15 +77,15 @@ def text(longest: int = 60, *, empty: bool = False, private: bool = False) -> Ki
     return Kind(f"{allowed}, no space at either end", read, "", private=private)
 
 
-def letters(longest: int, *, also: str = "") -> Kind[str]:
-    """Return the kind of a short label: unaccented letters, digits and what is ``also`` allowed."""
-    pattern = re.compile(rf"[A-Za-z0-9{re.escape(also)}]{{1,{longest}}}")
+def letters(longest: int, *, dashes: bool = False) -> Kind[str]:
+    """Return the kind of a short label of unaccented letters and digits."""
+    pattern = re.compile(rf"[A-Za-z0-9{'-' if dashes else ''}]{{1,{longest}}}")
 
     def read(raw: object) -> str | None:
         return raw if isinstance(raw, str) and pattern.fullmatch(raw) else None
 
-    marks = f"letters, digits or {also}" if also else "letters or digits"
-    return Kind(f"1 to {longest} {marks} in quotes", read, "")
+    marks = "letters, digits or dashes" if dashes else "letters or digits"
+    return Kind(f"1 to {longest} {marks}, in quotes", read, "")
 
 
 def choice(of: type[Choice]) -> Kind[Choice]:
@@ -163,7 +163,7 @@ def point(item: Kind[float]) -> Kind[Point]:
 
 def either(words: Iterable[str]) -> str:
     """List words as alternatives: ``"jaws" or "couch"``."""
-    *most, last = (f'"{word}"' for word in words)
+    *most, last = (f'"{word}"' for word in dict.fromkeys(words))
     return f"{', '.join(most)} or {last}" if most else last
 
 

@@ -30,7 +30,7 @@ def _metersets(course: Course) -> Iterator[Fault]:
 
 
 def _same_names(path: Path, given: Iterable[str], names: list[str]) -> Iterator[Fault]:
-    allowed = either(dict.fromkeys(names))
+    allowed = either(names)
     for name in dict.fromkeys(names):
         if name not in given:
             yield path, f"has no number for {quoted(name)}, but must have one for each name"

@@ -28,11 +28,12 @@ class Reading:
     """One file being read: its tables, where its keys stand and the faults found so far."""
 
     def __init__(self, text: str, name: str) -> None:
+        values = document(text, name)
         self.name = name
         self._lines = key_lines(text)
         self._faults: list[tuple[int, str]] = []
         self._tables: list[Table] = []
-        self.root = Table(self, (), document(text, name))
+        self.root = Table(self, (), values)
 
     def fault(self, path: Path, sentence: str) -> None:
         """Note a fault; ``sentence`` goes on from the path."""
@@ -121,9 +122,9 @@ class Table:
         self._asked[key] = None
         return self._read(key, kind) if self.has(key) else default
 
-    def table(self, key: str) -> Table:
-        """Return a required table."""
-        return Table(self._reading, (*self.path, key), self._table_values(key))
+    def table(self, key: str, allowed: str = "a table") -> Table:
+        """Return a required table; ``allowed`` says more of it where that helps."""
+        return Table(self._reading, (*self.path, key), self._table_values(key, allowed))
 
     def holds_table(self, key: str) -> bool:
         """Tell whether the value of a key is a table."""
@@ -156,9 +157,10 @@ class Table:
 
     def refuse_unknown(self) -> None:
         """Note a fault for every key that was not asked for."""
+        known = list(self._asked)
         for key in self.keys:
-            if key not in self._asked:
-                self.fault(key, _not_known(key, [k for k in self._asked if k != key]))
+            if key not in known:
+                self.fault(key, _not_known(key, known))
 
     def _read(self, key: str, kind: Kind[T]) -> T:
         raw = self.peek(key)
@@ -174,14 +176,14 @@ class Table:
         if self._values is not None:
             self.fault(key, f"is missing, but must be {allowed}")
 
-    def _table_values(self, key: str) -> dict[str, Any] | None:
+    def _table_values(self, key: str, allowed: str) -> dict[str, Any] | None:
         if not self.has(key):
-            self._missing(key, "a table")
+            self._missing(key, allowed)
             return None
         value = self.peek(key)
         if isinstance(value, dict):
             return value
-        self.fault(key, f"is {shown(value)}, but must be a table")
+        self.fault(key, f"is {shown(value)}, but must be {allowed}")
         return None
 
 
@@ -196,5 +198,5 @@ def repeated(names: Iterable[tuple[Path, str]]) -> Iterator[Fault]:
 
 def _not_known(key: str, known: list[str]) -> str:
     close = get_close_matches(key, known, n=1)
-    hint = f"did you mean {close[0]}" if close else f"allowed here: {', '.join(known)}"
+    hint = f"did you mean {close[0]}?" if close else f"allowed here: {', '.join(known)}"
     return f"is not a key that belongs here; {hint}"

@@ -56,6 +56,8 @@ def key_lines(text: str) -> dict[Path, int]:
         if header := _HEADER.match(statement):
             table = _header_path(_key_parts(header[2]), last_place, opens=header[1] == "[[")
             lines.setdefault(table, line)
+            if isinstance(table[-1], int):
+                lines.setdefault(table[:-1], line)
         elif key := _KEY.match(statement):
             lines[table + _key_parts(key[1])] = line
     return lines

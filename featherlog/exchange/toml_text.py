@@ -49,5 +49,5 @@ def _syntax_fault(name: str, message: str) -> str:
     place = re.search(r" \(at line (\d+), column (\d+)\)$", message)
     if place is None:
         return f"{name}: is not valid TOML, {message}"
-    said = message[: place.start()]
+    said = message[:1].lower() + message[1 : place.start()]
     return f"{name} line {place[1]}: is not valid TOML, {said} (column {place[2]})"
