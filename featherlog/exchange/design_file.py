@@ -103,7 +103,7 @@ def _sequence(table: Table) -> SequencePattern:
     pattern = table.take("pattern", choice(Pattern))
     return SequencePattern(
         pattern=pattern,
-        positions=table.take("positions", several(text(8), at_least=1)),
+        positions=table.take("positions", several(letters(8), at_least=1)),
         block_fractions=_block_fractions(table, pattern),
         start_date=table.take("start_date", day()),
         weekdays=table.take_or("weekdays", several(choice(Weekday), at_least=1), _WORKING_WEEK),

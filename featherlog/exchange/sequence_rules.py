@@ -20,23 +20,27 @@ if TYPE_CHECKING:
 def _offset_names(course: Course) -> Iterator[Fault]:
     names = [junction.name for junction in course.junctions]
     for place, position in enumerate(course.positions):
-        yield from _same_names(("position", place, "offset_cm"), position.offset_cm, names)
+        yield from _same_names(
+            ("position", place, "offset_cm"), position.offset_cm, names, "junction"
+        )
 
 
 def _metersets(course: Course) -> Iterator[Fault]:
     names = [beam.name for beam in course.beams]
     for place, position in enumerate(course.positions):
-        yield from _same_names(("position", place, "meterset_mu"), position.meterset_mu, names)
+        yield from _same_names(
+            ("position", place, "meterset_mu"), position.meterset_mu, names, "beam"
+        )
 
 
-def _same_names(path: Path, given: Iterable[str], names: list[str]) -> Iterator[Fault]:
+def _same_names(path: Path, given: Iterable[str], names: list[str], what: str) -> Iterator[Fault]:
     allowed = either(names)
     for name in dict.fromkeys(names):
         if name not in given:
-            yield path, f"has no number for {quoted(name)}, but must have one for each name"
+            yield path, f"has no number for {quoted(name)}, but must have one for each {what}"
     for name in given:
         if name not in names:
-            yield (*path, name), f"is not a name of this course, but must be {allowed}"
+            yield (*path, name), f"is not a {what} of this course, but must be {allowed}"
 
 
 def _reference(course: Course) -> Iterator[Fault]:
