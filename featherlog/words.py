@@ -11,6 +11,10 @@ DOSE_CAUTION = (
     "leaf effects; not a dose calculation. 1 mm of jaw error alone changes the match line by about "
     "10-22 %. Confirm with the planning system and measurement."
 )
+DOSE_MODEL = (
+    "Gaussian beam edges from the settings as rounded, penumbra by depth along each beam; edge "
+    "effects alone (depth factor 1), leakage and jaw transmission outside each beam."
+)
 RECORD_CAUTION = (
     "The department's own treatment record is the record of truth; this ledger stands beside it."
 )
@@ -29,12 +33,46 @@ ROLES = (PHYSICIST, THERAPIST, PHYSICIAN, ADMINISTRATOR)
 STILL_CM = 5e-4
 
 
-def signed(value_cm: float, digits: int = 1) -> str:
-    """Return a length with its sign written and a true minus: ``+1.0``, ``−0.5``, ``0.0``."""
-    text = f"{value_cm:+.{digits}f}"
-    if float(text) == 0:
-        return f"{0:.{digits}f}"
-    return text.replace("-", "−")
+MINUS = "−"
+_PATIENT_POSITIONS = {
+    "HFS": "head first, supine",
+    "HFP": "head first, prone",
+    "FFS": "feet first, supine",
+    "FFP": "feet first, prone",
+}
+
+
+def figure(value: float, least: int = 1, most: int = 2) -> str:
+    """Return a number with a true minus and at least ``least`` decimals, more only when needed.
+
+    Digits beyond ``most`` are rounding noise; a value that a machine can be set to keeps them all.
+    """
+    text = f"{value:.{most}f}"
+    whole, point, decimals = text.partition(".")
+    decimals = decimals.rstrip("0").ljust(least, "0")
+    shown = f"{whole}{point}{decimals}" if decimals else whole
+    return shown.replace("-", MINUS) if float(shown) else shown.replace("-", "")
+
+
+def signed(value: float, least: int = 1, most: int = 2) -> str:
+    """Return ``figure`` with its sign always written, and none on zero."""
+    text = figure(value, least, most)
+    return text if text.startswith(MINUS) or not float(text) else f"+{text}"
+
+
+def meterset(value_mu: float) -> str:
+    """Return a meterset without trailing zeros, which could be misread as tenfold."""
+    return figure(value_mu, least=0, most=2)
+
+
+def patient_position(code: str) -> str:
+    """Return a DICOM patient position with its meaning, or the bare code where there is none."""
+    return f"{code}, {_PATIENT_POSITIONS[code]}" if code in _PATIENT_POSITIONS else code
+
+
+def head_first(code: str) -> bool | None:
+    """Tell whether the head lies toward the gantry; None when the position does not say."""
+    return code.startswith("HF") if code in _PATIENT_POSITIONS else None
 
 
 def toward(move_cm: float) -> str:
@@ -48,7 +86,7 @@ def junction_move(name: str, move_cm: float) -> str:
     """Say what a junction does against the fraction before, in words."""
     if abs(move_cm) < STILL_CM:
         return f"JUNCTION {name} does not move"
-    return f"JUNCTION {name} moves {abs(move_cm):.1f} cm {toward(move_cm)}"
+    return f"JUNCTION {name} moves {figure(abs(move_cm))} cm {toward(move_cm)}"
 
 
 _TABLE_WORDS = (
@@ -61,7 +99,7 @@ _TABLE_WORDS = (
 def table_move(move_cm: tuple[float, float, float]) -> tuple[str, ...]:
     """Say each component of a table move in words with its IEC 61217 sign; empty when none."""
     return tuple(
-        f"TABLE moves {abs(component):.1f} cm {plus if component > 0 else minus} "
+        f"TABLE moves {figure(abs(component))} cm {plus if component > 0 else minus} "
         f"({axis} {signed(component)} cm)"
         for component, (axis, plus, minus) in zip(move_cm, _TABLE_WORDS, strict=True)
         if abs(component) >= STILL_CM
@@ -77,7 +115,7 @@ def jaw_move(jaw: str, change_cm: float, end: str | None) -> str:
     if abs(change_cm) < STILL_CM:
         return ""
     outward = change_cm if jaw.endswith("2") else -change_cm
-    what = f"{'opens' if outward > 0 else 'closes'} {abs(change_cm):.1f} cm"
+    what = f"{'opens' if outward > 0 else 'closes'} {figure(abs(change_cm))} cm"
     if end is None:
         return what
     return f"{what}, {toward(outward if end == 'superior' else -outward)}"

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 from contextlib import contextmanager
+from contextvars import ContextVar
 from dataclasses import dataclass
 from datetime import datetime
 from typing import TYPE_CHECKING, Any
@@ -19,6 +20,7 @@ if TYPE_CHECKING:
     from sqlalchemy import Connection
 
 CLOCK = "FEATHERLOG_CLOCK"
+_practice_time: ContextVar[datetime | None] = ContextVar("practice_time", default=None)
 
 
 @dataclass(frozen=True, slots=True)
@@ -81,24 +83,41 @@ def signing_desk(database: str | None) -> Iterator[Desk]:
         yield _desk(connection)
 
 
+@contextmanager
+def practice_time(moment: datetime) -> Iterator[None]:
+    """Let everything inside happen at a fixed moment; only a practice database takes it."""
+    token = _practice_time.set(moment)
+    try:
+        yield
+    finally:
+        _practice_time.reset(token)
+
+
 def _desk(connection: Connection) -> Desk:
     demo = queries.properties(connection).get("demo") == "yes"
     return Desk(connection, _now(demo=demo), demo)
 
 
 def _now(*, demo: bool) -> datetime:
-    fixed = os.environ.get(CLOCK)
-    if not fixed:
+    fixed = _practice_time.get() or _clock()
+    if fixed is None:
         return datetime.now().astimezone()
     if not demo:
         raise InputError(f"{CLOCK} is set, but only a practice database takes a fixed clock")
+    return fixed
+
+
+def _clock() -> datetime | None:
+    text = os.environ.get(CLOCK)
+    if not text:
+        return None
     try:
-        moment = datetime.fromisoformat(fixed)
+        moment = datetime.fromisoformat(text)
     except ValueError:
         moment = None
     if moment is None or moment.tzinfo is None:
         raise InputError(
-            f"{CLOCK} is {fixed!r}, but must be a time with its offset, such as "
+            f"{CLOCK} is {text!r}, but must be a time with its offset, such as "
             "2026-03-02T09:00:00+01:00"
         )
     return moment

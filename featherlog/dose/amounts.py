@@ -7,34 +7,18 @@ kept here. Nothing is scaled by a mean: a field that stayed behind keeps its own
 from __future__ import annotations
 
 from collections import defaultdict
-from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Iterator
 
     from featherlog.junction.plan import BeamSetting, Plan
+    from featherlog.sequence.progress import DeliveredBeam
 
 Amounts = dict[tuple[str, str], float]
 """Gy through each beam at each position, keyed by position label and beam name."""
 
 _Part = tuple[tuple[str, str], float]
-
-
-@dataclass(frozen=True, slots=True)
-class DeliveredBeam:
-    """One delivery of one beam, whole or part; ``planned_mu`` is its whole meterset, above 0."""
-
-    fraction: int
-    beam: str
-    position: str
-    meterset_mu: float
-    planned_mu: float
-
-    @property
-    def part(self) -> float:
-        """The part of the planned meterset that was delivered."""
-        return self.meterset_mu / self.planned_mu
 
 
 def prescribed_dose_gy(plan: Plan, fraction: int) -> float:

@@ -39,10 +39,11 @@ if TYPE_CHECKING:
 
     from numpy.typing import NDArray
 
-    from featherlog.dose.amounts import Amounts, DeliveredBeam
+    from featherlog.dose.amounts import Amounts
     from featherlog.junction.design import Course, Junction
     from featherlog.junction.machine import Machine
     from featherlog.junction.plan import Plan
+    from featherlog.sequence.progress import DeliveredBeam
 
 # 0.02 cm between grid points, on whole fiftieths so that coordinates print short.
 _POINTS_PER_CM = 50

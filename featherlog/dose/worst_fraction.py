@@ -14,9 +14,9 @@ if TYPE_CHECKING:
     import numpy as np
     from numpy.typing import NDArray
 
-    from featherlog.dose.amounts import DeliveredBeam
     from featherlog.dose.result import DoseFigures
     from featherlog.junction.plan import Plan
+    from featherlog.sequence.progress import DeliveredBeam
 
 
 def figures_by_position(

@@ -158,8 +158,8 @@ def pair_mismatches(upper: PlacedField, lower: PlacedField, point: Point) -> lis
 
 
 def worst(values: Iterable[float]) -> float:
-    """Return the value farthest from zero, with its sign."""
-    return max(values, key=abs)
+    """Return the value farthest from zero, with its sign; a tie goes to the gap."""
+    return max(values, key=lambda value: (round(abs(value), 9), value))
 
 
 def _place(

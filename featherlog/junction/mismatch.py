@@ -124,7 +124,7 @@ def _gap(
         (above.inferior_edge.z_at(x, y) - match_z_cm, match_z_cm - below.superior_edge.z_at(x, y))
         for above, below in product(upper, lower)
     ]
-    return max(parts, key=lambda part: abs(sum(part)), default=None)
+    return max(parts, key=lambda part: (round(abs(sum(part)), 9), sum(part)), default=None)
 
 
 def _lights(beam: PlacedBeam, side: Side) -> bool:

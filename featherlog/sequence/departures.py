@@ -12,6 +12,8 @@ from dataclasses import dataclass
 from itertools import pairwise
 from typing import TYPE_CHECKING
 
+from featherlog.words import figure
+
 if TYPE_CHECKING:
     from collections.abc import Iterable, Mapping, Sequence
 
@@ -81,7 +83,7 @@ def _strips(plan: Plan, field_position: Mapping[str, str]) -> str:
         if above != below:
             what = "no dose" if above > below else "twice the dose"
             found.append(
-                f"a strip of {abs(above - below):.1f} cm at {junction.junction} got {what} of "
+                f"a strip of {figure(abs(above - below))} cm at {junction.junction} got {what} of "
                 "this fraction (ideal edges)"
             )
     return "; ".join(found)

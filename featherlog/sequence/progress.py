@@ -19,7 +19,7 @@ if TYPE_CHECKING:
 
 @dataclass(frozen=True, slots=True)
 class DeliveredBeam:
-    """One beam as delivered in one record: position, meterset and the meterset planned there."""
+    """One delivery of one beam, whole or part; ``planned_mu`` is its whole meterset, above 0."""
 
     fraction: int
     field: str
@@ -27,6 +27,11 @@ class DeliveredBeam:
     position: str
     meterset_mu: float
     planned_mu: float
+
+    @property
+    def part(self) -> float:
+        """The part of the planned meterset that was delivered."""
+        return self.meterset_mu / self.planned_mu
 
 
 @dataclass(frozen=True, slots=True)
@@ -76,7 +81,7 @@ def _state(
 ) -> FractionState:
     parts = dict.fromkeys(names, 0.0)
     for row in rows:
-        parts[row.beam] += row.meterset_mu / row.planned_mu
+        parts[row.beam] += row.part
     given = [row for row in rows if row.meterset_mu > 0] or rows
     least = 1 - meterset_percent / 100
     return FractionState(

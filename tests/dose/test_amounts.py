@@ -4,17 +4,17 @@ import pytest
 from small_plans import beam, half_beam_plan, plan, position
 
 from featherlog.dose.amounts import (
-    DeliveredBeam,
     completed_dose_gy,
     delivered_amounts,
     planned_amounts,
     predicted_amounts,
     unfeathered_amounts,
 )
+from featherlog.sequence.progress import DeliveredBeam
 
 
 def whole(fraction: int, beam_name: str, label: str) -> DeliveredBeam:
-    return DeliveredBeam(fraction, beam_name, label, 100.0, 100.0)
+    return DeliveredBeam(fraction, "field", beam_name, label, 100.0, 100.0)
 
 
 def both(fraction: int, label: str) -> list[DeliveredBeam]:
@@ -22,7 +22,7 @@ def both(fraction: int, label: str) -> list[DeliveredBeam]:
 
 
 def part(fraction: int, beam_name: str, label: str, percent: float) -> DeliveredBeam:
-    return DeliveredBeam(fraction, beam_name, label, 1.2 * percent, 120.0)
+    return DeliveredBeam(fraction, "field", beam_name, label, 1.2 * percent, 120.0)
 
 
 def test_the_plan_gives_each_position_its_fractions() -> None:

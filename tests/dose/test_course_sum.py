@@ -22,10 +22,11 @@ from small_plans import (
     toward_source,
 )
 
-from featherlog.dose.amounts import DeliveredBeam, delivered_amounts, planned_amounts
+from featherlog.dose.amounts import delivered_amounts, planned_amounts
 from featherlog.dose.course_sum import AxisLine, edge_on_line, line_dose
 from featherlog.geometry.patient import PatientPosition
 from featherlog.geometry.planes import EdgePlane
+from featherlog.sequence.progress import DeliveredBeam
 
 if TYPE_CHECKING:
     from collections.abc import Collection
@@ -204,7 +205,9 @@ def late(field: str, fractions: Collection[int]) -> list[DeliveredBeam]:
     for number in range(1, 14):
         for name in ("UPPER", "LOWER"):
             stays = number <= 5 or (name == field and number in fractions)
-            deliveries.append(DeliveredBeam(number, name, "A" if stays else "B", 100.0, 100.0))
+            deliveries.append(
+                DeliveredBeam(number, "field", name, "A" if stays else "B", 100.0, 100.0)
+            )
     return deliveries
 
 

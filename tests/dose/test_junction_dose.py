@@ -8,11 +8,11 @@ from typing import TYPE_CHECKING
 import pytest
 from small_plans import beam, course, half_beam_plan, machine, plan, position, quality
 
-from featherlog.dose.amounts import DeliveredBeam
 from featherlog.dose.course_sum import AxisLine
 from featherlog.dose.junction_dose import junction_doses
 from featherlog.dose.window import junction_window
 from featherlog.geometry.patient import PatientPosition
+from featherlog.sequence.progress import DeliveredBeam
 
 if TYPE_CHECKING:
     from featherlog.dose.result import DoseCurve
@@ -21,7 +21,9 @@ ALDER = machine(quality(0.6))
 
 
 def both(fraction: int, label: str) -> list[DeliveredBeam]:
-    return [DeliveredBeam(fraction, name, label, 100.0, 100.0) for name in ("UPPER", "LOWER")]
+    return [
+        DeliveredBeam(fraction, "field", name, label, 100.0, 100.0) for name in ("UPPER", "LOWER")
+    ]
 
 
 def curves(
@@ -91,8 +93,8 @@ def test_a_fraction_too_many_shows_as_excess() -> None:
 
 def test_a_wrong_position_stays_in_the_prediction() -> None:
     deliveries = [
-        DeliveredBeam(1, "UPPER", "A", 100.0, 100.0),
-        DeliveredBeam(1, "LOWER", "B", 100.0, 100.0),
+        DeliveredBeam(1, "field", "UPPER", "A", 100.0, 100.0),
+        DeliveredBeam(1, "field", "LOWER", "B", 100.0, 100.0),
     ]
     by_name = curves("AAAAAA", deliveries)
     assert by_name["planned"].figures.minimum_percent == pytest.approx(100.0)

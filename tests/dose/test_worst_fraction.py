@@ -4,10 +4,10 @@ import numpy as np
 import pytest
 from small_plans import half_beam_plan, machine, quality
 
-from featherlog.dose.amounts import DeliveredBeam
 from featherlog.dose.course_sum import AxisLine
 from featherlog.dose.worst_fraction import figures_by_fraction, figures_by_position
 from featherlog.geometry.patient import PatientPosition
+from featherlog.sequence.progress import DeliveredBeam
 
 Z_CM = np.arange(-250, 151) / 50
 
@@ -30,10 +30,12 @@ def test_a_fraction_with_one_field_left_behind_by_a_step(
     width_cm: float, percent: float, behind: str
 ) -> None:
     deliveries = [
-        DeliveredBeam(2, name, "A" if name == behind else "B", 100.0, 100.0)
+        DeliveredBeam(2, "field", name, "A" if name == behind else "B", 100.0, 100.0)
         for name in ("UPPER", "LOWER")
     ]
-    deliveries += [DeliveredBeam(1, name, "A", 100.0, 100.0) for name in ("UPPER", "LOWER")]
+    deliveries += [
+        DeliveredBeam(1, "field", name, "A", 100.0, 100.0) for name in ("UPPER", "LOWER")
+    ]
     good, bad = figures_by_fraction(Z_CM, line(width_cm), half_beam_plan("AB"), deliveries).values()
     assert (good.maximum_percent, good.minimum_percent) == pytest.approx((100, 100))
     extreme = bad.maximum_percent if behind == "LOWER" else 200 - bad.minimum_percent

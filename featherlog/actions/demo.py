@@ -1,0 +1,135 @@
+"""A fictional department in a folder of its own, with two courses at different stages."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from datetime import datetime
+from typing import TYPE_CHECKING
+
+from featherlog.actions import database as databases
+from featherlog.actions.confirm import ReadBack, confirm
+from featherlog.actions.designs import approve, check, prepare
+from featherlog.actions.desk import practice_time
+from featherlog.actions.dose import dose, write_pictures
+from featherlog.actions.files import write_private
+from featherlog.actions.machines import add_machine
+from featherlog.actions.papers import review_page, sheet
+from featherlog.actions.record import Delivery, record
+from featherlog.actions.staff import add_staff
+from featherlog.actions.today import due_list, today
+from featherlog.errors import RefusedError
+from featherlog.exchange.demo import DEMO_DESIGNS, DEMO_MACHINE, demo_text
+
+if TYPE_CHECKING:
+    from collections.abc import Iterator
+    from pathlib import Path
+
+    from featherlog.views.day import DayView, DueList
+    from featherlog.views.dose import DoseView
+
+ADMINISTRATOR, PHYSICIST, CHECKER = "Hazel Heron", "Rowan Finch", "Linden Wren"
+THERAPIST, SECOND_THERAPIST, PHYSICIAN = "Ash Plover", "Maple Teal", "Aspen Crane"
+_STAFF = (
+    (ADMINISTRATOR, "administrator"),
+    (PHYSICIST, "physicist"),
+    (CHECKER, "physicist"),
+    (THERAPIST, "therapist"),
+    (SECOND_THERAPIST, "therapist"),
+    (PHYSICIAN, "physician"),
+)
+THIGH, BREAST = "FH-2041", "FH-2042"
+_TODAY = "2026-03-09T08:30"
+_OFFSET = "+01:00"
+# Treated so far: the day, and the position of each field where it was not the planned one.
+_THIGH_DAYS = ("2026-03-02", "2026-03-03", "2026-03-04", "2026-03-05", "2026-03-06")
+_BREAST_DAYS = ("2026-03-04", "2026-03-05", "2026-03-06")
+_BREAST_MISTAKE_ON = "2026-03-05"
+
+
+@dataclass(frozen=True, slots=True)
+class Demo:
+    """What the demo built, as it stands on its own fixed morning."""
+
+    folder: Path
+    database: Path
+    due: DueList
+    day: DayView
+    dose: DoseView
+    files: tuple[Path, ...]
+
+
+def build_demo(folder: Path) -> Demo:
+    """Build the demo in a folder, or look at the one that is there.
+
+    Raises RefusedError where the folder holds a database that is not for practice.
+    """
+    folder.mkdir(parents=True, exist_ok=True)
+    file = folder / "featherlog.db"
+    database = str(file)
+    if not file.exists():
+        _build(folder, database)
+    elif not databases.status(database).demo:
+        raise RefusedError(f"{file} is not a practice database; name another --folder")
+    with practice_time(_at(_TODAY)):
+        return Demo(
+            folder=folder,
+            database=file,
+            due=due_list(database, day=None, machine=None),
+            day=today(database, THIGH),
+            dose=dose(database, THIGH),
+            files=tuple(_papers(folder, database)),
+        )
+
+
+def _build(folder: Path, database: str) -> None:
+    for name in (DEMO_MACHINE, *DEMO_DESIGNS):
+        (folder / name).write_text(demo_text(name), encoding="utf-8")
+    databases.create(database, demo=True)
+    with practice_time(_at("2026-02-27T14:00")):
+        for name, role in _STAFF:
+            add_staff(database, name=name, role=role, by=ADMINISTRATOR)
+        add_machine(database, folder / DEMO_MACHINE, by=PHYSICIST)
+        for name in DEMO_DESIGNS:
+            key, _, _ = prepare(database, folder / name, by=PHYSICIST)
+            check(database, key, by=CHECKER)
+            approve(database, key, by=PHYSICIAN)
+    for day in _THIGH_DAYS:
+        _treat(database, THIGH, f"{day}T09:00")
+    for day in _BREAST_DAYS:
+        mistake = "A" if day == _BREAST_MISTAKE_ON else None
+        _treat(database, BREAST, f"{day}T10:00", position=mistake)
+
+
+def _treat(database: str, key: str, when: str, position: str | None = None) -> None:
+    with practice_time(_at(when)):
+        planned = today(database, key).position
+        confirm(
+            database,
+            key,
+            by=THERAPIST,
+            verified_by=SECOND_THERAPIST,
+            read_back=ReadBack(planned, None, {}),
+        )
+        record(
+            database,
+            key,
+            by=THERAPIST,
+            verified_by=SECOND_THERAPIST,
+            delivery=Delivery(None, position, {}, {}, {}, ""),
+        )
+
+
+def _papers(folder: Path, database: str) -> Iterator[Path]:
+    view, pdf = sheet(database, THIGH)
+    file = folder / f"{THIGH}-fraction-{view.fraction}.pdf"
+    write_private(file, pdf)
+    yield file
+    _, pdf = review_page(database, BREAST)
+    file = folder / f"{BREAST}-review.pdf"
+    write_private(file, pdf)
+    yield file
+    yield from write_pictures(dose(database, THIGH), folder / f"{THIGH}-dose.svg")
+
+
+def _at(moment: str) -> datetime:
+    return datetime.fromisoformat(f"{moment}{_OFFSET}")

@@ -1,0 +1,224 @@
+"""The therapist's commands, in the order of a day: today, sheet, confirm, record."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING, Annotated
+
+import typer
+
+from featherlog.cli.options import (
+    By,
+    CourseKey,
+    Database,
+    Gaps,
+    Json,
+    Output,
+    PaperSize,
+    VerifiedBy,
+    named_numbers,
+    named_texts,
+)
+from featherlog.cli.output import remark, show, show_json, wrapped
+
+if TYPE_CHECKING:
+    from featherlog.actions.record import Recorded
+
+
+def today(
+    course: Annotated[
+        str | None, typer.Argument(metavar="[COURSE]", help="One course; without it, the list.")
+    ] = None,
+    machine: Annotated[
+        str | None, typer.Option("--machine", metavar="NAME", help="Only this machine's courses.")
+    ] = None,
+    date: Annotated[
+        str | None, typer.Option("--date", metavar="DATE", help="List this day (2026-03-02).")
+    ] = None,
+    json: Json = False,
+    database: Database = None,
+) -> None:
+    """Show the courses due, or what to set for one course's next fraction.
+
+    \b
+    Example: featherlog today FH-2041
+    """
+    from featherlog.actions import today as action
+    from featherlog.cli.show_day import day_text, due_text
+    from featherlog.errors import InputError
+
+    if course is None:
+        due = action.due_list(database, day=date, machine=machine)
+        show_json(due) if json else show(due_text(due))
+        return
+    if date is not None or machine is not None:
+        raise InputError("--date and --machine belong to the list; leave them out with a COURSE")
+    view = action.today(database, course)
+    show_json(view) if json else show(day_text(view))
+
+
+def sheet(
+    course: CourseKey,
+    output: Output = None,
+    page_size: PaperSize = "A4",
+    database: Database = None,
+) -> None:
+    """Write the shift sheet of the next fraction as PDF.
+
+    \b
+    Example: featherlog sheet FH-2041 --output sheet.pdf
+    """
+    from featherlog.actions.files import write_private
+    from featherlog.actions.papers import sheet as action
+
+    view, pdf = action(database, course, page_size=page_size)
+    file = output or Path(f"{course}-fraction-{view.fraction}.pdf")
+    write_private(file, pdf)
+    show(f"{file}: fraction {view.fraction}, position {view.position}, code {view.page_code}")
+
+
+def confirm(
+    course: CourseKey,
+    by: By,
+    verified_by: VerifiedBy,
+    position: Annotated[
+        str | None,
+        typer.Option(
+            "--position",
+            metavar="LABEL",
+            help="The position read back from the console; needed on a shift day.",
+        ),
+    ] = None,
+    page: Annotated[
+        str | None, typer.Option("--sheet", metavar="CODE", help="The code on the sheet in hand.")
+    ] = None,
+    gap: Gaps = None,
+    json: Json = False,
+    database: Database = None,
+) -> None:
+    """Confirm the next fraction before the beam; stops with a reason where it must.
+
+    \b
+    Example: featherlog confirm FH-2041 --by "Ash Plover" --with "Maple Teal" --position B
+    """
+    from featherlog.actions.confirm import ReadBack
+    from featherlog.actions.confirm import confirm as action
+    from featherlog.cli.show_day import confirmed_text
+
+    read_back = ReadBack(position, page, named_numbers(gap, "--gap", "cm"))
+    view = action(database, course, by=by, verified_by=verified_by, read_back=read_back)
+    show_json(view) if json else show(confirmed_text(view))
+
+
+def record(
+    course: CourseKey,
+    by: By,
+    verified_by: VerifiedBy,
+    fraction: Annotated[
+        int | None,
+        typer.Option("--fraction", metavar="N", help="The fraction, when not the one due."),
+    ] = None,
+    position: Annotated[
+        str | None,
+        typer.Option("--position", metavar="LABEL", help="Where, when not as confirmed."),
+    ] = None,
+    field_position: Annotated[
+        list[str] | None,
+        typer.Option("--field-position", metavar="FIELD=LABEL", help="One field's own position."),
+    ] = None,
+    meterset: Annotated[
+        list[str] | None,
+        typer.Option("--meterset", metavar="BEAM=MU", help="MU delivered, when not all of it."),
+    ] = None,
+    gap: Gaps = None,
+    reason: Annotated[
+        str | None,
+        typer.Option("--reason", metavar="TEXT", help="Why it differs, where it does."),
+    ] = None,
+    json: Json = False,
+    database: Database = None,
+) -> None:
+    """Record a fraction after the beam, as confirmed unless said otherwise.
+
+    What differs from the plan is recorded all the same and becomes a departure.
+
+    \b
+    Example: featherlog record FH-2041 --by "Ash Plover" --with "Maple Teal"
+    """
+    from featherlog.actions.record import Delivery
+    from featherlog.actions.record import record as action
+
+    delivery = Delivery(
+        fraction=fraction,
+        position=position,
+        field_positions=named_texts(field_position, "--field-position"),
+        metersets_mu=named_numbers(meterset, "--meterset", "MU"),
+        gaps_cm=named_numbers(gap, "--gap", "cm"),
+        reason=reason or "",
+    )
+    result = action(database, course, by=by, verified_by=verified_by, delivery=delivery)
+    show_json(result) if json else show(_recorded_text(result))
+    if result.departures and not result.explained:
+        remark(
+            wrapped(
+                "No reason was given for what differs; add it with `featherlog explain "
+                f"{course} NUMBER --reason ... --by ...` (numbers: `featherlog departures "
+                f"{course}`)."
+            )
+        )
+
+
+def _recorded_text(result: Recorded) -> str:
+    where = ", ".join(f"{field} at {place}" for field, place in result.positions)
+    state = "complete" if result.complete else "NOT COMPLETE: the remainder is still to be given"
+    lines = [
+        wrapped(f"Recorded fraction {result.fraction} ({where}), {state}. Entry {result.entry}.")
+    ]
+    lines += [
+        wrapped(f"DEPARTURE ({line.kind}, {line.grade}): {line.detail}")
+        for line in result.departures
+    ]
+    lines.append(
+        "All prescribed fractions are complete."
+        if result.next_fraction is None
+        else f"Next: fraction {result.next_fraction} at position {result.next_position}, "
+        f"projected {result.next_date}."
+    )
+    return "\n".join(lines)
+
+
+def departures(course: CourseKey, json: Json = False, database: Database = None) -> None:
+    """List what was delivered differently, with the reasons given.
+
+    \b
+    Example: featherlog departures FH-2042
+    """
+    from featherlog.actions.departures import list_departures
+    from featherlog.cli.show_review import departures_text
+
+    lines = list_departures(database, course)
+    show_json(lines) if json else show(departures_text(lines))
+
+
+def explain(
+    course: CourseKey,
+    number: Annotated[int, typer.Argument(metavar="NUMBER", help="The departure's number.")],
+    reason: Annotated[str, typer.Option("--reason", metavar="TEXT", help="Why it happened.")],
+    by: By,
+    database: Database = None,
+) -> None:
+    """Give the reason for an open departure.
+
+    \b
+    Example: featherlog explain FH-2042 1 --reason "sheet misread" --by "Rowan Finch"
+    """
+    from featherlog.actions.departures import explain as action
+
+    action(database, course, number, by=by, reason=reason)
+    show(f"Departure {number} of {course} now has its reason.")
+
+
+def register(app: typer.Typer) -> None:
+    """Put these commands on the program."""
+    for command in (today, sheet, confirm, record, departures, explain):
+        app.command()(command)

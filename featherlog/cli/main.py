@@ -1,0 +1,65 @@
+"""The program's entry: every command in its place, every failure in one sentence."""
+
+from __future__ import annotations
+
+import os
+import sys
+from typing import Annotated
+
+import typer
+
+from featherlog import __version__
+from featherlog.cli import chart_round, console, physicist, setup
+from featherlog.cli.output import remark, show
+from featherlog.errors import FeatherlogError
+
+app = typer.Typer(
+    name="featherlog",
+    help="Where the junction of matched fields is today, why, and what it has added up to.",
+    # Rich mark-up in help texts costs a third of the start-up time.
+    rich_markup_mode=None,
+    pretty_exceptions_enable=False,
+    context_settings={"help_option_names": ["-h", "--help"]},
+    epilog="Example: featherlog demo",
+)
+for module in (console, physicist, chart_round, setup):
+    module.register(app)
+
+
+@app.callback(invoke_without_command=True)
+def main(
+    context: typer.Context,
+    version: Annotated[bool, typer.Option("--version", help="Print the version.")] = False,
+    debug: Annotated[
+        bool, typer.Option("--debug", help="On a failure of the program, print its traceback.")
+    ] = False,
+) -> None:
+    """Where the junction of matched fields is today, why, and what it has added up to."""
+    if debug:
+        os.environ["FEATHERLOG_DEBUG"] = "1"
+    if version:
+        show(f"featherlog {__version__}")
+        raise typer.Exit
+    if context.invoked_subcommand is None:
+        show(context.get_help())
+
+
+def run() -> None:
+    """Run the command line; failures become one sentence and an exit code."""
+    try:
+        app()
+    except FeatherlogError as error:
+        remark("\n".join(f"featherlog: {line}" for line in str(error).splitlines()))
+        sys.exit(error.exit_code)
+    except BrokenPipeError:
+        # The reader of our output went away; there is nobody left to tell.
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        sys.exit(1)
+    except Exception as error:
+        if os.environ.get("FEATHERLOG_DEBUG"):
+            raise
+        remark(
+            f"featherlog: the program failed ({type(error).__name__}); nothing was written. Run "
+            "`featherlog --debug ...` for the details."
+        )
+        sys.exit(FeatherlogError.exit_code)
