@@ -5,6 +5,8 @@ from __future__ import annotations
 from functools import partial
 from typing import TYPE_CHECKING, Any
 
+from reportlab.platypus import KeepTogether
+
 from featherlog.paper import style
 from featherlog.paper.departures import departure_line
 from featherlog.paper.dose_picture import dose_drawing, figures_table, legend
@@ -153,9 +155,12 @@ def _profiles(view: ReviewView, width: float) -> list[Flowable]:
         legend([item.name for item in shown[0][1].curves], width),
         *(_profile_row(row, width) for row in rows),
         space(3),
-        figures_table([(f"{j.junction}, {line.place}", line) for j, line in shown], width),
-        para(safe(view.dose.model), style.SMALL),
+        KeepTogether([_figures(shown, width), para(safe(view.dose.model), style.SMALL)]),
     ]
+
+
+def _figures(shown: Sequence[tuple[JunctionDose, DoseLine]], width: float) -> Table:
+    return figures_table([(f"{j.junction}, {line.place}", line) for j, line in shown], width)
 
 
 def _profile_row(shown: Sequence[tuple[JunctionDose, DoseLine]], width: float) -> Table:

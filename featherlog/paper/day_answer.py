@@ -4,10 +4,9 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from reportlab.pdfbase.pdfmetrics import stringWidth
-
 from featherlog.paper import style
-from featherlog.paper.fonts import BOLD, plain, register, safe, strong
+from featherlog.paper.fonts import safe, strong
+from featherlog.paper.ink import label_width
 from featherlog.paper.layout import space
 from featherlog.paper.style import display, grid, para, shares
 from featherlog.paper.wording import figure
@@ -46,8 +45,7 @@ def answer_box(view: DayView, width: float) -> Table:
 
 
 def _letter(position: str, width: float) -> Flowable:
-    register()
-    wide = stringWidth(plain(position), BOLD, 1)
+    wide = label_width(position, bold=True, size=1)
     size = min(_LARGEST_PT, max(_LEAST_PT, width / max(wide, 0.1)))
     return para(safe(position), display(size, centred=True))
 
@@ -66,7 +64,8 @@ def _shift(view: DayView, width: float) -> list[Flowable]:
         lines.append(para(safe(f"{view.previous_position} → {view.position}"), display(18)))
     if view.shift_words:
         lines.append(para(safe(view.shift_words), style.BODY))
-    lines += [para(safe(junction.words), style.LEAD) for junction in view.junctions]
+    if view.shift != "first":
+        lines += [para(safe(junction.words), style.LEAD) for junction in view.junctions]
     return lines
 
 

@@ -100,7 +100,7 @@ def _gaps(gaps: tuple[GapView, ...], width: float) -> Table:
         rows.append(
             [
                 para(safe(gap.side)),
-                para(strong(figure(gap.expected_cm)), style.LEAD),
+                _expected(gap),
                 para(safe(f"{figure(low)} to {figure(high)}")),
                 "",
             ]
@@ -115,3 +115,8 @@ def _gaps(gaps: tuple[GapView, ...], width: float) -> Table:
         ("TOPPADDING", (0, 1), (-1, -1), 3),
         ("BOTTOMPADDING", (0, 1), (-1, -1), 3),
     )
+
+
+def _expected(gap: GapView) -> Flowable:
+    overlap = " overlap" if gap.expected_cm < 0 else ""
+    return para(strong(f"{figure(gap.expected_cm)}{overlap}"), style.LEAD)

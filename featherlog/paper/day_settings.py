@@ -37,6 +37,7 @@ _PARTS = (100, 37, 33, 35, 36, 42, 46, 108, 82, 16)
 _NUMBERS = range(1, 6)
 _FIELD_LINE = ParagraphStyle("field", parent=style.BODY, leading=13)
 _NEW_VALUE_PT = 11
+_SPACE = "\N{NO-BREAK SPACE}" * 2
 _JAW_LINE = ParagraphStyle("jaw", parent=style.BODY, leading=12)
 _EDGE_COLUMN = 6
 
@@ -50,7 +51,7 @@ def settings_table(view: DayView, width: float, padding: float) -> Table:
     commands: list[tuple[Any, ...]] = [("RIGHTPADDING", (5, 0), (5, -1), 6)]
     for field in view.fields:
         commands += _field_rules(len(rows))
-        rows.append([_field_line(field)] + [""] * (len(_HEADS) - 1))
+        rows.append([_field_line(field, first=view.shift == "first")] + [""] * (len(_HEADS) - 1))
         for beam in field.beams:
             first = len(rows)
             rows += _beam_rows(beam, part=view.part_delivered)
@@ -86,10 +87,10 @@ def _changed_frame(row: int) -> tuple[Any, ...]:
     return ("BOX", (_EDGE_COLUMN, row), (-1, row), style.RULE_PT, "black")
 
 
-def _field_line(field: FieldView) -> list[Any]:
+def _field_line(field: FieldView, *, first: bool) -> list[Any]:
     name = Markup(f'<font size="11">{strong(field.field)}</font>')
     facts = [name, safe(f"moved by {field.moved_by}")]
-    if not field.since_last.words:
+    if not first and not field.since_last.words:
         facts.append(safe("TABLE stays as in the last fraction"))
     before = field.from_field_before.words if field.from_field_before else ()
     return [
@@ -154,6 +155,6 @@ def _jaw_cells(jaws: tuple[JawView, ...]) -> list[Any]:
 
 def _jaw(jaw: JawView) -> Markup:
     if jaw.previous_cm is not None and _changed((jaw,)):
-        old = safe(f"{jaw.jaw}  {figure(jaw.previous_cm)} →")
+        old = safe(f"{jaw.jaw}{_SPACE}{figure(jaw.previous_cm)} →")
         return Markup(f'{old} <font size="{_NEW_VALUE_PT}">{strong(figure(jaw.cm))}</font>')
-    return safe(f"{jaw.jaw}  {figure(jaw.cm)}")
+    return safe(f"{jaw.jaw}{_SPACE}{figure(jaw.cm)}")

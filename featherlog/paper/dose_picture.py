@@ -6,12 +6,11 @@ from functools import partial
 from typing import TYPE_CHECKING, Any
 
 from reportlab.graphics import renderSVG
-from reportlab.graphics.shapes import Drawing
 from reportlab.platypus import PageBreak
 
 from featherlog.errors import NotFoundError
 from featherlog.paper import ink, style
-from featherlog.paper.fonts import BOLD, REGULAR, join, register, safe, strong
+from featherlog.paper.fonts import BOLD, REGULAR, join, safe, strong
 from featherlog.paper.layout import Furniture, build_pdf, space
 from featherlog.paper.plot import Axes, add_axes, add_levels, add_marks
 from featherlog.paper.style import grid, para, shares
@@ -21,6 +20,7 @@ from featherlog.words import DOSE_CAUTION
 if TYPE_CHECKING:
     from collections.abc import Sequence
 
+    from reportlab.graphics.shapes import Drawing
     from reportlab.platypus import Flowable, Table
 
     from featherlog.paper.ink import Dash
@@ -67,7 +67,6 @@ def dose_drawing(
         NotFoundError: The junction has no profile of that name.
         InputError: A label holds a character that the font cannot print.
     """
-    register()
     line = _line(junction, place)
     axes = Axes(
         left=_LEFT_PT,
@@ -77,7 +76,7 @@ def dose_drawing(
         z_range_cm=(min(line.z_cm), max(line.z_cm)),
         dose_range_gy=_dose_range(line, junction.reference_dose_gy),
     )
-    drawing = Drawing(width, height)
+    drawing = ink.blank(width, height)
     add_marks(drawing, axes, junction.position_z_cm)
     add_levels(drawing, axes, _levels(junction.reference_dose_gy))
     for item in sorted(line.curves, key=_depth_of_ink):
@@ -90,8 +89,7 @@ def dose_drawing(
 
 def legend(names: Sequence[str], width: float) -> Drawing:
     """Return the legend alone, for pictures that stand side by side."""
-    register()
-    drawing = Drawing(width, _LEGEND_PT)
+    drawing = ink.blank(width, _LEGEND_PT)
     _add_legend(drawing, names, 2)
     return drawing
 

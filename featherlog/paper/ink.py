@@ -8,7 +8,7 @@ from reportlab.graphics.shapes import Drawing, Line, Polygon, PolyLine, String
 from reportlab.lib.colors import Color, black, white
 from reportlab.pdfbase.pdfmetrics import stringWidth
 
-from featherlog.paper.fonts import BOLD, REGULAR, plain
+from featherlog.paper.fonts import BOLD, REGULAR, plain, register
 from featherlog.paper.style import FINE_PT, HAIR_PT, SMALLEST_PT
 
 if TYPE_CHECKING:
@@ -23,6 +23,12 @@ TINT = Color(0.91, 0.91, 0.91)
 BLACK = black
 GREY = Color(0.55, 0.55, 0.55)
 LABEL_PT = SMALLEST_PT
+
+
+def blank(width: float, height: float) -> Drawing:
+    """Return an empty drawing (points) that starts in the family's font, not an unembedded one."""
+    register()
+    return Drawing(width, height, initialFontName=REGULAR)
 
 
 def line(

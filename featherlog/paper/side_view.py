@@ -5,15 +5,14 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
-from reportlab.graphics.shapes import Drawing
-
 from featherlog.paper import ink
-from featherlog.paper.fonts import register
 from featherlog.paper.style import HAIR_PT, RULE_PT
 from featherlog.paper.wording import figure, head_first
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
+
+    from reportlab.graphics.shapes import Drawing
 
     from featherlog.paper.ink import Point
     from featherlog.views.day import EdgeView, JunctionView, SideView
@@ -40,7 +39,7 @@ class _Scale:
     def at(self, z_cm: float, depth_cm: float) -> Point:
         middle = (self.left + self.right) / 2
         across = middle - (z_cm - self.centre_z_cm) * self.per_cm
-        return min(max(across, self.left), self.right), self.skin - depth_cm * self.per_cm
+        return across, self.skin - depth_cm * self.per_cm
 
 
 def side_drawing(
@@ -54,19 +53,11 @@ def side_drawing(
     Raises:
         InputError: A name holds a character that the font cannot print.
     """
-    register()
     side = junction.side_view
     names = _depth_labels(side)
     gutter = max(ink.label_width(text) for text, _ in names) + 8
-    skin = height - _TOP_PT
-    scale = _Scale(
-        left=0.0,
-        right=width - gutter,
-        skin=skin,
-        per_cm=(skin - _BOTTOM_PT) / side.depth_cm,
-        centre_z_cm=side.match_z_cm,
-    )
-    drawing = Drawing(width, height)
+    scale = _fit(side, width - gutter, height - _TOP_PT)
+    drawing = ink.blank(width, height)
     _add_fields(drawing, scale, side)
     _add_depths(drawing, scale, side, names)
     _add_edges(drawing, scale, side)
@@ -74,6 +65,17 @@ def side_drawing(
     _add_ends(drawing, scale, junction, patient_position)
     _add_foot(drawing, scale, side)
     return drawing
+
+
+def _fit(side: SideView, width: float, skin: float) -> _Scale:
+    """Return the largest scale at which the whole depth and every edge are inside."""
+    edges = (*side.superior_edges, *side.inferior_edges, *side.previous_edges)
+    reach_cm = max(
+        abs(z - side.match_z_cm) for e in edges for z in (e.z_at_skin_cm, e.z_at_depth_cm)
+    )
+    by_height = (skin - _BOTTOM_PT) / side.depth_cm
+    per_cm = min(by_height, width / 2 / max(reach_cm, 1.0))
+    return _Scale(0.0, width, skin, per_cm, side.match_z_cm)
 
 
 def _depth_labels(side: SideView) -> list[tuple[str, float]]:

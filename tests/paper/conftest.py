@@ -58,7 +58,9 @@ def jaws(superior: float, inferior: float, was_inferior: float | None) -> tuple[
     )
 
 
-def beam(name: str, gantry: float, collimator: float, inferior: float, was: float | None) -> BeamView:
+def beam(
+    name: str, gantry: float, collimator: float, inferior: float, was: float | None
+) -> BeamView:
     return BeamView(
         beam=name,
         energy="6 MV",
@@ -181,7 +183,9 @@ def still(view: DayView) -> DayView:
         shift_words="second of 5 fractions at position B",
         previous_position="B",
         fields=fields,
-        junctions=tuple(junction(j.junction, j.superior_field, j.inferior_field, 0.0) for j in view.junctions),
+        junctions=tuple(
+            junction(j.junction, j.superior_field, j.inferior_field, 0.0) for j in view.junctions
+        ),
     )
 
 
@@ -196,13 +200,19 @@ def first_day(no_shift_day: DayView) -> DayView:
         replace(
             f,
             beams=tuple(
-                replace(b, jaws=tuple(replace(j, previous_cm=None) for j in b.jaws)) for b in f.beams
+                replace(b, jaws=tuple(replace(j, previous_cm=None) for j in b.jaws))
+                for b in f.beams
             ),
         )
         for f in no_shift_day.fields
     )
     return replace(
-        no_shift_day, fraction=1, shift="first", shift_words="", previous_position=None, fields=fields
+        no_shift_day,
+        fraction=1,
+        shift="first",
+        shift_words="",
+        previous_position=None,
+        fields=fields,
     )
 
 
@@ -228,8 +238,7 @@ def stop_day(shift_day: DayView) -> DayView:
         shift_day,
         status="stop",
         stop_reasons=(
-            "Fraction 5 is incomplete on field Upper spine; finish it before any shift. "
-            "Call the physicist, Hazel Wren.",
+            "Fraction 5 is incomplete on field Upper spine. Call the physicist, Hazel Wren.",
             "The sequence was superseded by revision 3, which is not approved.",
         ),
     )
@@ -262,14 +271,19 @@ def crowded_day(shift_day: DayView) -> DayView:
     )
 
 
-def profile(z: list[float], positions: tuple[float, ...], gap: float, dose: float) -> tuple[float, ...]:
+def profile(
+    z: list[float], positions: tuple[float, ...], gap: float, dose: float
+) -> tuple[float, ...]:
     def cumulative(t: float) -> float:
         return 0.5 * (1 + math.erf(t / math.sqrt(2)))
 
     sigma = 0.3
     return tuple(
         dose
-        * sum(1 - cumulative((x - p + gap / 2) / sigma) + cumulative((x - p - gap / 2) / sigma) for p in positions)
+        * sum(
+            1 - cumulative((x - p + gap / 2) / sigma) + cumulative((x - p - gap / 2) / sigma)
+            for p in positions
+        )
         / len(positions)
         for x in z
     )
@@ -355,7 +369,12 @@ def review(heading: Heading, dose_view: DoseView) -> ReviewView:
         delivered_fractions=7,
         departures=(
             DepartureLine(
-                2, 6, "other position", "incoherent", "Upper spine treated at A, planned B", "marks misread"
+                2,
+                6,
+                "other position",
+                "incoherent",
+                "Upper spine treated at A, planned B",
+                "marks misread",
             ),
             DepartureLine(3, 7, "part-delivered", "open", "Upper spine 40 % of its meterset", ""),
         ),
@@ -379,6 +398,7 @@ def long_review(review: ReviewView) -> ReviewView:
         fractions=40,
         delivered_fractions=28,
         grid=tuple(
-            replace(row, cells=(*row.cells, replace(row.cells[0], field="Lower spine"))) for row in rows
+            replace(row, cells=(*row.cells, replace(row.cells[0], field="Lower spine")))
+            for row in rows
         ),
     )

@@ -1,0 +1,112 @@
+from __future__ import annotations
+
+from dataclasses import replace
+from typing import TYPE_CHECKING
+
+from pdf_runs import font_files, overlapping, page_runs, page_texts, squeezed, whole_text
+
+from featherlog.paper.course_review import course_review
+from featherlog.paper.review_grid import departs
+from featherlog.paper.style import MARGIN_PT, PAGE_SIZES, SMALLEST_PT
+from featherlog.views.review import GridCell, GridRow
+from featherlog.words import DEMO_NOTICE, RECORD_CAUTION
+
+if TYPE_CHECKING:
+    from featherlog.views.review import ReviewView
+
+
+def test_twenty_fractions_and_two_junctions_fit_one_page(review: ReviewView) -> None:
+    assert len(page_texts(course_review(review))) == 1
+
+
+def test_a_long_course_goes_on_to_a_second_page_under_the_same_heading(
+    long_review: ReviewView,
+) -> None:
+    pages = page_texts(course_review(long_review, "letter"))
+    assert len(pages) == 2
+    for page in pages:
+        for words in ("FH-004217", long_review.ledger_head, DEMO_NOTICE, RECORD_CAUTION):
+            assert squeezed(words) in page
+    assert "40" in pages[0]
+
+
+def test_exceptions_come_before_everything_else(review: ReviewView) -> None:
+    text = whole_text(course_review(review))
+    order = [
+        "EXCEPTIONS",
+        "JunctionJ1:thetwosideshavenotbeengiventhesame.",
+        "Noverifierisnamedforfraction4.",
+        "UpperspinetreatedatA,plannedB(reason:marksmisread)",
+        "7of20fractionsdelivered",
+    ]
+    places = [text.index(words) for words in order]
+    assert places == sorted(places)
+
+
+def test_an_uneventful_course_says_so(review: ReviewView) -> None:
+    grid = tuple(replace(row, verifier=row.performer) for row in review.grid)
+    sides = tuple(replace(side, equal=True) for side in review.sides)
+    calm = replace(review, departures=(), sides=sides, grid=grid)
+    assert "EXCEPTIONSnone" in whole_text(course_review(calm))
+
+
+def test_shares_sides_next_shift_and_figures_are_on_the_page(review: ReviewView) -> None:
+    text = whole_text(course_review(review))
+    assert "A1055B522C500" in text
+    assert "12.60Cranial11.52UpperspineNO" in text
+    assert "fraction11,topositionC,projected2031-03-17" in text
+    for junction in review.dose.junctions:
+        for curve in junction.lines[1].curves:
+            assert curve.figures is not None
+            assert f"{curve.name}{curve.figures.maximum_gy:.2f}" in text
+    assert squeezed(review.dose.caution) in text
+    assert "95%" in text
+    assert "107%" in text
+
+
+def test_the_grid_shows_planned_and_delivered_positions_and_who(review: ReviewView) -> None:
+    text = whole_text(course_review(review))
+    assert "plannedAAAAABBBBBCCCCCAAAAA" in text
+    assert "UpperspineAAAAAAB40%verified✓✓✓–✓✓✓" in text
+    assert "PerformedbyAshPlover(4),HazelWren(3)." in text
+    assert "VerifiedbyLindenDunnock(6),nobodynamed(1)." in text
+
+
+def test_a_cell_departs_by_position_by_meterset_or_by_being_left_out() -> None:
+    whole = GridCell("Cranial", "B", 100.0)
+    cells = (
+        whole,
+        GridCell("Spine", "A", 100.0),
+        GridCell("Sacrum", "B", 40.0),
+        GridCell("Neck", "", 0.0),
+    )
+    row = GridRow(6, "B", "2031-03-10", "Hazel Wren", "", cells)
+    assert [departs(row, cell) for cell in cells] == [False, True, True, True]
+    ahead = replace(row, cells=(cells[3],))
+    assert not departs(ahead, cells[3])
+
+
+def test_the_review_is_legible_inside_the_page_embedded_and_repeatable(
+    long_review: ReviewView,
+) -> None:
+    data = course_review(long_review)
+    width, _ = PAGE_SIZES["A4"]
+    for runs in page_runs(data):
+        assert min(run.size for run in runs) >= SMALLEST_PT
+        assert overlapping(runs) == []
+        assert max(run.right for run in runs) <= width - MARGIN_PT + 0.5
+    assert all(font_files(data).values())
+    assert data == course_review(long_review)
+
+
+def test_a_course_not_begun_has_a_review(review: ReviewView) -> None:
+    cells = tuple(
+        replace(cell, delivered_position="", delivered_percent=0.0) for cell in review.grid[0].cells
+    )
+    grid = tuple(replace(row, cells=cells) for row in review.grid)
+    fresh = replace(
+        review, delivered_fractions=0, departures=(), sides=(), grid=grid, next_shift=None
+    )
+    text = whole_text(course_review(fresh))
+    assert "Nofractiondeliveredyet." in text
+    assert "noneleftinthiscourse" in text
