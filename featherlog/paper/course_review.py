@@ -26,7 +26,7 @@ if TYPE_CHECKING:
     from featherlog.views.review import ReviewView, ShareLine, SidesLine
 
 _GUTTER_PT = 12.0
-_PICTURE_PT = 118.0
+_PICTURE_PT = 126.0
 _BESIDE = 2
 
 

@@ -10,9 +10,10 @@ from reportlab.platypus import PageBreak
 
 from featherlog.errors import NotFoundError
 from featherlog.paper import ink, style
+from featherlog.paper.dose_panels import LEVELS_PERCENT, Area, divide
 from featherlog.paper.fonts import BOLD, REGULAR, join, safe, strong
 from featherlog.paper.layout import Furniture, build_pdf, space
-from featherlog.paper.plot import Axes, add_axes, add_levels, add_marks
+from featherlog.paper.plot import add_foot, add_frame, add_levels, add_marks, add_top
 from featherlog.paper.style import grid, para, shares
 from featherlog.paper.wording import figure, signed_figure
 from featherlog.words import DOSE_CAUTION
@@ -24,6 +25,7 @@ if TYPE_CHECKING:
     from reportlab.platypus import Flowable, Table
 
     from featherlog.paper.ink import Dash
+    from featherlog.paper.plot import Axes
     from featherlog.paper.style import PageSize
     from featherlog.views.dose import DoseCurve, DoseFigures, DoseLine, DoseView, JunctionDose
 
@@ -42,8 +44,6 @@ _PENS: dict[str, tuple[float, Dash, Any]] = {
     "predicted": (1.5, (3.0, 2.0), ink.BLACK),
 }
 _OTHER_PEN: tuple[float, Dash, Any] = (0.8, (1.0, 1.5), ink.BLACK)
-_LEVELS_PERCENT = (95.0, 100.0, 107.0)
-_ROOM = 0.06
 _SVG_FONTS = {
     REGULAR: {"family": f"{REGULAR}, sans-serif"},
     BOLD: {"family": f"{REGULAR}, sans-serif", "weight": "bold"},
@@ -61,27 +61,26 @@ def dose_drawing(
     """Return the profile at one of a junction's depths, head at the left, size in points.
 
     Planned, delivered, predicted and unfeathered dose in Gy, levels at 95, 100 and 107 % of the
-    junction's reference dose, and the match point of each position.
+    junction's reference dose, and the match point of each position. Where the dose so far lies far
+    below, the axis is broken between, both parts at the same scale.
 
     Raises:
         NotFoundError: The junction has no profile of that name.
         InputError: A label holds a character that the font cannot print.
     """
     line = _line(junction, place)
-    axes = Axes(
-        left=_LEFT_PT,
-        bottom=_BOTTOM_PT,
-        width=width - _LEFT_PT - _RIGHT_PT,
-        height=height - _BOTTOM_PT - (_TOP_PT if with_legend else _BARE_TOP_PT),
-        z_range_cm=(min(line.z_cm), max(line.z_cm)),
-        dose_range_gy=_dose_range(line, junction.reference_dose_gy),
-    )
+    top = _TOP_PT if with_legend else _BARE_TOP_PT
+    area = Area(_LEFT_PT, _BOTTOM_PT, width - _LEFT_PT - _RIGHT_PT, height - _BOTTOM_PT - top)
+    panels = divide(line, junction.reference_dose_gy, area)
     drawing = ink.blank(width, height)
-    add_marks(drawing, axes, junction.position_z_cm)
-    add_levels(drawing, axes, _levels(junction.reference_dose_gy))
-    for item in sorted(line.curves, key=_depth_of_ink):
-        _add_curve(drawing, axes, line, item)
-    add_axes(drawing, axes)
+    for panel in panels:
+        add_marks(drawing, panel.axes, junction.position_z_cm)
+        add_levels(drawing, panel.axes, _levels(junction.reference_dose_gy))
+        for item in sorted(panel.curves, key=_depth_of_ink):
+            _add_curve(drawing, panel.axes, line, item)
+        add_frame(drawing, panel.axes)
+    add_foot(drawing, panels[0].axes)
+    add_top(drawing, panels[-1].axes, junction.position_z_cm)
     if with_legend:
         _add_legend(drawing, [item.name for item in line.curves], height - _LEGEND_PT + 2)
     return drawing
@@ -120,15 +119,7 @@ def _line(junction: JunctionDose, place: str) -> DoseLine:
 
 
 def _levels(reference_gy: float) -> list[tuple[str, float]]:
-    return [(f"{percent:.0f} %", reference_gy * percent / 100) for percent in _LEVELS_PERCENT]
-
-
-def _dose_range(line: DoseLine, reference_gy: float) -> tuple[float, float]:
-    doses = [dose for item in line.curves for dose in item.dose_gy]
-    low = min([*doses, reference_gy * min(_LEVELS_PERCENT) / 100])
-    high = max([*doses, reference_gy * max(_LEVELS_PERCENT) / 100])
-    room = (high - low) * _ROOM
-    return max(0.0, low - room), high + room
+    return [(f"{percent:.0f} %", reference_gy * percent / 100) for percent in LEVELS_PERCENT]
 
 
 def _depth_of_ink(item: DoseCurve) -> int:
@@ -136,8 +127,6 @@ def _depth_of_ink(item: DoseCurve) -> int:
 
 
 def _add_curve(drawing: Drawing, axes: Axes, line: DoseLine, item: DoseCurve) -> None:
-    if not item.dose_gy:
-        return
     width, dash, color = _PENS.get(item.name, _OTHER_PEN)
     points = list(zip(map(axes.x, line.z_cm), map(axes.y, item.dose_gy), strict=True))
     drawing.add(ink.curve(points, width=width, dash=dash, color=color))

@@ -17,6 +17,7 @@ if TYPE_CHECKING:
 
 _TICK_PT = 3.0
 _MOST_TICKS = 6
+_TICK_ROOM_PT = 9.5
 
 
 @dataclass(frozen=True, slots=True)
@@ -41,39 +42,46 @@ class Axes:
         return self.bottom + self.height * (dose_gy - low) / (high - low)
 
 
-def ticks(low: float, high: float) -> list[float]:
+def ticks(low: float, high: float, most: int = _MOST_TICKS) -> list[float]:
     """Return round values (1, 2 or 5 times a power of ten apart) within a range."""
-    rough = (high - low) / _MOST_TICKS
+    rough = (high - low) / most
     power = 10.0 ** math.floor(math.log10(rough))
     step = next(power * factor for factor in (1, 2, 5, 10) if power * factor >= rough)
     first, last = math.ceil(low / step - 1e-9), math.floor(high / step + 1e-9)
     return [index * step for index in range(first, last + 1)]
 
 
-def add_axes(drawing: Drawing, axes: Axes) -> None:
-    """Draw the frame with ticks in cm and Gy, and the names of both axes and ends."""
+def add_frame(drawing: Drawing, axes: Axes) -> None:
+    """Draw the frame and its dose ticks in Gy, as many as the height has room for."""
     drawing.add(ink.frame(axes.left, axes.bottom, axes.width, axes.height))
+    most = min(_MOST_TICKS, max(2, int(axes.height / _TICK_ROOM_PT)))
+    for dose_gy in ticks(*axes.dose_range_gy, most):
+        y = axes.y(dose_gy)
+        drawing.add(ink.line((axes.left - _TICK_PT, y), (axes.left, y), width=HAIR_PT))
+        text = figure(dose_gy, least=0)
+        drawing.add(ink.label((axes.left - _TICK_PT - 2, y - 3), text, anchor="end"))
+
+
+def add_foot(drawing: Drawing, axes: Axes) -> None:
+    """Draw the ticks along the axis in cm, its name, and which end is which."""
     for z_cm in ticks(*axes.z_range_cm):
         x = axes.x(z_cm)
         drawing.add(ink.line((x, axes.bottom), (x, axes.bottom - _TICK_PT), width=HAIR_PT))
         text = figure(z_cm, least=0)
         drawing.add(ink.label((x, axes.bottom - _TICK_PT - 8), text, anchor="middle"))
-    for dose_gy in ticks(*axes.dose_range_gy):
-        y = axes.y(dose_gy)
-        drawing.add(ink.line((axes.left - _TICK_PT, y), (axes.left, y), width=HAIR_PT))
-        text = figure(dose_gy, least=0)
-        drawing.add(ink.label((axes.left - _TICK_PT - 2, y - 3), text, anchor="end"))
-    _name_axes(drawing, axes)
-
-
-def _name_axes(drawing: Drawing, axes: Axes) -> None:
-    low = axes.bottom - 22
-    right = axes.left + axes.width
+    low, right = axes.bottom - 22, axes.left + axes.width
     drawing.add(ink.label((axes.left, low), "HEAD", bold=True))
     drawing.add(ink.label((right, low), "FEET", bold=True, anchor="end"))
     middle = axes.left + axes.width / 2
     drawing.add(ink.label((middle, low), "z, cm (+ toward the head)", anchor="middle"))
-    drawing.add(ink.label((0, axes.bottom + axes.height + 10), "dose, Gy"))
+
+
+def add_top(drawing: Drawing, axes: Axes, marks: Sequence[tuple[str, float]]) -> None:
+    """Name the dose axis and the marked coordinates above the picture."""
+    top = axes.bottom + axes.height
+    drawing.add(ink.label((0, top + 10), "dose, Gy"))
+    for name, z_cm in _inside(axes, marks):
+        drawing.add(ink.label((axes.x(z_cm), top + 4), name, anchor="middle", bold=True))
 
 
 def add_levels(drawing: Drawing, axes: Axes, levels: Sequence[tuple[str, float]]) -> None:
@@ -94,11 +102,13 @@ def add_levels(drawing: Drawing, axes: Axes, levels: Sequence[tuple[str, float]]
 
 
 def add_marks(drawing: Drawing, axes: Axes, marks: Sequence[tuple[str, float]]) -> None:
-    """Mark labelled coordinates (cm) by fine dotted uprights named at the top."""
+    """Mark labelled coordinates (cm) by fine dotted uprights."""
     top = axes.bottom + axes.height
+    for _, z_cm in _inside(axes, marks):
+        x = axes.x(z_cm)
+        drawing.add(ink.line((x, axes.bottom), (x, top), width=HAIR_PT, dash=(1, 2)))
+
+
+def _inside(axes: Axes, marks: Sequence[tuple[str, float]]) -> list[tuple[str, float]]:
     low, high = axes.z_range_cm
-    for name, z_cm in marks:
-        if low <= z_cm <= high:
-            x = axes.x(z_cm)
-            drawing.add(ink.line((x, axes.bottom), (x, top + 2), width=HAIR_PT, dash=(1, 2)))
-            drawing.add(ink.label((x, top + 4), name, anchor="middle", bold=True))
+    return [(name, z_cm) for name, z_cm in marks if low <= z_cm <= high]
