@@ -9,8 +9,7 @@ from featherlog.paper.fonts import safe, strong
 from featherlog.paper.ink import label_width
 from featherlog.paper.layout import space
 from featherlog.paper.style import display, grid, para, shares
-from featherlog.paper.wording import figure
-from featherlog.words import STOP_AND_CALL
+from featherlog.words import STOP_AND_CALL, figure
 
 if TYPE_CHECKING:
     from reportlab.platypus import Flowable, Table

@@ -9,7 +9,7 @@ from featherlog.paper.fonts import REGULAR, Markup, safe, strong
 from featherlog.paper.layout import space
 from featherlog.paper.side_view import side_drawing
 from featherlog.paper.style import grid, para, shares
-from featherlog.paper.wording import figure, signed_figure
+from featherlog.words import figure, signed
 
 if TYPE_CHECKING:
     from reportlab.platypus import Flowable, Table
@@ -83,7 +83,7 @@ def _diagram(view: DayView, junction: JunctionView, width: float, height: float)
 
 def _text(junction: JunctionView, width: float) -> list[Flowable]:
     name = safe(f"JUNCTION {junction.junction}")
-    what = f"{junction.technique}, {signed_figure(junction.offset_cm)} cm from position A"
+    what = f"{junction.technique}, {signed(junction.offset_cm)} cm from position A"
     return [
         para(Markup(f'{name}<font name="{REGULAR}" size="8">  {safe(what)}</font>'), style.LEAD),
         para(safe(f"{junction.superior_field} | {junction.inferior_field}")),

@@ -10,8 +10,7 @@ from reportlab.lib.styles import ParagraphStyle
 from featherlog.paper import style
 from featherlog.paper.fonts import Markup, join, safe, strong
 from featherlog.paper.style import grid, para, shares
-from featherlog.paper.wording import figure, meterset
-from featherlog.words import STILL_CM
+from featherlog.words import STILL_CM, figure, meterset
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
@@ -33,7 +32,7 @@ _HEADS = (
     "Edge moves",
     "",
 )
-_PARTS = (100, 37, 33, 35, 36, 42, 46, 108, 82, 16)
+_PARTS = (82, 36, 32, 34, 34, 42, 38, 98, 125, 14)
 _NUMBERS = range(1, 6)
 _FIELD_LINE = ParagraphStyle("field", parent=style.BODY, leading=13)
 _NEW_VALUE_PT = 11
@@ -139,7 +138,7 @@ def _beam_name(beam: BeamView, *, part: bool) -> list[Any]:
     if part:
         given = f"{meterset(beam.delivered_mu)} of {meterset(beam.planned_mu)} given"
         lines.append(para(safe(given), style.SMALL))
-    if part and beam.to_deliver_mu == 0:
+    if part and meterset(beam.to_deliver_mu) == "0":
         lines.append(para(strong("DO NOT TREAT AGAIN"), style.SMALL))
     return lines
 

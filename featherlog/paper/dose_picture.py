@@ -15,8 +15,7 @@ from featherlog.paper.fonts import BOLD, REGULAR, join, safe, strong
 from featherlog.paper.layout import Furniture, build_pdf, space
 from featherlog.paper.plot import add_foot, add_frame, add_levels, add_marks, add_top
 from featherlog.paper.style import grid, para, shares
-from featherlog.paper.wording import figure, signed_figure
-from featherlog.words import DOSE_CAUTION
+from featherlog.words import DOSE_CAUTION, figure, signed
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -176,7 +175,7 @@ def _dose_page(view: DoseView, junction: JunctionDose, width: float) -> list[Flo
         para(safe(f"{progress}; {reference}. {view.model}")),
     ]
     for line in junction.lines:
-        place = f"x {signed_figure(line.x_cm)}, y {signed_figure(line.y_cm)} cm"
+        place = f"x {signed(line.x_cm)}, y {signed(line.y_cm)} cm"
         title = join("  ", [strong(line.place), safe(f"depth {figure(line.depth_cm)} cm, {place}")])
         body += [
             space(6),
@@ -216,10 +215,10 @@ def _figure_cells(name: str, figures: DoseFigures) -> list[Flowable]:
     numbers = (
         f"{figures.maximum_gy:.2f}",
         f"{figures.maximum_percent:.1f}",
-        signed_figure(round(figures.maximum_z_cm, 1)),
+        signed(round(figures.maximum_z_cm, 1)),
         f"{figures.minimum_gy:.2f}",
         f"{figures.minimum_percent:.1f}",
-        signed_figure(round(figures.minimum_z_cm, 1)),
+        signed(round(figures.minimum_z_cm, 1)),
         f"{figures.over_107_cm:.2f}",
         f"{figures.under_95_cm:.2f}",
     )

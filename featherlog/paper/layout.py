@@ -11,8 +11,7 @@ from reportlab.platypus import BaseDocTemplate, Frame, PageTemplate, Spacer, Tab
 from featherlog.paper import style
 from featherlog.paper.fonts import REGULAR, Markup, join, register, safe, strong
 from featherlog.paper.style import MARGIN_PT, SMALL_RIGHT, grid, para, shares
-from featherlog.paper.wording import patient_position
-from featherlog.words import DEMO_NOTICE
+from featherlog.words import DEMO_NOTICE, patient_position
 
 if TYPE_CHECKING:
     from collections.abc import Callable

@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 
 from featherlog.paper import ink
 from featherlog.paper.style import HAIR_PT
-from featherlog.paper.wording import figure
+from featherlog.words import figure
 
 if TYPE_CHECKING:
     from collections.abc import Sequence

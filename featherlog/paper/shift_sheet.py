@@ -80,7 +80,8 @@ def _furniture(view: DayView) -> Furniture:
 
 def _closed(view: DayView, width: float) -> list[Flowable]:
     body = stop_page(view, width) if view.status == "stop" else [complete_box(view, width)]
-    return [*body, space(14), *_open_matters(view.open_departures)]
+    open_matters = _open_matters(view.open_departures) if view.open_departures else []
+    return [*body, space(14), *open_matters]
 
 
 def _sheet(

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 from featherlog.paper import ink
 from featherlog.paper.style import HAIR_PT, RULE_PT
-from featherlog.paper.wording import figure, head_first
+from featherlog.words import figure, head_first
 
 if TYPE_CHECKING:
     from collections.abc import Sequence

@@ -22,7 +22,7 @@ from featherlog.views.day import (
 )
 from featherlog.views.dose import DoseCurve, DoseFigures, DoseLine, DoseView, JunctionDose
 from featherlog.views.review import GridCell, GridRow, ReviewView, ShareLine, SidesLine
-from featherlog.words import CAUTION, DOSE_CAUTION, table_move
+from featherlog.words import CAUTION, DOSE_CAUTION, jaw_move, table_move
 
 LABELS = ("A", "B", "C")
 
@@ -49,10 +49,10 @@ def move(lateral: float = 0.0, longitudinal: float = 0.0, vertical: float = 0.0)
 
 
 def jaws(superior: float, inferior: float, was_inferior: float | None) -> tuple[JawView, ...]:
-    moved = was_inferior is not None and was_inferior != inferior
+    words = "" if was_inferior is None else jaw_move("Y1", inferior - was_inferior, "inferior")
     return (
         JawView("Y2", "superior", superior, None if was_inferior is None else superior, ""),
-        JawView("Y1", "inferior", inferior, was_inferior, "toward the feet" if moved else ""),
+        JawView("Y1", "inferior", inferior, was_inferior, words),
         JawView("X1", "side", -9.0, None if was_inferior is None else -9.0, ""),
         JawView("X2", "side", 9.5, None if was_inferior is None else 9.5, ""),
     )

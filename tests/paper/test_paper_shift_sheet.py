@@ -11,8 +11,14 @@ from pypdf import PdfReader
 from featherlog.errors import InputError
 from featherlog.paper.shift_sheet import shift_sheet
 from featherlog.paper.style import MARGIN_PT, PAGE_SIZES, SMALLEST_PT
-from featherlog.paper.wording import figure, meterset
-from featherlog.words import DEMO_NOTICE, RECORD_CAUTION, STOP_AND_CALL, THIS_FRACTION_ONLY
+from featherlog.words import (
+    DEMO_NOTICE,
+    RECORD_CAUTION,
+    STOP_AND_CALL,
+    THIS_FRACTION_ONLY,
+    figure,
+    meterset,
+)
 
 if TYPE_CHECKING:
     from collections.abc import Iterator

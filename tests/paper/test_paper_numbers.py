@@ -4,7 +4,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from featherlog.paper.wording import figure, head_first, meterset, patient_position, signed_figure
+from featherlog.words import figure, head_first, meterset, patient_position, signed
 
 
 @pytest.mark.parametrize(
@@ -23,7 +23,7 @@ def test_a_hundredth_of_a_centimetre_is_never_lost(hundredths: int) -> None:
 
 @pytest.mark.parametrize(("value", "text"), [(1.0, "+1.0"), (-1.0, "−1.0"), (0.0, "0.0")])
 def test_a_move_carries_its_sign(value: float, text: str) -> None:
-    assert signed_figure(value) == text
+    assert signed(value) == text
 
 
 @pytest.mark.parametrize(("value", "text"), [(112.0, "112"), (103.5, "103.5"), (100.0, "100")])
