@@ -50,8 +50,8 @@ def field_views(
     ``parts`` is the part of each beam's meterset already delivered in this fraction.
     """
     views = []
-    for index, field in enumerate(now.fields):
-        last = before.fields[index] if before else None
+    for index, field in enumerate(now.treated):
+        last = before.treated[index] if before else None
         views.append(
             FieldView(
                 field=field.field,
@@ -62,7 +62,7 @@ def field_views(
                 else _table_move(
                     _difference(
                         field.table_from_first_field_cm,
-                        now.fields[index - 1].table_from_first_field_cm,
+                        now.treated[index - 1].table_from_first_field_cm,
                     )
                 ),
                 beams=tuple(

@@ -150,18 +150,18 @@ def _beams(
     stored: Stored, number: int, delivery: Delivery, confirmed: str | None
 ) -> tuple[DeliveredBeam, ...]:
     everywhere = delivery.position or confirmed
-    fields = {field.field for field in stored.plan.positions[0].fields}
+    fields = {field.field for field in stored.plan.positions[0].treated}
     _known("--field-position", delivery.field_positions, fields, "field")
     if everywhere is None and set(delivery.field_positions) != fields:
         raise InputError(
             f"fraction {number} was not confirmed, so the record must say where it was treated: "
             "give --position"
         )
-    names = {beam.beam for field in stored.plan.positions[0].fields for beam in field.beams}
+    names = {beam.beam for field in stored.plan.positions[0].treated for beam in field.beams}
     _known("--meterset", delivery.metersets_mu, names, "beam")
     state = stored.states.get(number)
     rows = []
-    for field in stored.plan.positions[0].fields:
+    for field in stored.plan.positions[0].treated:
         label = delivery.field_positions.get(field.field, everywhere or "")
         settings = _settings(stored, label)
         for beam in field.beams:

@@ -112,6 +112,6 @@ def _grid_row(stored: Stored, number: int, state: FractionState | None) -> GridR
                 state.field_position.get(field.field, "") if state else "",
                 100 * sum(state.parts[b.beam] * b.weight for b in field.beams) if state else 0.0,
             )
-            for field in stored.plan.positions[0].fields
+            for field in stored.plan.positions[0].treated
         ),
     )

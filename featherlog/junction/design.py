@@ -18,6 +18,21 @@ class Technique(StrEnum):
 
     SKIN_GAP = "skin gap"
     HALF_BEAM = "half-beam"
+    ROTATED = "rotated"
+
+
+class Angles(StrEnum):
+    """Whether a turned field's angles follow the junction or stay as at position A."""
+
+    RECOMPUTED = "recomputed"
+    HELD = "held"
+
+
+class EdgesBy(StrEnum):
+    """What forms a beam's edges: jaws that are set, or leaves that belong to the plan."""
+
+    JAWS = "jaws"
+    LEAVES = "leaves"
 
 
 class MovedBy(StrEnum):
@@ -48,7 +63,9 @@ class Pattern(StrEnum):
 
     BLOCKS = "blocks"
     DAILY = "daily"
+    DOSE = "dose"
     LIST = "list"
+    SPLIT = "split"
     NO_SHIFT = "no shift"
 
 
@@ -75,7 +92,7 @@ class Phase:
 
 @dataclass(frozen=True, slots=True)
 class Beam:
-    """One beam at its position A geometry.
+    """One beam at its position A geometry; of a turned field, before it is turned.
 
     ``side_jaws_cm`` are the signed IEC positions of the two jaws that do not form junction edges.
     ``weight`` is the beam's part of its field's dose; the weights of a field sum to 1.
@@ -87,9 +104,11 @@ class Beam:
     collimator_deg: float
     couch_deg: float
     isocentre_cm: Point
+    sad_cm: float
     ssd_cm: float
     side_jaws_cm: tuple[float, float]
     weight: float
+    edges_by: EdgesBy = EdgesBy.JAWS
 
 
 @dataclass(frozen=True, slots=True)
@@ -99,11 +118,27 @@ class Border:
     A ``held`` point stays in the patient; a free one travels with the isocentre. ``reach_cm`` is
     the distance from the beam axis to the edge at the isocentre plane, positive away from the axis
     on the field's own side and negative across it. Exactly one of point and reach is given.
+    ``cover_x_cm`` are two lateral coordinates at which the border's z must stay covered as well.
     """
 
     point_cm: Point | None = None
     held: bool = False
     reach_cm: float | None = None
+    cover_x_cm: tuple[float, float] | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class EarlierCourse:
+    """A field of a finished course: fixed, with its dose, never set or recorded again.
+
+    ``junction_reach_cm`` is the distance at the isocentre plane from the beam axis to its edge at
+    the junction, positive on the field's own side.
+    """
+
+    label: str
+    dose_gy: float
+    fractions: int
+    junction_reach_cm: float
 
 
 @dataclass(frozen=True, slots=True)
@@ -111,12 +146,15 @@ class Field:
     """One treated region.
 
     ``follows`` names the junction whose offset the table follows; None when moved by the jaws.
+    ``dose_per_fraction_gy`` is the field's own dose where it is not the phase's.
     """
 
     name: str
     beams: tuple[Beam, ...]
     moved_by: MovedBy
     follows: str | None
+    dose_per_fraction_gy: float | None = None
+    earlier: EarlierCourse | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -135,7 +173,12 @@ class Junction:
     measured from it into the patient. Exactly one of ``match_depth_cm`` and ``skin_gap_cm`` is
     given. ``thickness_cm`` puts the opposite skin; ``lateral_limits_cm`` are the two coordinates
     across the axis at which the mismatch is stated. ``reference_dose_gy`` is the whole course's
-    dose that every percent at this junction names.
+    dose that every percent at this junction names. ``skin_slope_deg`` is positive where the
+    entrance skin rises outward toward the head.
+
+    ``separation_cm`` is a planned gap (+) or overlap (-) of the edges at the match point, split
+    evenly or borne by the field named in ``borne_by``. At a rotated junction ``turned_field`` is
+    turned onto the edge of ``matched_beam`` of its neighbour.
     """
 
     name: str
@@ -151,6 +194,11 @@ class Junction:
     reference_dose_gy: float
     gap_tolerance_cm: float
     skin_slope_deg: float | None
+    separation_cm: float = 0.0
+    borne_by: str | None = None
+    turned_field: str | None = None
+    matched_beam: str | None = None
+    angles: Angles = Angles.RECOMPUTED
 
 
 @dataclass(frozen=True, slots=True)
@@ -170,8 +218,10 @@ class Position:
 class SequencePattern:
     """The rule that assigns positions to fractions, and the treatment days.
 
-    ``block_fractions`` belongs to blocks, ``positions`` is the order for blocks and daily cycling,
-    the full assignment for a list, and the single position for no shift.
+    ``positions`` is the order for blocks, dose and daily cycling, the full assignment for a list,
+    and the single position for no shift. ``block_fractions`` belongs to blocks; by dose, the
+    junction moves once a position has had at least ``block_dose_gy``. ``weights`` split every
+    fraction over the positions. ``restart_each_phase`` begins the order again with each phase.
     """
 
     pattern: Pattern
@@ -180,6 +230,9 @@ class SequencePattern:
     start_date: date
     weekdays: tuple[Weekday, ...]
     closed_dates: tuple[date, ...]
+    block_dose_gy: float | None = None
+    weights: tuple[float, ...] = ()
+    restart_each_phase: bool = False
 
 
 @dataclass(frozen=True, slots=True)

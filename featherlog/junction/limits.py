@@ -5,15 +5,17 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from featherlog.geometry.beams import GeometryError
-from featherlog.junction.edges import place_rounded
+from featherlog.junction.borders import border_settings
+from featherlog.junction.design import EdgesBy
 from featherlog.junction.machine import Jaw
+from featherlog.junction.rounding import place_rounded
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterator
 
-    from featherlog.junction.design import Course, Position
-    from featherlog.junction.edges import Chain, PlacedBeam
+    from featherlog.junction.design import Position
     from featherlog.junction.machine import Machine, Range
+    from featherlog.junction.placing import Chain, PlacedBeam, Task
 
 # How far and how finely the nearest admissible offset is looked for, cm.
 _SEARCH_CM = 15.0
@@ -21,19 +23,28 @@ _COARSE_CM = 0.25
 _FINE_CM = 0.01
 
 
-def limit_faults(machine: Machine, chain: Chain) -> tuple[str, ...]:
+def limit_faults(task: Task, chain: Chain) -> tuple[str, ...]:
     """Return one sentence for every limit that the placed fields pass."""
-    return tuple(
+    limits = (
         fault
         for field in chain
+        if field.field.earlier is None
         for beam in field.beams
-        for fault in (*_jaw_faults(machine, beam), *_angle_faults(machine, beam))
+        for fault in (*_jaw_faults(task.machine, beam), *_angle_faults(task.machine, beam))
     )
+    return (*limits, *_border_faults(task, chain))
 
 
-def nearest_admissible(
-    course: Course, machine: Machine, depths: dict[str, float], position: Position
-) -> str:
+def _border_faults(task: Task, chain: Chain) -> Iterator[str]:
+    for border in border_settings(task.course, chain):
+        if border.short_cm > task.machine.steps.jaw_cm:
+            yield (
+                f"the {border.end} border would be left uncovered by {border.short_cm:.2f} cm "
+                f"between its lateral limits"
+            )
+
+
+def nearest_admissible(task: Task, position: Position) -> str:
     """Say which offset nearest to the asked one the machine can deliver.
 
     All junctions are moved together, outward from the asked offsets in both directions, and the
@@ -43,10 +54,10 @@ def nearest_admissible(
     def admissible(shift_cm: float) -> bool:
         offsets = {name: value + shift_cm for name, value in position.offset_cm.items()}
         try:
-            chain = place_rounded(course, machine, depths, offsets)
+            chain = place_rounded(task, offsets)
         except GeometryError:
             return False
-        return not limit_faults(machine, chain)
+        return not limit_faults(task, chain)
 
     steps = round(_SEARCH_CM / _COARSE_CM)
     for count in range(1, steps + 1):
@@ -77,6 +88,9 @@ def _jaw_faults(machine: Machine, placed: PlacedBeam) -> Iterator[str]:
     settings = placed.jaws
     for jaw, value in settings.items():
         travel = machine.jaw_travel_cm[jaw]
+        ends = (placed.superior.jaw, placed.inferior.jaw)
+        if jaw in ends and placed.beam.edges_by is EdgesBy.LEAVES:
+            continue  # a leaf edge stands inside jaws that belong to the plan
         if not travel.holds(value):
             yield (
                 f"jaw {jaw} of beam {placed.beam.name} would stand at {value:+.2f} cm, beyond its "
@@ -97,8 +111,8 @@ def _angle_faults(machine: Machine, placed: PlacedBeam) -> Iterator[str]:
     beam = placed.beam
     for name, value, allowed in (
         ("gantry", beam.gantry_deg, machine.gantry_deg),
-        ("collimator", beam.collimator_deg, machine.collimator_deg),
-        ("couch", beam.couch_deg, machine.couch_deg),
+        ("collimator", placed.collimator_deg, machine.collimator_deg),
+        ("couch", placed.couch_deg, machine.couch_deg),
     ):
         if not allowed.holds(value):
             yield (

@@ -5,19 +5,24 @@ Lengths in cm along the junction axis, + gap and - overlap.
 
 from __future__ import annotations
 
+import math
 from itertools import pairwise, product
 from typing import TYPE_CHECKING
 
 import numpy as np
 
-from featherlog.junction.edges import pair_mismatches, stated_points, worst
+from featherlog.junction.pairs import pair_mismatches, worst
+from featherlog.junction.placing import stated_points
 from featherlog.junction.plan import JunctionSetting, Mismatch, SkinGap
+from featherlog.junction.play import worst_if_off
 from featherlog.junction.points import OPPOSITE, OUTWARD, point_at_depth
 
 if TYPE_CHECKING:
-    from featherlog.geometry.patient import Point
+    from featherlog.geometry.patient import PatientPosition, Point
+    from featherlog.geometry.planes import EdgePlane
     from featherlog.junction.design import Junction, Side
-    from featherlog.junction.edges import PlacedBeam, PlacedField
+    from featherlog.junction.machine import Tolerances
+    from featherlog.junction.placing import PlacedBeam, PlacedField
 
 Pair = tuple["PlacedField", "PlacedField"]
 
@@ -33,6 +38,8 @@ def junction_setting(
     match_depth_cm: float,
     exact: Pair,
     rounded: Pair,
+    patient: PatientPosition,
+    tolerances: Tolerances,
 ) -> JunctionSetting:
     """Return everything to be said of one junction at one position.
 
@@ -61,6 +68,10 @@ def junction_setting(
             for point in across
         ),
         rounding_cm=_rounding(points, exact, rounded),
+        depth_below_skin_cm=match_depth_cm + skin_rise(junction, offset_cm),
+        separation_cm=junction.separation_cm,
+        if_jaws_off_cm=worst_if_off(points, rounded, patient, tolerances, angles=False),
+        if_all_off_cm=worst_if_off(points, rounded, patient, tolerances, angles=True),
         three_field_overlap_cm=overlap,
         gap_without_overlap_cm=removed,
     )
@@ -77,16 +88,29 @@ def entrance_gap(junction: Junction, upper: PlacedField, lower: PlacedField) -> 
     return 0.0 if gap is None else gap[0] + gap[1]
 
 
+def skin_rise(junction: Junction, along_cm: float) -> float:
+    """Return how far (cm) the entrance skin lies outward of its point, a distance along the axis.
+
+    Positive slopes rise outward toward the head; an unknown slope counts as flat.
+    """
+    return math.tan(math.radians(junction.skin_slope_deg or 0.0)) * along_cm
+
+
 def skin_gaps(
     junction: Junction, match_z_cm: float, exact: Pair, rounded: Pair
 ) -> tuple[SkinGap, ...]:
-    """Return the gap on the entrance skin and, where it is known, on the opposite skin."""
+    """Return the gap on the entrance skin and, where it is known, on the opposite skin.
+
+    On a sloping entrance skin each edge is followed to where it meets that skin.
+    """
     gaps = []
     for side in (junction.entrance, OPPOSITE[junction.entrance]):
         before = _gap(junction, side, match_z_cm, exact)
         after = _gap(junction, side, match_z_cm, rounded)
         if before is not None and after is not None:
-            gaps.append(SkinGap(side.value, sum(before), sum(after), *after))
+            slope = junction.skin_slope_deg or 0.0 if side is junction.entrance else 0.0
+            along = sum(after) / math.cos(math.radians(slope))
+            gaps.append(SkinGap(side.value, sum(before), sum(after), *after, along))
     return tuple(gaps)
 
 
@@ -118,13 +142,27 @@ def _gap(
     depth = 0.0 if side is junction.entrance else junction.thickness_cm
     if depth is None:
         return None
-    x, y, _ = point_at_depth(junction, depth, match_z_cm)
+    slope = math.tan(math.radians(junction.skin_slope_deg or 0.0)) if depth == 0 else 0.0
     upper, lower = ([beam for beam in field.beams if _lights(beam, side)] for field in pair)
     parts = [
-        (above.inferior_edge.z_at(x, y) - match_z_cm, match_z_cm - below.superior_edge.z_at(x, y))
+        (
+            _on_skin(junction, depth, slope, above.inferior_edge) - match_z_cm,
+            match_z_cm - _on_skin(junction, depth, slope, below.superior_edge),
+        )
         for above, below in product(upper, lower)
     ]
     return max(parts, key=lambda part: (round(abs(sum(part)), 9), sum(part)), default=None)
+
+
+def _on_skin(junction: Junction, depth_cm: float, slope: float, edge: EdgePlane) -> float:
+    """Return the axis coordinate (cm) at which an edge meets a skin of that slope (rise per cm)."""
+    axis, sign = OUTWARD[junction.entrance]
+    start = junction.skin_point_cm[2]
+    x, y, _ = point_at_depth(junction, depth_cm, start)
+    flat = edge.z_at(x, y)
+    # The skin moves outward by slope·(z - start), and the edge with it by its own tilt.
+    tilt = -edge.normal[axis] / edge.normal[2] * sign * slope
+    return start + (flat - start) / (1 - tilt)
 
 
 def _lights(beam: PlacedBeam, side: Side) -> bool:

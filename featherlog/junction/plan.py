@@ -21,7 +21,8 @@ class BeamSetting:
 
     ``jaw_cm`` is what the machine is set to, ``exact_jaw_cm`` what the geometry asks for before
     rounding. ``superior_jaw`` and ``inferior_jaw`` name the jaws that form the two ends, and
-    ``superior_edge`` and ``inferior_edge`` are their planes after rounding.
+    ``superior_edge`` and ``inferior_edge`` are their planes after rounding. Exact angles are those
+    of a turned beam before rounding. ``edges_by`` says whether jaws or leaves form the two ends.
     """
 
     beam: str
@@ -39,6 +40,10 @@ class BeamSetting:
     inferior_jaw: Jaw
     superior_edge: EdgeLine
     inferior_edge: EdgeLine
+    sad_cm: float
+    exact_collimator_deg: float
+    exact_couch_deg: float
+    edges_by: str
 
 
 @dataclass(frozen=True, slots=True)
@@ -47,6 +52,8 @@ class FieldSetting:
 
     ``table_from_a_cm`` is the table move from position A: lateral, longitudinal, vertical.
     ``table_from_first_field_cm`` is the table move from the first field's isocentre to this one's.
+    ``dose_per_fraction_gy`` is None where it is the phase's. ``earlier_course`` names the finished
+    course of a field that is only a neighbour, with its ``earlier_dose_gy``; else empty.
     """
 
     field: str
@@ -55,6 +62,9 @@ class FieldSetting:
     table_from_a_cm: Triple
     table_from_first_field_cm: Triple
     beams: tuple[BeamSetting, ...]
+    dose_per_fraction_gy: float | None = None
+    earlier_course: str = ""
+    earlier_dose_gy: float = 0.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -62,7 +72,8 @@ class SkinGap:
     """The gap between the light-field edges on one skin side (+ gap, - overlap).
 
     ``superior_part_cm`` and ``inferior_part_cm`` are each field's part, measured from the match
-    point's level; ``expected_cm`` is their sum after rounding, ``exact_cm`` before.
+    point's level; ``expected_cm`` is their sum after rounding, ``exact_cm`` before, all along the
+    axis. ``along_skin_cm`` is the expected gap measured along a sloping skin.
     """
 
     side: str
@@ -70,6 +81,7 @@ class SkinGap:
     expected_cm: float
     superior_part_cm: float
     inferior_part_cm: float
+    along_skin_cm: float
 
 
 @dataclass(frozen=True, slots=True)
@@ -87,7 +99,11 @@ class Mismatch:
 class JunctionSetting:
     """One junction at one position.
 
-    ``rounding_cm`` is the worst change of any beam pair's mismatch that rounding makes.
+    ``match_depth_cm`` is the depth at position A and ``depth_below_skin_cm`` the depth here, which
+    differs on a sloping skin. ``separation_cm`` is the planned gap (+) at the match point.
+    ``if_jaws_off_cm`` and ``if_all_off_cm`` are the worst mismatch when both fields' jaws, or jaws
+    and all angles, are off by the machine's tolerance the worst way. ``rounding_cm`` is the worst
+    change of any beam pair's mismatch that rounding makes.
     ``three_field_overlap_cm`` is the length at the critical depth covered by more beams than
     either field has, and ``gap_without_overlap_cm`` the skin gap that would remove it.
     """
@@ -99,8 +115,26 @@ class JunctionSetting:
     skin_gaps: tuple[SkinGap, ...]
     mismatches: tuple[Mismatch, ...]
     rounding_cm: float
+    depth_below_skin_cm: float
+    separation_cm: float
+    if_jaws_off_cm: float
+    if_all_off_cm: float
     three_field_overlap_cm: float | None
     gap_without_overlap_cm: float | None
+
+
+@dataclass(frozen=True, slots=True)
+class BorderSetting:
+    """An outer border at one position: where its edge lies, and what it leaves uncovered.
+
+    ``z_cm`` holds the least generous edge coordinate of the field's beams at each ``x_cm``.
+    ``short_cm`` is how far the border's point stays uncovered (0 when it is covered).
+    """
+
+    end: str
+    x_cm: tuple[float, ...]
+    z_cm: tuple[float, ...]
+    short_cm: float
 
 
 @dataclass(frozen=True, slots=True)
@@ -110,6 +144,12 @@ class PositionSettings:
     label: str
     fields: tuple[FieldSetting, ...]
     junctions: tuple[JunctionSetting, ...]
+    borders: tuple[BorderSetting, ...] = ()
+
+    @property
+    def treated(self) -> tuple[FieldSetting, ...]:
+        """Return the fields of this course, without those of an earlier one."""
+        return tuple(field for field in self.fields if not field.earlier_course)
 
     def junction(self, name: str) -> JunctionSetting:
         """Return the named junction's setting."""
@@ -121,13 +161,29 @@ class PositionSettings:
 
 
 @dataclass(frozen=True, slots=True)
+class FractionStep:
+    """One position of a fraction, with the part of the fraction's dose given there."""
+
+    position: str
+    weight: float
+
+
+@dataclass(frozen=True, slots=True)
 class PlannedFraction:
-    """One prescribed fraction: its number in the course, phase, dose and position."""
+    """One prescribed fraction: its number in the course, its phase, dose and steps.
+
+    An ordinary fraction has one step; one that is split over several positions has one for each.
+    """
 
     number: int
     phase: str
     dose_gy: float
-    position: str
+    steps: tuple[FractionStep, ...]
+
+    @property
+    def position(self) -> str:
+        """Return the position's label, or those of a split fraction joined by +."""
+        return "+".join(step.position for step in self.steps)
 
 
 @dataclass(frozen=True, slots=True)

@@ -7,15 +7,19 @@ from typing import TYPE_CHECKING
 from featherlog.errors import RefusedError
 from featherlog.geometry.beams import GeometryError
 from featherlog.geometry.frames import table_move
-from featherlog.junction.edges import match_point, place_exact, place_rounded
+from featherlog.junction.borders import border_settings
+from featherlog.junction.design import Technique
 from featherlog.junction.limits import limit_faults, nearest_admissible
-from featherlog.junction.mismatch import entrance_gap, junction_setting
+from featherlog.junction.mismatch import entrance_gap, junction_setting, skin_rise
+from featherlog.junction.placing import Task, match_point
 from featherlog.junction.plan import BeamSetting, FieldSetting, PositionSettings
+from featherlog.junction.points import OUTWARD
+from featherlog.junction.rounding import place_exact, place_rounded
 
 if TYPE_CHECKING:
     from featherlog.junction.design import Course, Junction, Position
-    from featherlog.junction.edges import Chain, PlacedBeam
     from featherlog.junction.machine import Machine
+    from featherlog.junction.placing import Chain, PlacedBeam, PlacedField
 
 
 def solve(course: Course, machine: Machine) -> tuple[PositionSettings, ...]:
@@ -25,21 +29,39 @@ def solve(course: Course, machine: Machine) -> tuple[PositionSettings, ...]:
     value and the nearest admissible offset.
     """
     try:
-        depths = match_depths(course, machine)
-        refusals: list[str] = []
-        settings = []
-        for position in course.positions:
-            chain = place_rounded(course, machine, depths, position.offset_cm)
-            faults = limit_faults(machine, chain)
-            if faults:
-                hint = nearest_admissible(course, machine, depths, position)
-                refusals += [f"position {position.label}: {fault}; {hint}" for fault in faults]
-            settings.append(_position_settings(course, machine, depths, position, chain))
+        task = Task(course, machine, match_depths(course, machine))
     except GeometryError as error:
         raise RefusedError(f"course {course.key}: {error}") from error
+    settings: list[PositionSettings] = []
+    refusals: list[str] = []
+    for position in course.positions:
+        try:
+            chain = place_rounded(task, position.offset_cm)
+            faults = limit_faults(task, chain)
+        except GeometryError as error:
+            faults = (str(error),)
+        if faults:
+            hint = nearest_admissible(task, position)
+            refusals += [f"position {position.label}: {fault}; {hint}" for fault in faults]
+        else:
+            settings.append(_position_settings(task, position, chain))
+    refusals += _unlit_gaps(course, settings[:1])
     if refusals:
         raise RefusedError("\n".join(refusals))
     return tuple(settings)
+
+
+def _unlit_gaps(course: Course, settings: list[PositionSettings]) -> list[str]:
+    """Say which skin gaps cannot be set because no pair of beams lights the entrance skin."""
+    return [
+        f"junction {junction.name}: its fields have no beams that both enter the "
+        f"{junction.entrance} skin, so there is no gap to set there"
+        for position in settings
+        for junction in course.junctions
+        if junction.technique is Technique.SKIN_GAP
+        and junction.entrance.value
+        not in [gap.side for gap in position.junction(junction.name).skin_gaps]
+    ]
 
 
 def match_depths(course: Course, machine: Machine) -> dict[str, float]:
@@ -65,7 +87,8 @@ def _depth_of_gap(
     deepest = junction.thickness_cm or 50.0
 
     def excess(depth_cm: float) -> float:
-        chain = place_exact(course, machine, {**depths, junction.name: depth_cm}, offsets)
+        task = Task(course, machine, {**depths, junction.name: depth_cm})
+        chain = place_exact(task, offsets)
         asked = junction.skin_gap_cm or 0.0
         return entrance_gap(junction, chain[index], chain[index + 1]) - asked
 
@@ -78,63 +101,89 @@ def _depth_of_gap(
     return float(brentq(excess, 0.0, deepest, xtol=1e-10))
 
 
-def _position_settings(
-    course: Course, machine: Machine, depths: dict[str, float], position: Position, chain: Chain
-) -> PositionSettings:
-    exact = place_exact(course, machine, depths, position.offset_cm)
-    first = chain[0].beams[0].frame.isocentre_cm
-    fields = []
-    for placed, wanted in zip(chain, exact, strict=True):
-        beams = tuple(
-            _beam_setting(got, want, position)
-            for got, want in zip(placed.beams, wanted.beams, strict=True)
-        )
-        step = placed.beams[0].frame.isocentre_cm - first
-        fields.append(
-            FieldSetting(
-                field=placed.field.name,
-                moved_by=placed.field.moved_by.value,
-                moved_cm=placed.moved_cm,
-                table_from_a_cm=table_move(course.patient_position, (0.0, 0.0, placed.moved_cm)),
-                table_from_first_field_cm=table_move(
-                    course.patient_position, (float(step[0]), float(step[1]), float(step[2]))
-                ),
-                beams=beams,
-            )
-        )
+def _position_settings(task: Task, position: Position, chain: Chain) -> PositionSettings:
+    course = task.course
+    exact = place_exact(task, position.offset_cm)
     junctions = tuple(
         junction_setting(
             junction,
             offset_cm=position.offset_cm[junction.name],
             match_point_cm=match_point(
-                junction, depths[junction.name], position.offset_cm[junction.name]
+                junction, task.depth_cm[junction.name], position.offset_cm[junction.name]
             ),
-            match_depth_cm=depths[junction.name],
+            match_depth_cm=task.depth_cm[junction.name],
             exact=(exact[index], exact[index + 1]),
             rounded=(chain[index], chain[index + 1]),
+            patient=course.patient_position,
+            tolerances=task.machine.tolerances,
         )
         for index, junction in enumerate(course.junctions)
     )
-    return PositionSettings(position.label, tuple(fields), junctions)
+    fields = tuple(
+        _field_setting(course, position, placed, wanted, chain[0])
+        for placed, wanted in zip(chain, exact, strict=True)
+    )
+    return PositionSettings(position.label, fields, junctions, border_settings(course, chain))
 
 
-def _beam_setting(got: PlacedBeam, want: PlacedBeam, position: Position) -> BeamSetting:
-    x, y, z = (float(value) for value in got.frame.isocentre_cm)
+def _field_setting(
+    course: Course, position: Position, placed: PlacedField, wanted: PlacedField, first: PlacedField
+) -> FieldSetting:
+    field = placed.field
+    here, there = placed.beams[0].isocentre_cm, first.beams[0].isocentre_cm
+    step = (here[0] - there[0], here[1] - there[1], here[2] - there[2])
+    return FieldSetting(
+        field=field.name,
+        moved_by=field.moved_by.value,
+        moved_cm=placed.moved_cm,
+        table_from_a_cm=table_move(course.patient_position, (0.0, 0.0, placed.moved_cm)),
+        table_from_first_field_cm=table_move(course.patient_position, step),
+        beams=tuple(
+            _beam_setting(course, placed, got, want, position)
+            for got, want in zip(placed.beams, wanted.beams, strict=True)
+        ),
+        dose_per_fraction_gy=field.dose_per_fraction_gy,
+        earlier_course=field.earlier.label if field.earlier else "",
+        earlier_dose_gy=field.earlier.dose_gy if field.earlier else 0.0,
+    )
+
+
+def _beam_setting(
+    course: Course, field: PlacedField, got: PlacedBeam, want: PlacedBeam, position: Position
+) -> BeamSetting:
     beam = got.beam
     return BeamSetting(
         beam=beam.name,
         energy=beam.energy,
         weight=beam.weight,
         gantry_deg=beam.gantry_deg,
-        collimator_deg=beam.collimator_deg,
-        couch_deg=beam.couch_deg,
-        isocentre_cm=(x, y, z),
-        ssd_cm=beam.ssd_cm,
-        meterset_mu=position.meterset_mu[beam.name],
+        collimator_deg=got.collimator_deg,
+        couch_deg=got.couch_deg,
+        isocentre_cm=got.isocentre_cm,
+        ssd_cm=beam.ssd_cm - _skin_rise(course, field, got),
+        meterset_mu=position.meterset_mu.get(beam.name, 0.0),
         jaw_cm=got.jaws,
         exact_jaw_cm=want.jaws,
         superior_jaw=got.superior.jaw,
         inferior_jaw=got.inferior.jaw,
         superior_edge=got.superior_edge,
         inferior_edge=got.inferior_edge,
+        sad_cm=beam.sad_cm,
+        exact_collimator_deg=want.collimator_deg,
+        exact_couch_deg=want.couch_deg,
+        edges_by=beam.edges_by.value,
     )
+
+
+def _skin_rise(course: Course, field: PlacedField, placed: PlacedBeam) -> float:
+    """Return how far (cm) the skin under a beam rises when a sloping skin is moved under it.
+
+    The isocentre's height stays, so the SSD falls by the same; only beams that enter the sloping
+    skin see it.
+    """
+    junction = next((j for j in course.junctions if j.name == field.field.follows), None)
+    if junction is None:
+        return 0.0
+    axis, sign = OUTWARD[junction.entrance]
+    facing = sign * float(placed.frame.toward_source[axis])
+    return max(0.0, facing) * skin_rise(junction, field.moved_cm)

@@ -47,5 +47,5 @@ def fractions_given(plan: Plan, states: Mapping[int, FractionState]) -> dict[str
             for state in states.values()
             for beam in field.beams
         )
-        for field in plan.positions[0].fields
+        for field in plan.positions[0].treated
     }

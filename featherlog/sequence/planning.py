@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from itertools import chain
 from typing import TYPE_CHECKING
 
 from featherlog.junction.plan import Plan, PlannedFraction
@@ -26,15 +27,13 @@ def plan_course(course: Course, machine: Machine) -> Plan:
 
 def plan_fractions(course: Course) -> tuple[PlannedFraction, ...]:
     """Return every prescribed fraction; numbers run through all phases."""
-    doses = [
-        (phase.name, phase.dose_per_fraction_gy)
-        for phase in course.phases
-        for _ in range(phase.fractions)
-    ]
-    positions = assign(course.sequence, course.fractions)
+    phases = [[phase.dose_per_fraction_gy] * phase.fractions for phase in course.phases]
+    runs = phases if course.sequence.restart_each_phase else [list(chain.from_iterable(phases))]
+    steps = [steps for doses in runs for steps in assign(course.sequence, doses)]
+    names = [phase.name for phase in course.phases for _ in range(phase.fractions)]
     return tuple(
-        PlannedFraction(number, phase, dose, position)
-        for number, ((phase, dose), position) in enumerate(
-            zip(doses, positions, strict=True), start=1
+        PlannedFraction(number, name, dose, step)
+        for number, (name, dose, step) in enumerate(
+            zip(names, chain.from_iterable(phases), steps, strict=True), start=1
         )
     )

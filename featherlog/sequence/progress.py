@@ -69,7 +69,7 @@ def fraction_states(
     by_fraction: dict[int, list[DeliveredBeam]] = defaultdict(list)
     for beam in delivered:
         by_fraction[beam.fraction].append(beam)
-    names = [beam.beam for field in plan.positions[0].fields for beam in field.beams]
+    names = [beam.beam for field in plan.positions[0].treated for beam in field.beams]
     return {
         number: _state(number, rows, names, meterset_percent)
         for number, rows in sorted(by_fraction.items())

@@ -7,15 +7,15 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from featherlog.junction.design import Technique
-from featherlog.sequence.pattern import even_block, shares
+from featherlog.junction.design import Angles, Technique
+from featherlog.sequence.pattern import evener_blocks, weighted_shares
 
 if TYPE_CHECKING:
     from collections.abc import Iterator, Sequence
 
     from featherlog.junction.design import Course, Junction
     from featherlog.junction.machine import Machine
-    from featherlog.junction.plan import PlannedFraction, PositionSettings
+    from featherlog.junction.plan import BeamSetting, PlannedFraction, PositionSettings
 
 
 def warnings(
@@ -25,24 +25,35 @@ def warnings(
     fractions: Sequence[PlannedFraction],
 ) -> tuple[str, ...]:
     """Return one sentence for everything about a solved design that wants a second look."""
-    found = [*_uneven_shares([fraction.position for fraction in fractions])]
+    found = [*_uneven_shares(fractions)]
     for junction in course.junctions:
         found += _skin_slope(junction)
         found += _gap_against_step(course, junction, settings)
         found += _step_against_penumbra(course, machine, junction, settings)
         found += _residual(machine, junction, settings)
-    found += _same_meterset(settings)
+    found += _same_settings(settings)
     return tuple(found)
 
 
-def _uneven_shares(positions: list[str]) -> Iterator[str]:
-    counts = shares(positions)
-    if len(set(counts.values())) <= 1:
+def _uneven_shares(fractions: Sequence[PlannedFraction]) -> Iterator[str]:
+    counts = weighted_shares(fractions)
+    if max(counts.values()) - min(counts.values()) < _EVEN:
         return
-    shown = ", ".join(f"{label} {count}" for label, count in counts.items())
-    block = even_block(positions)
-    better = f"; blocks of {block} would make them equal" if block else ""
-    yield f"shares are uneven: {shown} of {len(positions)} fractions{better}"
+    shown = ", ".join(f"{label} {count:g}" for label, count in counts.items())
+    yield f"shares are uneven: {shown} of {len(fractions)} fractions{_better(fractions)}"
+
+
+# Shares are the same within this part of a fraction.
+_EVEN = 0.01
+
+
+def _better(fractions: Sequence[PlannedFraction]) -> str:
+    positions = [fraction.position for fraction in fractions]
+    better = evener_blocks(positions)
+    if better is None:
+        return ""
+    shown = ", ".join(f"{block.position} {block.last - block.first + 1}" for block in better)
+    return f"; as many shift days with blocks of {shown} would be more even"
 
 
 def _skin_slope(junction: Junction) -> Iterator[str]:
@@ -101,32 +112,45 @@ def _residual(
     for position in settings:
         places = position.junction(junction.name).mismatches
         if junction.technique is Technique.SKIN_GAP:
+            # Off the match depth a gap or overlap belongs to the technique.
             places = tuple(place for place in places if place.place == "match depth")
-        worst = max(places, key=lambda place: abs(place.rounded_cm))
-        if abs(worst.rounded_cm) > machine.tolerances.jaw_cm + 1e-9:
-            what = "gap" if worst.rounded_cm > 0 else "overlap"
+        worst = max(places, key=lambda place: abs(place.rounded_cm - junction.separation_cm))
+        residual = worst.rounded_cm - junction.separation_cm
+        if abs(residual) > machine.tolerances.jaw_cm + 1e-9:
+            what = "gap" if residual > 0 else "overlap"
+            beyond = " beyond the planned separation" if junction.separation_cm else ""
+            held = " with held angles" if junction.angles is Angles.HELD else ""
             yield (
                 f"junction {junction.name}, position {position.label}: {what} of "
-                f"{abs(worst.rounded_cm):.2f} cm at {worst.place} (x {worst.x_cm:+.1f}, y "
+                f"{abs(residual):.2f} cm{beyond}{held} at {worst.place} (x {worst.x_cm:+.1f}, y "
                 f"{worst.y_cm:+.1f}), more than the jaw tolerance of "
                 f"{machine.tolerances.jaw_cm:.2f} cm"
             )
 
 
-def _same_meterset(settings: Sequence[PositionSettings]) -> Iterator[str]:
+def _same_settings(settings: Sequence[PositionSettings]) -> Iterator[str]:
     for one, other in combinations(settings, 2):
-        beams = zip(
-            (b for f in one.fields for b in f.beams),
-            (b for f in other.fields for b in f.beams),
-            strict=True,
-        )
-        same = [
-            first.beam
-            for first, second in beams
-            if first.jaw_cm != second.jaw_cm and first.meterset_mu == second.meterset_mu
+        pairs = [
+            (first, second)
+            for first, second in zip(_beams(one), _beams(other), strict=True)
+            if first.jaw_cm != second.jaw_cm
         ]
-        if same:
-            yield (
-                f"positions {one.label} and {other.label} have different jaws but the same MU for "
-                f"{', '.join(same)}: MU belong to a position"
-            )
+        where = f"positions {one.label} and {other.label} have different jaws but the same"
+        meterset = [a.beam for a, b in pairs if a.meterset_mu == b.meterset_mu]
+        if meterset:
+            yield f"{where} MU for {', '.join(meterset)}: MU belong to a position"
+        angles = [
+            a.beam
+            for a, b in pairs
+            if a.exact_collimator_deg and _turn(a) == _turn(b) and a.exact_jaw_cm != b.exact_jaw_cm
+        ]
+        if angles:
+            yield f"{where} angles for {', '.join(angles)}: angles belong to a position"
+
+
+def _beams(position: PositionSettings) -> list[BeamSetting]:
+    return [beam for field in position.treated for beam in field.beams]
+
+
+def _turn(beam: BeamSetting) -> tuple[float, float]:
+    return beam.collimator_deg, beam.couch_deg
