@@ -15,7 +15,7 @@ from featherlog.paper.fonts import join, safe, strong
 from featherlog.paper.layout import SIGNED, Furniture, build_pdf, lines_to_fill, space
 from featherlog.paper.review_grid import fraction_grid, is_delivered
 from featherlog.paper.style import grid, para, shares
-from featherlog.words import RECORD_CAUTION
+from featherlog.words import RECORD_CAUTION, figure
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -171,7 +171,7 @@ def _profile_row(shown: Sequence[tuple[JunctionDose, DoseLine]], width: float) -
 
 
 def _profile(junction: JunctionDose, line: DoseLine, width: float) -> list[Flowable]:
-    what = f"{line.depth_cm:.1f} cm deep, levels in percent of {junction.reference_dose_gy:.1f} Gy"
+    what = f"{figure(line.depth_cm)} cm deep, levels in percent of {figure(junction.reference_dose_gy)} Gy"
     return [
         para(strong(f"JUNCTION {junction.junction}, {line.place}")),
         para(safe(what), style.SMALL),

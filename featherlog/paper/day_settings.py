@@ -32,7 +32,7 @@ _HEADS = (
     "Moves",
     "",
 )
-_PARTS = (84, 36, 31, 34, 36, 40, 38, 96, 131, 12)
+_PARTS = (80, 36, 31, 34, 36, 40, 38, 100, 131, 12)
 _NUMBERS = range(1, 6)
 _FIELD_LINE = ParagraphStyle("field", parent=style.BODY, leading=13)
 _NEW_VALUE_PT = 11

@@ -20,7 +20,7 @@ _HEADS = (
     "Place", "Dose", "Max Gy", "%", "at z cm", "Min Gy", "%", "at z cm", ">107 % cm", "<95 % cm",
     "100 % is Gy",
 )  # fmt: skip
-_PARTS = (78, 62, 42, 36, 42, 42, 36, 42, 54, 50, 58)
+_PARTS = (104, 60, 39, 33, 38, 39, 33, 38, 53, 48, 55)
 
 
 def figures_table(lines: Sequence[tuple[str, DoseLine]], width: float) -> Table:
@@ -40,6 +40,7 @@ def figures_table(lines: Sequence[tuple[str, DoseLine]], width: float) -> Table:
     return grid(
         rows,
         shares(width, *_PARTS),
+        ("VALIGN", (0, 0), (-1, -1), "TOP"),
         ("LINEBELOW", (0, 0), (-1, 0), style.HAIR_PT, "black"),
         padding=(2, 0.8),
         repeat_rows=1,
@@ -50,10 +51,10 @@ def _figure_cells(name: str, figures: DoseFigures) -> list[Flowable]:
     numbers = (
         f"{figures.maximum_gy:.2f}",
         f"{figures.maximum_percent:.1f}",
-        signed(figures.maximum_z_cm),
+        signed(figures.maximum_z_cm, least=2),
         f"{figures.minimum_gy:.2f}",
         f"{figures.minimum_percent:.1f}",
-        signed(figures.minimum_z_cm),
+        signed(figures.minimum_z_cm, least=2),
         f"{figures.over_107_cm:.2f}",
         f"{figures.under_95_cm:.2f}",
         figure(figures.reference_gy),
