@@ -171,7 +171,8 @@ def _profile_row(shown: Sequence[tuple[JunctionDose, DoseLine]], width: float) -
 
 
 def _profile(junction: JunctionDose, line: DoseLine, width: float) -> list[Flowable]:
-    what = f"{figure(line.depth_cm)} cm deep, levels in percent of {figure(junction.reference_dose_gy)} Gy"
+    reference = f"levels in percent of {figure(junction.reference_dose_gy)} Gy"
+    what = f"{figure(line.depth_cm)} cm deep, {reference}"
     return [
         para(strong(f"JUNCTION {junction.junction}, {line.place}")),
         para(safe(what), style.SMALL),
