@@ -114,7 +114,8 @@ def _angle_faults(machine: Machine, placed: PlacedBeam) -> Iterator[str]:
         ("collimator", placed.collimator_deg, machine.collimator_deg),
         ("couch", placed.couch_deg, machine.couch_deg),
     ):
-        if not allowed.holds(value):
+        # 270 and -90 degrees are one angle, whichever way a machine's range is written.
+        if not any(allowed.holds(value + turn) for turn in (-360.0, 0.0, 360.0)):
             yield (
                 f"{name} angle of beam {beam.name} is {value:.1f} degrees, outside "
                 f"{_range(allowed)} degrees"

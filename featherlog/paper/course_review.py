@@ -9,12 +9,13 @@ from reportlab.platypus import KeepTogether
 
 from featherlog.paper import style
 from featherlog.paper.departures import departure_line
-from featherlog.paper.dose_picture import dose_drawing, figures_table, legend
+from featherlog.paper.dose_figures import figures_table
+from featherlog.paper.dose_picture import legend, line_drawing
 from featherlog.paper.fonts import join, safe, strong
 from featherlog.paper.layout import SIGNED, Furniture, build_pdf, lines_to_fill, space
 from featherlog.paper.review_grid import fraction_grid, is_delivered
 from featherlog.paper.style import grid, para, shares
-from featherlog.words import RECORD_CAUTION
+from featherlog.words import RECORD_CAUTION, figure
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -133,7 +134,7 @@ def _sides(lines: Sequence[SidesLine], width: float) -> Table:
         ]
         for line in lines
     ]
-    return _ruled(rows, shares(width, 5, 10, 10, 4))
+    return _ruled(rows, shares(width, 8, 10, 10, 4))
 
 
 def _side(field: str, dose_gy: float) -> Flowable:
@@ -170,11 +171,12 @@ def _profile_row(shown: Sequence[tuple[JunctionDose, DoseLine]], width: float) -
 
 
 def _profile(junction: JunctionDose, line: DoseLine, width: float) -> list[Flowable]:
-    what = f"{line.depth_cm:.1f} cm deep, percent of {junction.reference_dose_gy:.1f} Gy"
+    reference = f"levels in percent of {figure(junction.reference_dose_gy)} Gy"
+    what = f"{figure(line.depth_cm)} cm deep, {reference}"
     return [
         para(strong(f"JUNCTION {junction.junction}, {line.place}")),
         para(safe(what), style.SMALL),
-        dose_drawing(junction, line.place, width=width, height=_PICTURE_PT, with_legend=False),
+        line_drawing(junction, line, width=width, height=_PICTURE_PT, with_legend=False),
     ]
 
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING, Any
 
 from featherlog.paper import style
-from featherlog.paper.fonts import REGULAR, Markup, safe, strong
+from featherlog.paper.fonts import safe, strong
 from featherlog.paper.layout import space
 from featherlog.paper.side_view import side_drawing
 from featherlog.paper.style import grid, para, shares
@@ -82,11 +82,11 @@ def _diagram(view: DayView, junction: JunctionView, width: float, height: float)
 
 
 def _text(junction: JunctionView, width: float) -> list[Flowable]:
-    name = safe(f"JUNCTION {junction.junction}")
     what = f"{junction.technique}, {signed(junction.offset_cm)} cm from position A"
     return [
-        para(Markup(f'{name}<font name="{REGULAR}" size="8">  {safe(what)}</font>'), style.LEAD),
+        para(safe(f"JUNCTION {junction.junction}"), style.LEAD),
         para(safe(f"{junction.superior_field} | {junction.inferior_field}")),
+        para(safe(what), style.SMALL),
         space(3),
         _gaps(junction.gaps, width),
     ]
@@ -112,8 +112,8 @@ def _gaps(gaps: tuple[GapView, ...], width: float) -> Table:
         ("BOX", (3, 1), (3, -1), style.RULE_PT, "black"),
         ("INNERGRID", (3, 1), (3, -1), style.RULE_PT, "black"),
         ("LINEABOVE", (0, 1), (2, -1), style.HAIR_PT, "black"),
-        ("TOPPADDING", (0, 1), (-1, -1), 3),
-        ("BOTTOMPADDING", (0, 1), (-1, -1), 3),
+        ("TOPPADDING", (0, 1), (-1, -1), 2),
+        ("BOTTOMPADDING", (0, 1), (-1, -1), 2),
     )
 
 

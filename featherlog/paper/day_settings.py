@@ -29,16 +29,17 @@ _HEADS = (
     "MU",
     "Edge",
     "Jaw, cm",
-    "Edge moves",
+    "Moves",
     "",
 )
-_PARTS = (82, 36, 32, 34, 34, 42, 38, 98, 125, 14)
+_PARTS = (80, 36, 31, 34, 36, 40, 38, 100, 131, 12)
 _NUMBERS = range(1, 6)
 _FIELD_LINE = ParagraphStyle("field", parent=style.BODY, leading=13)
 _NEW_VALUE_PT = 11
 _SPACE = "\N{NO-BREAK SPACE}" * 2
 _JAW_LINE = ParagraphStyle("jaw", parent=style.BODY, leading=12)
 _EDGE_COLUMN = 6
+_EDGES = ("superior", "inferior")
 
 
 def settings_table(view: DayView, width: float, padding: float) -> Table:
@@ -104,9 +105,16 @@ def _table_line(since: str, words: str) -> Any:  # noqa: ANN401 - a reportlab fl
 
 
 def _lines(beam: BeamView) -> Iterator[tuple[JawView, ...]]:
-    """Yield the jaws of one line: a changed jaw alone, unchanged ones of one edge together."""
-    for _, jaws in groupby(beam.jaws, key=_line_key):
+    """Yield the jaws of one line: a changed jaw alone, unchanged ones of one edge together.
+
+    The edges that make junctions come first, from the head to the feet, whatever their jaws.
+    """
+    for _, jaws in groupby(sorted(beam.jaws, key=_edge_order), key=_line_key):
         yield tuple(jaws)
+
+
+def _edge_order(jaw: JawView) -> int:
+    return _EDGES.index(jaw.edge) if jaw.edge in _EDGES else len(_EDGES)
 
 
 def _line_key(jaw: JawView) -> tuple[str, bool, str]:

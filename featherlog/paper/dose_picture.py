@@ -6,27 +6,28 @@ from functools import partial
 from typing import TYPE_CHECKING, Any
 
 from reportlab.graphics import renderSVG
-from reportlab.platypus import PageBreak
+from reportlab.platypus import KeepTogether, PageBreak
 
 from featherlog.errors import NotFoundError
 from featherlog.paper import ink, style
+from featherlog.paper.dose_figures import figures_table
 from featherlog.paper.dose_panels import LEVELS_PERCENT, Area, divide
 from featherlog.paper.fonts import BOLD, REGULAR, join, safe, strong
 from featherlog.paper.layout import Furniture, build_pdf, space
 from featherlog.paper.plot import add_foot, add_frame, add_levels, add_marks, add_top
-from featherlog.paper.style import grid, para, shares
+from featherlog.paper.style import para
 from featherlog.words import DOSE_CAUTION, figure, signed
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
 
     from reportlab.graphics.shapes import Drawing
-    from reportlab.platypus import Flowable, Table
+    from reportlab.platypus import Flowable
 
     from featherlog.paper.ink import Dash
     from featherlog.paper.plot import Axes
     from featherlog.paper.style import PageSize
-    from featherlog.views.dose import DoseCurve, DoseFigures, DoseLine, DoseView, JunctionDose
+    from featherlog.views.dose import DoseCurve, DoseLine, DoseView, JunctionDose
 
 _WIDE_PT, _TALL_PT = 520.0, 190.0
 # Three depths and their figures fit one page at this height.
@@ -55,7 +56,6 @@ def dose_drawing(
     *,
     width: float = _WIDE_PT,
     height: float = _TALL_PT,
-    with_legend: bool = True,
 ) -> Drawing:
     """Return the profile at one of a junction's depths, head at the left, size in points.
 
@@ -67,7 +67,18 @@ def dose_drawing(
         NotFoundError: The junction has no profile of that name.
         InputError: A label holds a character that the font cannot print.
     """
-    line = _line(junction, place)
+    return line_drawing(junction, _line(junction, place), width=width, height=height)
+
+
+def line_drawing(
+    junction: JunctionDose,
+    line: DoseLine,
+    *,
+    width: float,
+    height: float,
+    with_legend: bool = True,
+) -> Drawing:
+    """Return ``dose_drawing`` of a given profile; several depths may share the name of a place."""
     top = _TOP_PT if with_legend else _BARE_TOP_PT
     area = Area(_LEFT_PT, _BOTTOM_PT, width - _LEFT_PT - _RIGHT_PT, height - _BOTTOM_PT - top)
     panels = divide(line, junction.reference_dose_gy, area)
@@ -169,57 +180,20 @@ def _dose_story(view: DoseView, width: float) -> list[Flowable]:
 
 def _dose_page(view: DoseView, junction: JunctionDose, width: float) -> list[Flowable]:
     progress = f"{view.delivered_fractions} of {view.fractions} fractions delivered"
-    reference = f"percent of {figure(junction.reference_dose_gy)} Gy"
-    body: list[Flowable] = [
+    levels = f"levels drawn at 95, 100 and 107 % of {figure(junction.reference_dose_gy)} Gy"
+    pictures = [_picture(junction, line, width) for line in junction.lines]
+    figures = [(f"{line.place}, {figure(line.depth_cm)} cm", line) for line in junction.lines]
+    return [
         para(safe(f"JUNCTION {junction.junction}"), style.LEAD),
-        para(safe(f"{progress}; {reference}. {view.model}")),
+        para(safe(f"{progress}; {levels}. {view.model}")),
+        *pictures,
+        space(8),
+        figures_table(figures, width),
     ]
-    for line in junction.lines:
-        place = f"x {signed(line.x_cm)}, y {signed(line.y_cm)} cm"
-        title = join("  ", [strong(line.place), safe(f"depth {figure(line.depth_cm)} cm, {place}")])
-        body += [
-            space(6),
-            para(title),
-            dose_drawing(junction, line.place, width=width, height=_PAGE_TALL_PT),
-        ]
-    return [*body, space(8), figures_table([(line.place, line) for line in junction.lines], width)]
 
 
-_FIGURE_HEADS = (
-    "Place", "Dose", "Max Gy", "%", "at z cm", "Min Gy", "%", "at z cm", ">107 % cm", "<95 % cm"
-)  # fmt: skip
-_FIGURE_PARTS = (76, 64, 46, 40, 44, 46, 40, 44, 54, 50)
-
-
-def figures_table(lines: Sequence[tuple[str, DoseLine]], width: float) -> Table:
-    """Return the figures of each named line's curves: extremes with their places, and lengths."""
-    rows: list[list[Any]] = [[para(safe(head), style.SMALL) for head in _FIGURE_HEADS]]
-    for place, line in lines:
-        kept = [(item.name, item.figures) for item in line.curves if item.figures is not None]
-        named = [_figure_cells(name, figures) for name, figures in kept]
-        firsts = [place, *[""] * (len(named) - 1)]
-        rows += [
-            [para(safe(first), style.SMALL), *cells]
-            for first, cells in zip(firsts, named, strict=False)
-        ]
-    return grid(
-        rows,
-        shares(width, *_FIGURE_PARTS),
-        ("LINEBELOW", (0, 0), (-1, 0), style.HAIR_PT, "black"),
-        padding=(2, 0.8),
-        repeat_rows=1,
-    )
-
-
-def _figure_cells(name: str, figures: DoseFigures) -> list[Flowable]:
-    numbers = (
-        f"{figures.maximum_gy:.2f}",
-        f"{figures.maximum_percent:.1f}",
-        signed(round(figures.maximum_z_cm, 1)),
-        f"{figures.minimum_gy:.2f}",
-        f"{figures.minimum_percent:.1f}",
-        signed(round(figures.minimum_z_cm, 1)),
-        f"{figures.over_107_cm:.2f}",
-        f"{figures.under_95_cm:.2f}",
-    )
-    return [para(safe(name), style.SMALL), *(para(safe(text), style.SMALL) for text in numbers)]
+def _picture(junction: JunctionDose, line: DoseLine, width: float) -> Flowable:
+    where = f"depth {figure(line.depth_cm)} cm, x {signed(line.x_cm)}, y {signed(line.y_cm)} cm"
+    title = para(join("  ", [strong(line.place), safe(where)]))
+    drawing = line_drawing(junction, line, width=width, height=_PAGE_TALL_PT)
+    return KeepTogether([space(6), title, drawing])

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from dataclasses import dataclass
 from io import BytesIO
 from typing import TYPE_CHECKING
@@ -23,7 +24,7 @@ if TYPE_CHECKING:
     from featherlog.views.common import Heading
 
 _GAP_PT = 5.0
-_WRITE_PT = 14.0
+_WRITE_PT = 13.0
 SIGNED = "name, signature, date and time"
 """What a person who signs writes."""
 
@@ -176,12 +177,18 @@ def _pair(name: str, value: str) -> Markup:
 def _foot(furniture: Furniture, width: float, page: str, pages: int) -> Table:
     marks = [*furniture.marks, ("Page", f"{page} of {pages}")]
     rows = [
-        [para(join(" ", [safe(note) for note in furniture.notes]), style.SMALL)],
+        [para(join(" ", [safe(note) for note in _distinct(furniture.notes)]), style.SMALL)],
         [para(_pairs(*marks), style.SMALL)],
     ]
     return grid(
         rows, [width], ("LINEABOVE", (0, 0), (-1, 0), style.FINE_PT, "black"), padding=(0, 1.5)
     )
+
+
+def _distinct(notes: tuple[str, ...]) -> list[str]:
+    # Views carry their own cautions, which may share sentences; each is printed once.
+    sentences = re.split(r"(?<=\.)\s+", " ".join(notes))
+    return list(dict.fromkeys(sentences))
 
 
 def space(points: float) -> Flowable:

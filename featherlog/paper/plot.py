@@ -54,12 +54,21 @@ def ticks(low: float, high: float, most: int = _MOST_TICKS) -> list[float]:
 def add_frame(drawing: Drawing, axes: Axes) -> None:
     """Draw the frame and its dose ticks in Gy, as many as the height has room for."""
     drawing.add(ink.frame(axes.left, axes.bottom, axes.width, axes.height))
-    most = min(_MOST_TICKS, max(2, int(axes.height / _TICK_ROOM_PT)))
-    for dose_gy in ticks(*axes.dose_range_gy, most):
+    for dose_gy in _dose_ticks(axes):
         y = axes.y(dose_gy)
         drawing.add(ink.line((axes.left - _TICK_PT, y), (axes.left, y), width=HAIR_PT))
         text = figure(dose_gy, least=0)
         drawing.add(ink.label((axes.left - _TICK_PT - 2, y - 3), text, anchor="end"))
+
+
+def _dose_ticks(axes: Axes) -> list[float]:
+    """Return as many ticks as have room, and two at least: one alone would show no scale."""
+    most = min(_MOST_TICKS, max(2, int(axes.height / _TICK_ROOM_PT)))
+    values = ticks(*axes.dose_range_gy, most)
+    if len(values) > 1:
+        return values
+    finer = ticks(*axes.dose_range_gy, 2 * most)
+    return [finer[0], finer[-1]] if finer else []
 
 
 def add_foot(drawing: Drawing, axes: Axes) -> None:

@@ -87,12 +87,12 @@ def _closed(view: DayView, width: float) -> list[Flowable]:
 def _sheet(
     view: DayView, diagram_height: float | None, padding: float, width: float
 ) -> list[Flowable]:
-    body: list[Flowable] = [answer_box(view, width), space(5)]
+    body: list[Flowable] = [answer_box(view, width), space(3)]
     if view.part_delivered:
         body += [locked_banner(view, width), space(5)]
-    body += [settings_table(view, width, padding), *_table_reference(view), space(6)]
-    body += [*junction_blocks(view, width, diagram_height), space(5)]
-    body += [*_open_matters(view.open_departures), space(5), _sign_off(width)]
+    body += [settings_table(view, width, padding), *_table_reference(view), space(4)]
+    body += [*junction_blocks(view, width, diagram_height), space(4)]
+    body += [*_open_matters(view.open_departures), space(4), _sign_off(width)]
     if diagram_height is None:
         body += [PageBreak(), *diagrams(view, width, _ALONE_HEIGHT_PT)]
     return body

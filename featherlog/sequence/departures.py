@@ -21,6 +21,8 @@ if TYPE_CHECKING:
     from featherlog.sequence.progress import DeliveredBeam
 
 COHERENT, INCOHERENT, MINOR = "coherent", "incoherent", "for review"
+# A value at its tolerance is within it, whatever binary fractions make of it.
+_NOISE = 1e-9
 
 
 @dataclass(frozen=True, slots=True)
@@ -48,7 +50,7 @@ def position_departures(
 ) -> tuple[Departure, ...]:
     """Return the departures of where the fields of one fraction were treated."""
     given = set(field_position.values())
-    if given == {planned}:
+    if given <= {planned}:
         return ()
     if len(given) == 1:
         place = next(iter(given))
@@ -96,7 +98,7 @@ def meterset_departures(
     found = []
     for beam, part in parts.items():
         percent = 100 * (part - 1)
-        if abs(percent) <= meterset_percent:
+        if abs(percent) <= meterset_percent + _NOISE:
             continue
         kind = "meterset short" if percent < 0 else "meterset over"
         planned = planned_mu[beam]
@@ -120,7 +122,7 @@ def gap_departures(gaps: Iterable[MeasuredGap]) -> tuple[Departure, ...]:
             f"{gap.expected_cm:+.2f} ± {gap.tolerance_cm:.2f} cm",
         )
         for gap in gaps
-        if abs(gap.gap_cm - gap.expected_cm) > gap.tolerance_cm + 1e-9
+        if abs(gap.gap_cm - gap.expected_cm) > gap.tolerance_cm + _NOISE
     )
 
 

@@ -24,13 +24,10 @@ def unequal_sides(
     plan: Plan, states: Mapping[int, FractionState], next_fraction: int
 ) -> tuple[str, ...]:
     """Return a sentence for every reason why the next fraction may not be at a new position."""
-    unfinished = [
-        state.number
-        for state in states.values()
-        if not state.complete and state.number != next_fraction
-    ]
+    before = {number: state for number, state in states.items() if number != next_fraction}
+    unfinished = [number for number, state in before.items() if not state.complete]
     reasons = [f"fraction {number} was begun and not finished" for number in unfinished]
-    given = fractions_given(plan, states)
+    given = fractions_given(plan, before)
     reasons += [
         f"fields {upper} and {lower} have had {given[upper]:.2f} and {given[lower]:.2f} fractions"
         for upper, lower in pairwise(given)

@@ -83,7 +83,7 @@ def _state(
     for row in rows:
         parts[row.beam] += row.part
     given = [row for row in rows if row.meterset_mu > 0] or rows
-    least = 1 - meterset_percent / 100
+    least = 1 - meterset_percent / 100 - 1e-9  # parts that add up to the limit reach it
     return FractionState(
         number=number,
         began_at=given[0].position,

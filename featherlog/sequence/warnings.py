@@ -82,7 +82,8 @@ def _gap_against_step(
         yield (
             f"junction {junction.name}: the gap on the {widest.side} skin "
             f"({widest.expected_cm:+.2f} cm) is not smaller than the feather step "
-            f"({min(steps):.2f} cm), so the cold bands of neighbouring positions overlap there"
+            f"({min(steps):.2f} cm), so the {'cold' if widest.expected_cm > 0 else 'hot'} bands of "
+            "neighbouring positions overlap there"
         )
 
 

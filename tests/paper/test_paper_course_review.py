@@ -110,3 +110,10 @@ def test_a_course_not_begun_has_a_review(review: ReviewView) -> None:
     text = whole_text(course_review(fresh))
     assert "Nofractiondeliveredyet." in text
     assert "noneleftinthiscourse" in text
+
+
+def test_a_sentence_that_two_cautions_share_is_printed_once(review: ReviewView) -> None:
+    dose = replace(review.dose, caution=f"{review.caution} {review.dose.caution}")
+    text = whole_text(course_review(replace(review, dose=dose)))
+    assert text.count(squeezed(review.caution)) == 1
+    assert text.count(squeezed(review.dose.caution)) == 1

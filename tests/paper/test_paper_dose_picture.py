@@ -11,7 +11,7 @@ from pdf_runs import font_files, overlapping, page_runs, page_texts, squeezed
 from reportlab.graphics.shapes import Drawing, PolyLine, String
 
 from featherlog.errors import NotFoundError
-from featherlog.paper.dose_picture import dose_drawing, dose_pdf, dose_svg
+from featherlog.paper.dose_picture import dose_drawing, dose_pdf, dose_svg, line_drawing
 from featherlog.paper.plot import ticks
 from featherlog.paper.style import SMALLEST_PT
 
@@ -106,3 +106,33 @@ def test_ticks_are_few_evenly_spaced_and_inside(low: float, span: float) -> None
     assert 2 <= len(values) <= 7
     assert low - 1e-6 <= values[0]
     assert values[-1] <= low + span + 1e-6
+
+
+def test_two_depths_of_one_name_are_drawn_and_listed_apart(dose_view: DoseView) -> None:
+    junction = dose_view.junctions[0]
+    skin, match, _ = junction.lines
+    asked = (replace(skin, place="asked depth"), replace(match, place="asked depth"))
+    view = replace(dose_view, junctions=(replace(junction, lines=asked),))
+    (page,) = page_texts(dose_pdf(view))
+    for line in asked:
+        figures = line.curves[0].figures
+        assert figures is not None
+        assert f"askeddepth,{line.depth_cm:.1f}cmplanned{figures.maximum_gy:.2f}" in page
+    heights = {
+        curves(line_drawing(junction, line, width=400, height=150))[0].points[101] for line in asked
+    }
+    assert len(heights) == 2
+
+
+def test_every_row_of_percents_names_its_own_reference(dose_view: DoseView) -> None:
+    junction = dose_view.junctions[0]
+    line = junction.lines[0]
+    own = tuple(
+        replace(curve, figures=replace(curve.figures, reference_gy=12.6))
+        for curve in line.curves
+        if curve.name == "delivered" and curve.figures is not None
+    )
+    view = replace(dose_view, junctions=(replace(junction, lines=(replace(line, curves=own),)),))
+    (page,) = page_texts(dose_pdf(view))
+    assert "100%isGy" in page
+    assert "0.000.4012.6" in page

@@ -210,3 +210,11 @@ def test_a_name_that_would_print_blank_is_refused(shift_day: DayView) -> None:
     view = replace(shift_day, heading=replace(shift_day.heading, patient_name="林 Finch"))
     with pytest.raises(InputError, match="U\\+6797"):
         shift_sheet(view)
+
+
+def test_edges_come_before_side_jaws_whatever_their_order_in_the_view(shift_day: DayView) -> None:
+    field = shift_day.fields[0]
+    beam = replace(field.beams[0], jaws=tuple(reversed(field.beams[0].jaws)))
+    view = replace(shift_day, fields=(replace(field, beams=(beam,)),))
+    text = whole_text(shift_sheet(view))
+    assert text.index("superiorY2") < text.index("inferiorY1") < text.index("sideX2")

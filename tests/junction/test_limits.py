@@ -1,0 +1,141 @@
+"""What the machine cannot do is refused by limit, value and nearest admissible offset."""
+
+from __future__ import annotations
+
+import re
+from typing import TYPE_CHECKING
+
+import pytest
+from spine_course import FFS, HFS, beam, junction, machine, pair, spine
+
+from featherlog.errors import RefusedError
+from featherlog.junction.machine import Jaw, Machine, Range, Steps
+from featherlog.junction.solve import solve
+
+if TYPE_CHECKING:
+    from featherlog.junction.design import Course
+
+MILLIMETRE = Steps(jaw_cm=0.1, table_cm=0.1, angle_deg=1.0)
+
+
+def refusal(of: Course, on: Machine) -> str:
+    with pytest.raises(RefusedError) as caught:
+        solve(of, on)
+    return str(caught.value)
+
+
+def machine_with(steps: Steps, jaw: Jaw, low: float, high: float) -> Machine:
+    return machine(steps=steps, travel={jaw: Range(low, high)})
+
+
+@pytest.mark.parametrize("steps", [MILLIMETRE, Steps(1e-6, 1e-6, 1e-6)])
+@pytest.mark.parametrize(
+    ("asked", "jaw", "travel"),
+    [
+        # LOWER's superior jaw closes toward the axis as the junction goes down, and passes it.
+        (-17.0, Jaw.Y2, (-1.0, 20.0)),
+        (-14.9, Jaw.Y2, (0.5, 20.0)),
+        # UPPER's inferior jaw opens.
+        (-4.0, Jaw.Y1, (-17.3, 20.0)),
+        (3.3, Jaw.Y2, (-20.0, 16.0)),
+    ],
+)
+def test_a_jaw_beyond_its_travel_names_the_nearest_offset_that_can_be_set(
+    asked: float, jaw: Jaw, travel: tuple[float, float], steps: Steps
+) -> None:
+    on = machine_with(steps, jaw, *travel)
+    message = refusal(spine(offsets_cm=(0.0, asked)), on)
+    low, high = travel
+    first = message.splitlines()[0]
+    said = re.fullmatch(
+        rf"position B: jaw {jaw} of beam [a-z ]+ would stand at ([-+]\d+\.\d\d) cm, beyond its "
+        rf"travel \{low:+.1f} to \{high:+.1f} cm; "
+        r"the nearest admissible offset is ([-+]\d+\.\d\d) cm",
+        first,
+    )
+    assert said
+    assert not low <= float(said[1]) <= high
+    nearest = float(said[2])
+    solve(spine(offsets_cm=(0.0, nearest)), on)
+    toward = 0.01 if asked > nearest else -0.01
+    refusal(spine(offsets_cm=(0.0, nearest + toward)), on)
+
+
+def test_the_largest_opening() -> None:
+    on = machine(opening_cm=30.0)
+    message = refusal(
+        spine(offsets_cm=(0.0, 4.0, -4.0), upper_follows="J1"), machine(opening_cm=28.0)
+    )
+    assert (
+        "position A: jaws Y1 and Y2 of beam upper would open 28.43 cm, wider than 28.00" in message
+    )
+    solve(spine(offsets_cm=(0.0, 4.0), upper_follows="J1"), on)
+
+
+def test_jaws_that_would_close_on_each_other() -> None:
+    message = refusal(spine(offsets_cm=(0.0, -26.0)), machine())
+    assert "position B: jaws Y1 and Y2 of beam lower would close on each other" in message
+
+
+def tilted(gantry_deg: float, couch_deg: float = 0.0) -> Course:
+    beams = [
+        beam(name, gantry_deg, (0, -5, z), couch_deg=couch_deg) for name, z in (("u", 9), ("l", -9))
+    ]
+    return pair(beams[:1], beams[1:], junction("J", (0, 0, 0), 5.0))
+
+
+def test_an_angle_the_machine_does_not_have() -> None:
+    on = machine(gantry_deg=(0, 170))
+    message = refusal(tilted(190.0), on)
+    assert message.startswith(
+        "position A: gantry angle of beam u is 190.0 degrees, outside +0.0 to +170.0 degrees"
+    )
+    solve(tilted(170.0), on)
+
+
+@pytest.mark.parametrize(("gantry", "allowed"), [(270.0, (-180, 180)), (-90.0, (0, 360))])
+def test_an_angle_is_the_same_a_whole_turn_away(
+    gantry: float, allowed: tuple[float, float]
+) -> None:
+    solve(tilted(gantry), machine(gantry_deg=allowed))
+
+
+def test_every_fault_of_every_position_is_named() -> None:
+    message = refusal(spine(FFS, offsets_cm=(0.0, -26.0, -27.0)), machine())
+    assert [line[:11] for line in message.splitlines()] == ["position B:", "position C:"]
+
+
+@pytest.mark.parametrize("asked", [-0.5, 9.0])
+def test_a_skin_gap_that_no_depth_gives_is_refused(asked: float) -> None:
+    beams = [beam(name, 180, (0, -5, z)) for name, z in (("u", 9), ("l", -9))]
+    between = junction("J", (0, 0, 0), None, skin_gap_cm=asked, thickness_cm=20.0)
+    message = refusal(pair(beams[:1], beams[1:], between), machine())
+    # 9 cm each at 20 cm of depth, seen from 95 cm above the skin.
+    assert message == (
+        f"junction J: no match depth from 0 to 20.0 cm gives a skin gap of {asked:.2f} cm; "
+        "depth 20.0 cm gives 3.13 cm"
+    )
+
+
+def test_a_field_whose_jaws_face_no_junction_is_refused_by_its_beam() -> None:
+    of = pair(
+        [beam("u", 180, (0, -5, 9), collimator_deg=45)],
+        [beam("l", 180, (0, -5, -9))],
+        junction("J", (0, 0, 0), 5.0),
+        position=HFS,
+    )
+    assert "finch-2031: beam u: no jaw faces the junction within 30 degrees" in refusal(
+        of, machine()
+    )
+
+
+def test_a_collimator_at_90_matches_with_its_x_jaws() -> None:
+    of = pair(
+        [beam("u", 180, (0, -5, 9), collimator_deg=90)],
+        [beam("l", 180, (0, -5, -9))],
+        junction("J", (0, 0, 0), 5.0),
+    )
+    (upper,), (lower,) = (each.beams for each in solve(of, machine())[0].fields)
+    assert (upper.superior_jaw, upper.inferior_jaw) == (Jaw.X2, Jaw.X1)
+    assert upper.jaw_cm == {Jaw.X1: -9.0, Jaw.X2: 15.0, Jaw.Y1: -5.0, Jaw.Y2: 5.0}
+    assert lower.jaw_cm == {Jaw.X1: -5.0, Jaw.X2: 5.0, Jaw.Y1: -15.0, Jaw.Y2: 9.0}

@@ -1,0 +1,59 @@
+import pytest
+from spine_course import beam, held, junction, machine, pair, spine
+
+from featherlog.junction.edges import to_step
+from featherlog.junction.machine import Jaw, Steps
+from featherlog.junction.solve import solve
+
+
+@pytest.mark.parametrize(
+    ("value", "step", "expected"),
+    [
+        (0.25, 0.1, 0.3),
+        (-0.25, 0.1, -0.3),
+        (0.15, 0.1, 0.2),  # 0.15 / 0.1 is a little less than 1.5 in binary
+        (0.24, 0.1, 0.2),
+        (-0.24, 0.1, -0.2),
+        (12.3810, 0.05, 12.4),
+        (7.5, 1.0, 8.0),
+        (-7.5, 1.0, -8.0),
+    ],
+)
+def test_halves_go_away_from_zero(value: float, step: float, expected: float) -> None:
+    assert to_step(value, step) == expected
+
+
+def test_no_value_rounds_to_minus_zero() -> None:
+    assert str(to_step(-0.01, 0.1)) == "0.0"
+
+
+def test_what_is_set_goes_to_the_nearest_step_at_the_borders() -> None:
+    _, settings = solve(spine(offsets_cm=(0.0, -1.0)), machine(steps=Steps(0.1, 0.1, 1.0)))
+    laterals, _, lower = settings.fields
+    # 10.6796 up to the border at 20 for the laterals; 11.3208 down to the one at -56.
+    for lateral in laterals.beams:
+        assert lateral.jaw_cm[Jaw.Y2] == pytest.approx(11.0)
+    assert lower.beams[0].jaw_cm[Jaw.Y1] == pytest.approx(-11.3)
+
+
+def test_a_table_move_is_rounded_first_and_the_jaws_make_up_for_it() -> None:
+    course = spine(offsets_cm=(0.0, -1.3), lower_follows="J2")
+    _, settings = solve(course, machine(steps=Steps(1e-6, 0.5, 1.0)))
+    lower = settings.fields[2]
+    assert lower.table_from_a_cm == (0, 1.5, 0)
+    # 0.2 cm too far toward the feet, seen 106 cm from the source.
+    assert lower.beams[0].jaw_cm[Jaw.Y2] == pytest.approx(13.2075 + 0.2 / 1.06, abs=0.0001)
+    at_depth = [p for p in settings.junction("J2").mismatches if p.place == "match depth"]
+    assert [place.rounded_cm for place in at_depth] == pytest.approx([0, 0, 0], abs=1e-5)
+
+
+def test_a_tie_goes_to_the_gap() -> None:
+    course = pair(
+        [beam("u", 180, (0, -5, 12))],
+        [beam("l", 180, (0, -5, -13.25))],
+        junction("J", (0, 0, 0), 5.0),
+        borders=(held(0, -5, 25), held(0, -5, -25)),
+    )
+    (settings,) = solve(course, machine(steps=Steps(0.1, 0.1, 1.0)))
+    assert settings.fields[1].beams[0].jaw_cm[Jaw.Y2] == 13.2
+    assert settings.junction("J").rounding_cm > 0

@@ -1,0 +1,52 @@
+from datetime import date
+
+import pytest
+from spine_course import sequence
+
+from featherlog.junction.design import Weekday
+from featherlog.sequence.calendar import is_treatment_day, next_date, project_dates
+
+# 3 March 2031 is a Monday.
+MONDAY, TUESDAY, FRIDAY, SATURDAY = (date(2031, 3, day) for day in (3, 4, 7, 8))
+NEXT_MONDAY, NEXT_TUESDAY = date(2031, 3, 10), date(2031, 3, 11)
+
+
+def test_a_treatment_day_is_a_chosen_weekday_that_is_not_closed() -> None:
+    plain, closed = sequence(), sequence(closed_dates=(TUESDAY,))
+    saturdays = sequence(weekdays=(Weekday.SATURDAY,))
+    assert [is_treatment_day(plain, day) for day in (MONDAY, TUESDAY, SATURDAY)] == [
+        True,
+        True,
+        False,
+    ]
+    assert not is_treatment_day(closed, TUESDAY)
+    assert is_treatment_day(saturdays, SATURDAY)
+
+
+def test_dates_skip_weekends_and_closures() -> None:
+    order = sequence(closed_dates=(NEXT_MONDAY,))
+    assert project_dates(order, 3, 1, FRIDAY) == (FRIDAY, NEXT_TUESDAY, date(2031, 3, 12))
+
+
+def test_the_first_date_waits_for_a_treatment_day() -> None:
+    assert project_dates(sequence(), 1, 1, SATURDAY) == (NEXT_MONDAY,)
+
+
+def test_two_a_day() -> None:
+    assert project_dates(sequence(), 3, 2, FRIDAY) == (FRIDAY, FRIDAY, NEXT_MONDAY)
+
+
+@pytest.mark.parametrize(
+    ("a_day", "treated_on", "treated", "expected"),
+    [
+        (1, MONDAY, 1, TUESDAY),
+        (1, FRIDAY, 1, NEXT_MONDAY),
+        (2, FRIDAY, 1, FRIDAY),
+        (2, FRIDAY, 2, NEXT_MONDAY),
+        (1, SATURDAY, 1, NEXT_MONDAY),
+    ],
+)
+def test_the_date_after_a_fraction(
+    a_day: int, treated_on: date, treated: int, expected: date
+) -> None:
+    assert next_date(sequence(), a_day, treated_on, treated) == expected

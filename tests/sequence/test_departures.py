@@ -1,0 +1,119 @@
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+import pytest
+from deliveries import deliver
+from spine_course import machine, spine
+
+from featherlog.sequence.departures import (
+    COHERENT,
+    INCOHERENT,
+    MINOR,
+    Departure,
+    MeasuredGap,
+    beams_by_field,
+    gap_departures,
+    meterset_departures,
+    order_departures,
+    position_departures,
+)
+from featherlog.sequence.planning import plan_course
+
+if TYPE_CHECKING:
+    from featherlog.junction.plan import Plan
+
+
+def at(brain: str, upper: str, lower: str) -> dict[str, str]:
+    return {"BRAIN": brain, "UPPER": upper, "LOWER": lower}
+
+
+@pytest.mark.parametrize("where", [at("B", "B", "B"), {"UPPER": "B"}, {}])
+def test_fields_where_they_were_planned_are_no_departure(plan: Plan, where: dict[str, str]) -> None:
+    assert position_departures(plan, "B", where) == ()
+
+
+def test_fields_together_at_another_position_change_only_the_shares(plan: Plan) -> None:
+    (found,) = position_departures(plan, "B", at("A", "A", "A"))
+    assert found == Departure(
+        "other position", COHERENT, "all fields treated at A, planned B: the shares change"
+    )
+
+
+@pytest.mark.parametrize(
+    ("where", "strips"),
+    [
+        # The upper field left behind ends 1 cm above where the lower field now begins.
+        (at("B", "A", "B"), ("twice the dose", "no dose")),
+        (at("B", "B", "A"), (None, "twice the dose")),
+        (at("A", "B", "B"), ("no dose", None)),
+    ],
+)
+def test_a_field_left_behind_leaves_a_strip_one_step_wide(
+    plan: Plan, where: dict[str, str], strips: tuple[str | None, ...]
+) -> None:
+    (found,) = position_departures(plan, "B", where)
+    assert (found.kind, found.grade) == ("fields apart", INCOHERENT)
+    places = ", ".join(f"{field} at {place}" for field, place in where.items())
+    shown = "; ".join(
+        f"a strip of 1.0 cm at {junction} got {what} of this fraction (ideal edges)"
+        for junction, what in zip(("J1", "J2"), strips, strict=True)
+        if what
+    )
+    assert found.detail == f"{places}, planned B: {shown}"
+
+
+def test_the_wrong_direction_leaves_a_strip_two_steps_wide() -> None:
+    either_way = plan_course(spine(offsets_cm=(0.0, -1.0, 1.0)), machine())
+    (found,) = position_departures(either_way, "B", at("B", "B", "C"))
+    assert "a strip of 2.0 cm at J2 got twice the dose of this fraction" in found.detail
+
+
+def test_only_fields_that_received_meterset_have_a_position(plan: Plan) -> None:
+    rows = [*deliver(plan, 1, LOWER=None), *deliver(plan, 1, part=0, BRAIN=None, UPPER=None)]
+    assert beams_by_field(rows) == {"BRAIN": "A", "UPPER": "A"}
+
+
+def test_a_meterset_beyond_tolerance_is_named_with_its_figures() -> None:
+    found = meterset_departures({"u": 0.4, "l": 1.03, "b": 1.0}, dict.fromkeys("ulb", 200.0), 2.0)
+    assert found == (
+        Departure("meterset short", MINOR, "beam u has had 80.0 of 200.0 MU (-60.0 %)"),
+        Departure("meterset over", MINOR, "beam l has had 206.0 of 200.0 MU (+3.0 %)"),
+    )
+
+
+@pytest.mark.parametrize("part", [0.98, 1.02])
+def test_a_meterset_at_its_tolerance_is_within_it(part: float) -> None:
+    assert meterset_departures({"u": part}, {"u": 100.0}, 2.0) == ()
+
+
+def test_a_measured_gap_beyond_tolerance_is_named_with_its_figures() -> None:
+    within, beyond = (MeasuredGap("J1", "posterior", gap, 1.7, 0.3) for gap in (2.0, 1.3))
+    assert gap_departures((within, beyond)) == (
+        Departure(
+            "skin gap",
+            MINOR,
+            "gap on the posterior skin at J1 measured +1.30 cm, expected +1.70 ± 0.30 cm",
+        ),
+    )
+
+
+@pytest.mark.parametrize(
+    ("fraction", "expected", "found"),
+    [
+        (3, 3, []),
+        (4, 3, [("fraction order", "fraction 4 recorded, fraction 3 was due")]),
+        (3, None, [("fraction order", "fraction 3 recorded, no fraction was due")]),
+        (7, None, [("extra fraction", "fraction 7 is beyond the 6 prescribed")]),
+    ],
+)
+def test_the_order_of_fractions(
+    fraction: int, expected: int | None, found: list[tuple[str, str]]
+) -> None:
+    departures = order_departures(fraction, expected, 6, confirmed=True, approved=True)
+    assert [(each.kind, each.detail) for each in departures] == found
+
+
+def test_what_was_treated_without_confirmation_or_approval() -> None:
+    found = order_departures(2, 2, 6, confirmed=False, approved=False)
+    assert [each.kind for each in found] == ["not approved", "not confirmed"]

@@ -1,0 +1,74 @@
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+import pytest
+from deliveries import FIELDS, deliver
+
+from featherlog.sequence.progress import Progress, fraction_states, previous_position, progress
+
+if TYPE_CHECKING:
+    from featherlog.junction.plan import Plan
+    from featherlog.sequence.progress import DeliveredBeam
+
+PERCENT = 2.0
+
+
+def standing(plan: Plan, *given: list[DeliveredBeam]) -> Progress:
+    rows = [row for rows in given for row in rows]
+    return progress(plan, fraction_states(plan, rows, PERCENT))
+
+
+def test_a_course_begins_at_its_first_fraction(plan: Plan) -> None:
+    assert standing(plan) == Progress(0, 1, "A", part_delivered=False)
+
+
+def test_the_next_fraction_is_at_its_planned_position(plan: Plan) -> None:
+    given = [deliver(plan, number) for number in (1, 2)]
+    assert standing(plan, *given) == Progress(2, 3, "B", part_delivered=False)
+
+
+def test_a_broken_fraction_keeps_its_number_and_the_position_where_it_began(plan: Plan) -> None:
+    broken = deliver(plan, 3, part=0.4, **dict.fromkeys(FIELDS, "A"))
+    given = [deliver(plan, 1), deliver(plan, 2), broken]
+    assert standing(plan, *given) == Progress(2, 3, "A", part_delivered=True)
+
+
+def test_parts_that_add_up_complete_a_fraction(plan: Plan) -> None:
+    first, rest = deliver(plan, 1, part=0.4), deliver(plan, 1, part=0.6)
+    assert standing(plan, first, rest) == Progress(1, 2, "A", part_delivered=False)
+
+
+def test_one_beam_left_out_leaves_a_fraction_incomplete(plan: Plan) -> None:
+    assert standing(plan, deliver(plan, 1, LOWER=None)).part_delivered
+
+
+@pytest.mark.parametrize(("parts", "complete"), [((0.98,), 1), ((0.979,), 0), ((0.7, 0.28), 1)])
+def test_complete_within_the_meterset_tolerance(
+    plan: Plan, parts: tuple[float, ...], complete: int
+) -> None:
+    assert standing(plan, *(deliver(plan, 1, part=part) for part in parts)).complete == complete
+
+
+def test_a_missed_fraction_is_next_though_later_ones_were_given(plan: Plan) -> None:
+    given = [deliver(plan, number) for number in (1, 3)]
+    assert standing(plan, *given) == Progress(2, 2, "A", part_delivered=False)
+
+
+def test_a_finished_course_has_no_next_fraction(plan: Plan) -> None:
+    given = [deliver(plan, number) for number in range(1, 7)]
+    assert standing(plan, *given) == Progress(6, None, None, part_delivered=False)
+
+
+def test_each_field_counts_where_it_received_dose(plan: Plan) -> None:
+    (state,) = fraction_states(plan, deliver(plan, 3, LOWER="A"), PERCENT).values()
+    assert state.field_position == {"BRAIN": "B", "UPPER": "B", "LOWER": "A"}
+
+
+def test_the_position_before_is_the_delivered_one_else_the_planned_one(plan: Plan) -> None:
+    late = deliver(plan, 3, **dict.fromkeys(FIELDS, "A"))
+    states = fraction_states(plan, late, PERCENT)
+    assert previous_position(plan, states, 1) is None
+    assert previous_position(plan, states, 4) == "A"
+    assert previous_position(plan, states, 3) == "A"
+    assert previous_position(plan, states, 6) == "C"

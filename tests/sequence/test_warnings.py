@@ -1,0 +1,112 @@
+"""Each warning with its figure, and silence when there is nothing to say."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from typing import TYPE_CHECKING
+
+from spine_course import beam, junction, machine, pair, reach
+
+from featherlog.junction.design import Technique
+from featherlog.sequence.planning import plan_course
+
+if TYPE_CHECKING:
+    from featherlog.junction.design import Course, Junction
+
+# A skin gap of 4·(10 + 10)/100 = 0.8 cm.
+BETWEEN = junction("J", (0, 0, 0), 4.0)
+
+
+def two_fields(
+    between: Junction = BETWEEN, *offsets_cm: float, gantry_deg: float = 180.0
+) -> Course:
+    return pair(
+        [beam("u", gantry_deg, (0, -4, 10))],
+        [beam("l", 180, (0, -4, -10))],
+        between,
+        offsets_cm=offsets_cm or (0.0,),
+    )
+
+
+def said(of: Course) -> tuple[str, ...]:
+    return plan_course(of, machine()).warnings
+
+
+def test_nothing_to_say() -> None:
+    assert said(two_fields(BETWEEN, 0.0, -1.0)) == ()
+
+
+def test_uneven_shares() -> None:
+    uneven = two_fields(BETWEEN, 0.0, -1.0, -2.0)
+    assert said(uneven) == ("shares are uneven: A 10, B 5, C 5 of 20 fractions",)
+    helped = replace(uneven, phases=(replace(uneven.phases[0], fractions=21),))
+    assert said(helped) == (
+        "shares are uneven: A 10, B 6, C 5 of 21 fractions; blocks of 7 would make them equal",
+    )
+
+
+def test_a_skin_slope_that_is_not_entered() -> None:
+    (found,) = said(two_fields(replace(BETWEEN, skin_slope_deg=None)))
+    assert found.startswith("junction J: the skin slope is not entered")
+    assert "7-9 mm of overlap and 140 %" in found
+
+
+def test_a_half_beam_match_needs_no_skin_slope() -> None:
+    between = junction("J", (0, 0, 0), 4.0, technique=Technique.HALF_BEAM, skin_slope_deg=None)
+    both = [beam(name, 180, (0, -4, 0)) for name in "ul"]
+    assert said(pair(both[:1], both[1:], between)) == ()
+
+
+def test_a_gap_as_wide_as_the_step() -> None:
+    (found,) = said(two_fields(BETWEEN, 0.0, -0.8))
+    assert found == (
+        "junction J: the gap on the posterior skin (+0.80 cm) is not smaller than the feather step "
+        "(0.80 cm), so the cold bands of neighbouring positions overlap there"
+    )
+
+
+def test_an_overlap_as_wide_as_the_step_is_hot() -> None:
+    # Both edges are over-travelled by 20 cm, so they overlap on the skin by 4·40/100 cm.
+    crossed = pair(
+        [beam("u", 180, (0, -4, -20))],
+        [beam("l", 180, (0, -4, 20))],
+        BETWEEN,
+        borders=(reach(45.0), reach(45.0)),
+        offsets_cm=(0.0, -1.0),
+    )
+    (found,) = said(crossed)
+    assert "the gap on the posterior skin (-1.60 cm)" in found
+    assert "the hot bands" in found
+
+
+def test_a_step_smaller_than_the_penumbra() -> None:
+    # The penumbra is 0.4 cm wide at the surface and grows by 0.6 cm in 30 cm of depth.
+    half = junction("J", (0, 0, 0), 4.0, technique=Technique.HALF_BEAM)
+    both = [beam(name, 180, (0, -4, 0)) for name in "ul"]
+    (found,) = said(pair(both[:1], both[1:], half, offsets_cm=(0.0, -0.45)))
+    assert found == (
+        "junction J: the feather step (0.45 cm) is smaller than the 80-20 % penumbra of 6 MV at "
+        "the match depth (0.48 cm), so the positions hardly smear the junction out"
+    )
+
+
+def test_half_beams_of_different_gantry_that_part_once_moved() -> None:
+    # The posterior skin lies 4 cm past the isocentre along the anterior beam and 4 cm before it
+    # along the posterior one: moved by 2 cm, they part by 2·(4 + 4)/100 cm.
+    half = junction("J", (0, 0, 0), 4.0, technique=Technique.HALF_BEAM, lateral_limits_cm=(0, 0))
+    opposed = [beam("u", 0, (0, -4, 0))], [beam("l", 180, (0, -4, 0))]
+    (found,) = said(pair(*opposed, half, offsets_cm=(0.0, 2.0)))
+    assert found == (
+        "junction J, position B: gap of 0.16 cm at entrance skin (x +0.0, y +0.0), more than the "
+        "jaw tolerance of 0.10 cm"
+    )
+
+
+def test_the_same_meterset_with_different_jaws() -> None:
+    course = two_fields(BETWEEN, 0.0, -1.0)
+    first, second = course.positions
+    same = replace(second, meterset_mu=first.meterset_mu | {"l": 200.0})
+    (found,) = said(replace(course, positions=(first, same)))
+    assert found == (
+        "positions A and B have different jaws but the same MU for u: MU belong to a position"
+    )
