@@ -27,23 +27,49 @@ def prescribed_dose_gy(plan: Plan, fraction: int) -> float:
 
 
 def fraction_amounts(plan: Plan, position: str, dose_gy: float) -> Amounts:
-    """Return what ``dose_gy`` to every field at one position gives through each beam."""
-    return {(position, beam.beam): dose_gy * beam.weight for beam in _beams(plan, position)}
+    """Return what a fraction of ``dose_gy`` at one position gives through each beam.
+
+    A field with its own dose per fraction gets that; one of an earlier course gets nothing.
+    """
+    return {
+        (position, beam.beam): (
+            dose_gy if field.dose_per_fraction_gy is None else field.dose_per_fraction_gy
+        )
+        * beam.weight
+        for field in plan.position(position).treated
+        for beam in field.beams
+    }
+
+
+def earlier_amounts(plan: Plan) -> Amounts:
+    """Return what the fields of an earlier course gave, whole; they never move."""
+    first = plan.positions[0]
+    return {
+        (first.label, beam.beam): field.earlier_dose_gy * beam.weight
+        for field in first.fields
+        if field.earlier_course
+        for beam in field.beams
+    }
 
 
 def planned_amounts(plan: Plan) -> Amounts:
     """Return what the plan gives when every fraction is delivered as planned."""
     return _total(
-        part
+        (key, step.weight * dose_gy)
         for fraction in plan.fractions
-        for part in fraction_amounts(plan, fraction.position, fraction.dose_gy).items()
+        for step in fraction.steps
+        for key, dose_gy in fraction_amounts(plan, step.position, fraction.dose_gy).items()
     )
 
 
 def unfeathered_amounts(plan: Plan) -> Amounts:
     """Return what the same fractions give when the junctions never leave the first position."""
-    whole_gy = sum(fraction.dose_gy for fraction in plan.fractions)
-    return fraction_amounts(plan, plan.positions[0].label, whole_gy)
+    first = plan.positions[0].label
+    return _total(
+        part
+        for fraction in plan.fractions
+        for part in fraction_amounts(plan, first, fraction.dose_gy).items()
+    )
 
 
 def delivered_amounts(plan: Plan, deliveries: Iterable[DeliveredBeam]) -> Amounts:
@@ -76,9 +102,7 @@ def completed_dose_gy(
     return sum(
         fraction.dose_gy
         for fraction in plan.fractions
-        if all(
-            parts[fraction.number, beam.beam] >= enough for beam in _beams(plan, fraction.position)
-        )
+        if all(parts[fraction.number, beam.beam] >= enough for beam in _beams(plan))
     )
 
 
@@ -93,10 +117,15 @@ def _remaining_parts(plan: Plan, deliveries: tuple[DeliveredBeam, ...]) -> Itera
     parts = _parts_by_fraction(deliveries)
     began = {given.fraction: given.position for given in reversed(deliveries)}
     for fraction in plan.fractions:
-        position = began.get(fraction.number, fraction.position)
-        for key, whole_gy in fraction_amounts(plan, position, fraction.dose_gy).items():
-            missing = max(0.0, 1.0 - parts[fraction.number, key[1]])
-            yield key, whole_gy * missing
+        end = 0.0
+        for step in fraction.steps:
+            start, end = end, end + step.weight
+            # A whole fraction once begun is finished where it began.
+            whole = len(fraction.steps) == 1
+            position = began.get(fraction.number, step.position) if whole else step.position
+            for key, dose_gy in fraction_amounts(plan, position, fraction.dose_gy).items():
+                given = parts[fraction.number, key[1]]
+                yield key, dose_gy * max(0.0, end - max(start, given))
 
 
 def _parts_by_fraction(deliveries: Iterable[DeliveredBeam]) -> defaultdict[tuple[int, str], float]:
@@ -106,8 +135,8 @@ def _parts_by_fraction(deliveries: Iterable[DeliveredBeam]) -> defaultdict[tuple
     return parts
 
 
-def _beams(plan: Plan, position: str) -> Iterator[BeamSetting]:
-    return (beam for field in plan.position(position).fields for beam in field.beams)
+def _beams(plan: Plan) -> Iterator[BeamSetting]:
+    return (beam for field in plan.positions[0].treated for beam in field.beams)
 
 
 def _total(parts: Iterable[_Part]) -> Amounts:

@@ -50,7 +50,7 @@ def edge_on_line(line: AxisLine, setting: BeamSetting, edge: EdgePlane) -> EdgeO
     """
     z_cm = edge.z_at(line.x_cm, line.y_cm)
     crossing_cm = (line.x_cm, line.y_cm, z_cm)
-    depth_cm = depth_in_beam(crossing_cm, setting, line.machine.sad_cm, line.patient_position)
+    depth_cm = depth_in_beam(crossing_cm, setting, line.patient_position)
     across_cm = sigma_at(line.machine.quality(setting.energy), depth_cm)
     stretch = float(np.linalg.norm(edge.normal)) / abs(edge.normal[2])
     return EdgeOnLine(z_cm, across_cm * stretch)

@@ -16,6 +16,7 @@ import numpy as np
 from featherlog.dose.amounts import (
     completed_dose_gy,
     delivered_amounts,
+    earlier_amounts,
     planned_amounts,
     predicted_amounts,
     unfeathered_amounts,
@@ -89,12 +90,14 @@ def _course_sums(
 ) -> tuple[_CourseSum, ...]:
     prescribed_gy = sum(fraction.dose_gy for fraction in plan.fractions)
     complete_gy = completed_dose_gy(plan, deliveries, meterset_tolerance_percent)
-    delivered = delivered_amounts(plan, deliveries)
+    earlier = earlier_amounts(plan)
     return (
-        _CourseSum(PLANNED, planned_amounts(plan), 1.0),
-        _CourseSum(DELIVERED, delivered, complete_gy / prescribed_gy),
-        _CourseSum(PREDICTED, predicted_amounts(plan, deliveries), 1.0),
-        _CourseSum(UNFEATHERED, unfeathered_amounts(plan), 1.0),
+        _CourseSum(PLANNED, earlier | planned_amounts(plan), 1.0),
+        _CourseSum(
+            DELIVERED, earlier | delivered_amounts(plan, deliveries), complete_gy / prescribed_gy
+        ),
+        _CourseSum(PREDICTED, earlier | predicted_amounts(plan, deliveries), 1.0),
+        _CourseSum(UNFEATHERED, earlier | unfeathered_amounts(plan), 1.0),
     )
 
 

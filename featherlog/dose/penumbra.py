@@ -16,7 +16,7 @@ if TYPE_CHECKING:
 
 
 def depth_in_beam(
-    point_cm: Point, setting: BeamSetting, sad_cm: float, patient_position: PatientPosition
+    point_cm: Point, setting: BeamSetting, patient_position: PatientPosition
 ) -> float:
     """Return the depth (cm) of a point along a beam from that beam's own entrance surface.
 
@@ -28,9 +28,9 @@ def depth_in_beam(
         collimator_deg=setting.collimator_deg,
         couch_deg=setting.couch_deg,
         isocentre_cm=setting.isocentre_cm,
-        sad_cm=sad_cm,
+        sad_cm=setting.sad_cm,
     )
-    from_source_cm = sad_cm - float(frame.to_beam(point_cm)[2])
+    from_source_cm = setting.sad_cm - float(frame.to_beam(point_cm)[2])
     return max(0.0, from_source_cm - setting.ssd_cm)
 
 

@@ -222,6 +222,8 @@ class SequencePattern:
     and the single position for no shift. ``block_fractions`` belongs to blocks; by dose, the
     junction moves once a position has had at least ``block_dose_gy``. ``weights`` split every
     fraction over the positions. ``restart_each_phase`` begins the order again with each phase.
+    ``closed_dates`` are the course's and the machine's, ``holidays`` the public ones of the
+    ``holiday_calendar`` (country, region).
     """
 
     pattern: Pattern
@@ -233,6 +235,8 @@ class SequencePattern:
     block_dose_gy: float | None = None
     weights: tuple[float, ...] = ()
     restart_each_phase: bool = False
+    holiday_calendar: str = ""
+    holidays: tuple[date, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)

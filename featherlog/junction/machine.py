@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from datetime import date  # noqa: TC003 - msgspec reads the annotations at run time
 from enum import StrEnum
 
 
@@ -67,13 +68,48 @@ class BeamQuality:
     transmission: float
 
 
+class AngleForm(StrEnum):
+    """How a console writes angles."""
+
+    FULL_CIRCLE = "0 to 360"
+    SIGNED = "-180 to 180"
+
+
+@dataclass(frozen=True, slots=True)
+class AngleScale:
+    """How a console shows an IEC 61217 angle.
+
+    ``zero_deg`` is the IEC angle shown as 0, ``sense`` +1 where the shown angle rises with the IEC
+    angle and -1 where it falls.
+    """
+
+    zero_deg: float
+    sense: int
+    form: AngleForm
+
+
+@dataclass(frozen=True, slots=True)
+class DisplayScale:
+    """The console's own scale, shown beside IEC 61217.
+
+    With ``jaws_outward`` every jaw reads positive on its own side of the axis and negative when it
+    has passed it.
+    """
+
+    gantry: AngleScale
+    collimator: AngleScale
+    couch: AngleScale
+    jaws_outward: bool
+
+
 @dataclass(frozen=True, slots=True)
 class Machine:
     """One treatment machine.
 
     Jaw travel is in signed IEC 61217 positions at the isocentre plane (cm): X1 and Y1 lie on the
     negative side of the beam axis, X2 and Y2 on the positive, and a jaw that may pass the axis has
-    a range that does. Collimator and couch ranges are signed degrees about zero.
+    a range that does. Collimator and couch ranges are signed degrees about zero. On its
+    ``closed_dates`` nobody is treated. ``display`` is None where the console shows IEC 61217.
     """
 
     name: str
@@ -86,6 +122,8 @@ class Machine:
     steps: Steps
     tolerances: Tolerances
     qualities: tuple[BeamQuality, ...]
+    closed_dates: tuple[date, ...] = ()
+    display: DisplayScale | None = None
 
     def quality(self, name: str) -> BeamQuality:
         """Return the edge model of the named energy; ``KeyError`` where there is none."""

@@ -17,8 +17,9 @@ _WEEKDAYS = tuple(Weekday)
 
 
 def is_treatment_day(sequence: SequencePattern, day: date) -> bool:
-    """Tell whether the course is treated on that day: a chosen weekday, and not closed."""
-    return _WEEKDAYS[day.weekday()] in sequence.weekdays and day not in sequence.closed_dates
+    """Tell whether the course is treated on that day: a chosen weekday, open and no holiday."""
+    closed = day in sequence.closed_dates or day in sequence.holidays
+    return _WEEKDAYS[day.weekday()] in sequence.weekdays and not closed
 
 
 def treatment_days(sequence: SequencePattern, start: date) -> Iterator[date]:

@@ -8,13 +8,14 @@ remainder of a broken one keeps its fraction number and the position where it be
 from __future__ import annotations
 
 from collections import defaultdict
-from dataclasses import dataclass
+from dataclasses import dataclass, field
+from itertools import accumulate
 from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Mapping
 
-    from featherlog.junction.plan import Plan
+    from featherlog.junction.plan import Plan, PlannedFraction
 
 
 @dataclass(frozen=True, slots=True)
@@ -36,27 +37,42 @@ class DeliveredBeam:
 
 @dataclass(frozen=True, slots=True)
 class FractionState:
-    """What one fraction has received; ``parts`` is each beam's delivered part of its meterset."""
+    """What one fraction has received; ``parts`` is each beam's delivered part of its meterset.
+
+    ``began_at`` is the position first treated, ``last_position`` each field's latest one, and
+    ``field_positions`` all of each field's positions in the order they were treated.
+    """
 
     number: int
     began_at: str
-    field_position: Mapping[str, str]
+    last_position: Mapping[str, str]
+    field_positions: Mapping[str, tuple[str, ...]]
     parts: Mapping[str, float]
     complete: bool
+
+    def stood_at(self, steps: int) -> str:
+        """Return where the fraction stands: where it began, or the latest of several steps."""
+        return self.began_at if steps == 1 else list(self.last_position.values())[-1]
 
 
 @dataclass(frozen=True, slots=True)
 class Progress:
-    """Where the course stands. ``next_fraction`` is None when every fraction is complete.
+    """Where the course stands, and what is due.
 
-    ``position`` is where the next fraction is to be treated: its planned position, or the one
-    where it began when ``part_delivered``.
+    ``next_fraction`` is None when every fraction is complete. ``step`` counts the steps of a
+    fraction that is split over positions, from 1. ``position`` is where the step is to be treated:
+    its planned position, or where it began when ``part_delivered``. ``due`` is each beam's part of
+    its meterset still to be given in this step, ``expected`` its part once the step is complete.
     """
 
     complete: int
-    next_fraction: int | None
-    position: str | None
-    part_delivered: bool
+    next_fraction: int | None = None
+    step: int = 1
+    steps: int = 1
+    position: str | None = None
+    part_delivered: bool = False
+    due: Mapping[str, float] = field(default_factory=dict)
+    expected: float = 1.0
 
 
 def fraction_states(
@@ -83,31 +99,75 @@ def _state(
     for row in rows:
         parts[row.beam] += row.part
     given = [row for row in rows if row.meterset_mu > 0] or rows
-    least = 1 - meterset_percent / 100 - 1e-9  # parts that add up to the limit reach it
+    positions: dict[str, dict[str, None]] = {}
+    for row in given:
+        positions.setdefault(row.field, {})[row.position] = None
     return FractionState(
         number=number,
         began_at=given[0].position,
-        field_position={row.field: row.position for row in reversed(given)},
+        last_position={row.field: row.position for row in given},
+        field_positions={name: tuple(labels) for name, labels in positions.items()},
         parts=parts,
-        complete=all(part >= least for part in parts.values()),
+        complete=all(part >= 1 - slack(meterset_percent) for part in parts.values()),
     )
 
 
-def progress(plan: Plan, states: Mapping[int, FractionState]) -> Progress:
+def slack(meterset_percent: float) -> float:
+    """Return the part of a meterset that may be missing from one counted as delivered in full."""
+    return meterset_percent / 100 + 1e-9  # parts that add up to the limit reach it
+
+
+def progress(plan: Plan, states: Mapping[int, FractionState], meterset_percent: float) -> Progress:
     """Return where the course stands after the fractions that were begun."""
     complete = sum(state.complete for state in states.values())
     for fraction in plan.fractions:
         state = states.get(fraction.number)
-        if state is None:
-            return Progress(complete, fraction.number, fraction.position, part_delivered=False)
-        if not state.complete:
-            return Progress(complete, fraction.number, state.began_at, part_delivered=True)
-    return Progress(complete, None, None, part_delivered=False)
+        if state is None or not state.complete:
+            return _due(plan, complete, fraction, state, slack(meterset_percent))
+    return Progress(complete)
 
 
-def previous_position(plan: Plan, states: Mapping[int, FractionState], fraction: int) -> str | None:
-    """Return the position treated in the fraction before: as delivered, else as planned."""
-    if fraction <= 1:
+def _due(
+    plan: Plan,
+    complete: int,
+    fraction: PlannedFraction,
+    state: FractionState | None,
+    allowed: float,
+) -> Progress:
+    names = [beam.beam for field in plan.positions[0].treated for beam in field.beams]
+    parts = state.parts if state else dict.fromkeys(names, 0.0)
+    ends = list(accumulate(step.weight for step in fraction.steps))
+    step = next(
+        (number for number, end in enumerate(ends) if min(parts.values()) < end - allowed),
+        len(ends) - 1,
+    )
+    before = ends[step - 1] if step else 0.0
+    begun = state is not None and any(part > before + allowed for part in parts.values())
+    place = state.stood_at(len(ends)) if state and begun else fraction.steps[step].position
+    return Progress(
+        complete=complete,
+        next_fraction=fraction.number,
+        step=step + 1,
+        steps=len(ends),
+        position=place,
+        part_delivered=begun,
+        due={name: max(0.0, ends[step] - part) for name, part in parts.items()},
+        expected=ends[step],
+    )
+
+
+def previous_position(
+    plan: Plan, states: Mapping[int, FractionState], fraction: int, step: int = 1
+) -> str | None:
+    """Return the position treated before a step: as delivered, else as planned; None at the first.
+
+    ``step`` counts the steps of a split fraction from 1.
+    """
+    if step > 1:
+        before, planned = fraction, plan.fraction(fraction).steps[step - 2]
+    elif fraction > 1:
+        before, planned = fraction - 1, plan.fraction(fraction - 1).steps[-1]
+    else:
         return None
-    state = states.get(fraction - 1)
-    return state.began_at if state else plan.fraction(fraction - 1).position
+    state = states.get(before)
+    return state.stood_at(len(plan.fraction(before).steps)) if state else planned.position
