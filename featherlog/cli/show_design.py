@@ -6,13 +6,19 @@ from typing import TYPE_CHECKING
 
 from featherlog import words
 from featherlog.cli.output import rule, table, wrapped
+from featherlog.cli.show_day import heading_lines
 from featherlog.cli.show_dose import dose_lines
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
 
-    from featherlog.junction.plan import JunctionSetting, PositionSettings
-    from featherlog.views.solution import SolutionView
+    from featherlog.junction.plan import (
+        BeamSetting,
+        BorderSetting,
+        JunctionSetting,
+        PositionSettings,
+    )
+    from featherlog.views.solution import BlockLine, SolutionView
 
 
 def solution_text(view: SolutionView) -> str:
@@ -22,8 +28,12 @@ def solution_text(view: SolutionView) -> str:
 
 def _solution(view: SolutionView) -> Iterator[str]:
     course = view.course
-    yield f"{course.key}  {course.site}  plan {course.plan_label}"
-    yield f"{words.patient_position(course.patient_position)}; machine {view.machine}"
+    if view.heading is not None:
+        yield from heading_lines(view.heading)
+    else:
+        yield f"{course.key}  {course.site}  plan {course.plan_label}"
+        yield f"{words.patient_position(course.patient_position)}; machine {view.machine}"
+    yield from _signatures(view)
     if course.note:
         yield wrapped(f"Note: {course.note}")
     for position in view.positions:
@@ -35,47 +45,102 @@ def _solution(view: SolutionView) -> Iterator[str]:
     yield f"{len(view.warnings)} warning(s)" + (":" if view.warnings else "")
     yield from (wrapped(f"WARNING {warning}.") for warning in view.warnings)
     yield rule("=")
+    yield from _hand_checks(view)
+    yield rule("=")
     yield from dose_lines(view.dose)
     yield wrapped(view.caution)
 
 
+def _signatures(view: SolutionView) -> Iterator[str]:
+    for signature in view.signatures:
+        if signature.name:
+            yield f"{signature.act} by {signature.name}, {signature.at}"
+    if view.returned_reason:
+        yield wrapped(f"returned: {view.returned_reason}")
+    if view.content_hash:
+        yield f"content {view.content_hash[:16]}"
+
+
 def _position(position: PositionSettings) -> Iterator[str]:
     yield f"POSITION {position.label}"
-    rows = [
-        (
-            beam.beam,
-            *(words.signed(value) for value in beam.jaw_cm.values()),
-            f"{beam.superior_jaw}/{beam.inferior_jaw}",
-            words.meterset(beam.meterset_mu),
-        )
-        for field in position.fields
-        for beam in field.beams
-    ]
-    heads = ("beam", "X1 cm", "X2 cm", "Y1 cm", "Y2 cm", "sup/inf", "MU")
-    yield table(heads, rows, numeric="X1 cm|X2 cm|Y1 cm|Y2 cm|MU")
+    rows = [_beam_row(beam) for field in position.treated for beam in field.beams]
+    heads = ("beam", "X1", "X2", "Y1", "Y2", "sup/inf", "coll", "couch", "SSD", "MU")
+    yield "Jaws and SSD in cm, angles in degrees (IEC 61217); sup/inf name the end jaws"
+    yield table(heads, rows, numeric="X1|X2|Y1|Y2|coll|couch|SSD|MU")
+    yield from _turned_beams(position)
     for field in position.fields:
+        if field.earlier_course:
+            yield f"{field.field}: of the earlier course {field.earlier_course}, never set"
         for move in words.table_move(field.table_from_a_cm):
-            yield f"{field.field}, from position A: {move}"
+            yield wrapped(f"{field.field}, from position A: {move}")
+    for border in position.borders:
+        yield from _border(border)
     for junction in position.junctions:
         yield from _junction(junction)
 
 
+def _beam_row(beam: BeamSetting) -> tuple[str, ...]:
+    leaves = " (leaves)" if beam.edges_by == "leaves" else ""
+    return (
+        beam.beam + leaves,
+        *(words.signed(value) for value in beam.jaw_cm.values()),
+        f"{beam.superior_jaw}/{beam.inferior_jaw}",
+        words.signed(beam.collimator_deg),
+        words.signed(beam.couch_deg),
+        words.figure(beam.ssd_cm),
+        words.meterset(beam.meterset_mu),
+    )
+
+
+def _turned_beams(position: PositionSettings) -> Iterator[str]:
+    for beam in (beam for field in position.treated for beam in field.beams):
+        if beam.exact_couch_deg or beam.exact_collimator_deg:
+            yield wrapped(
+                f"{beam.beam}, before rounding: collimator "
+                f"{words.signed(beam.exact_collimator_deg, 4, 4)}, couch "
+                f"{words.signed(beam.exact_couch_deg, 4, 4)} degrees"
+            )
+
+
+def _border(border: BorderSetting) -> Iterator[str]:
+    places = ", ".join(
+        f"x {words.signed(x)}: z {words.signed(z, 2)}"
+        for x, z in zip(border.x_cm, border.z_cm, strict=True)
+    )
+    short = f"; {border.short_cm:.2f} cm stay uncovered" if border.short_cm > 0 else ""
+    yield wrapped(f"{border.end} border at {places} cm{short}")
+
+
 def _junction(junction: JunctionSetting) -> Iterator[str]:
     z = words.signed(junction.match_point_cm[2], 2)
-    yield (
-        f"junction {junction.junction}: offset {words.signed(junction.offset_cm)} cm, match depth "
-        f"{words.figure(junction.match_depth_cm, 2)} cm, z {z} cm"
+    yield wrapped(
+        f"junction {junction.junction}: offset {words.signed(junction.offset_cm)} cm, match point "
+        f"{words.figure(junction.depth_below_skin_cm, 2)} cm deep, z {z} cm"
     )
+    if junction.separation_cm:
+        yield f"  planned separation {words.signed(junction.separation_cm, 2)} cm"
     for gap in junction.skin_gaps:
-        yield (
-            f"  gap on the {gap.side} skin {words.signed(gap.expected_cm, 2)} cm  (superior field "
-            f"{gap.superior_part_cm:.2f} + inferior field {gap.inferior_part_cm:.2f})"
+        yield wrapped(
+            f"gap on the {gap.side} skin {words.signed(gap.expected_cm, 2)} cm (superior field "
+            f"{gap.superior_part_cm:.2f} + inferior field {gap.inferior_part_cm:.2f}; along the "
+            f"skin {words.signed(gap.along_skin_cm, 2)})",
+            "  ",
         )
     if junction.three_field_overlap_cm is not None:
         overlap = junction.three_field_overlap_cm
         yield f"  three-field overlap at the critical depth {overlap:.3f} cm"
     if junction.gap_without_overlap_cm is not None:
         yield f"  skin gap that removes it {junction.gap_without_overlap_cm:.3f} cm"
+    yield "  mismatch, worst beam pair (+ gap, − overlap):"
+    yield from (f"    {line}" for line in _mismatches(junction).splitlines())
+    yield wrapped(
+        f"worst with both jaws off by their tolerance {words.signed(junction.if_jaws_off_cm, 2)} "
+        f"cm, with all angles off too {words.signed(junction.if_all_off_cm, 2)} cm",
+        "  ",
+    )
+
+
+def _mismatches(junction: JunctionSetting) -> str:
     rows = [
         (
             place.place,
@@ -86,15 +151,24 @@ def _junction(junction: JunctionSetting) -> Iterator[str]:
         )
         for place in junction.mismatches
     ]
-    yield "  mismatch, worst beam pair (+ gap, − overlap):"
     heads = ("place", "x cm", "y cm", "exact cm", "as set cm")
-    lines = table(heads, rows, numeric="x cm|y cm|exact cm|as set cm").splitlines()
-    yield from (f"    {line}" for line in lines)
+    return table(heads, rows, numeric="x cm|y cm|exact cm|as set cm")
 
 
 def _sequence(view: SolutionView) -> Iterator[str]:
     yield "Sequence (dates are projections):"
-    yield table(
+    yield _blocks(view.blocks)
+    shares = ", ".join(f"{label} {words.figure(count, 0)}" for label, count in view.shares)
+    yield f"Shares: {shares} of {view.course.fractions} fractions"
+    shifts = ", ".join(str(number) for number in view.shift_fractions) or "none"
+    yield wrapped(f"Shift days: {len(view.shift_fractions)} (fractions {shifts})")
+    if view.more_even:
+        yield "More even with as many shift days:"
+        yield _blocks(view.more_even)
+
+
+def _blocks(lines: tuple[BlockLine, ...]) -> str:
+    return table(
         ("fractions", "position", "first", "last"),
         [
             (
@@ -103,10 +177,17 @@ def _sequence(view: SolutionView) -> Iterator[str]:
                 block.first_date,
                 block.last_date,
             )
-            for block in view.blocks
+            for block in lines
         ],
     )
-    shares = ", ".join(f"{label} {count}" for label, count in view.shares)
-    yield f"Shares: {shares} of {view.course.fractions} fractions"
-    shifts = ", ".join(str(number) for number in view.shift_fractions) or "none"
-    yield wrapped(f"Shift days: {len(view.shift_fractions)} (fractions {shifts})")
+
+
+def _hand_checks(view: SolutionView) -> Iterator[str]:
+    yield "Hand check, before rounding: textbook formula beside the exact value"
+    for check in view.hand_checks:
+        yield wrapped(f"{check.position}: {check.subject}: {check.formula}")
+        yield wrapped(
+            f"{check.numbers} = {check.by_formula:.4f}; exact {check.exact:.4f} {check.unit} "
+            f"({check.source})",
+            "    ",
+        )

@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from featherlog.junction.design import Angles, Technique
+from featherlog.junction.hand_check import JAW_RULE, hand_checks
 from featherlog.sequence.pattern import evener_blocks, weighted_shares
 
 if TYPE_CHECKING:
@@ -32,6 +33,7 @@ def warnings(
         found += _step_against_penumbra(course, machine, junction, settings)
         found += _residual(machine, junction, settings)
     found += _same_settings(settings)
+    found += _ssd_against_skin(course, settings[0])
     return tuple(found)
 
 
@@ -155,3 +157,19 @@ def _beams(position: PositionSettings) -> list[BeamSetting]:
 
 def _turn(beam: BeamSetting) -> tuple[float, float]:
     return beam.collimator_deg, beam.couch_deg
+
+
+# An SSD and an isocentre that place the skin farther apart than this do not belong together.
+_SKIN_CM = 0.5
+
+
+def _ssd_against_skin(course: Course, position: PositionSettings) -> Iterator[str]:
+    told = set()
+    for check in hand_checks(course, (position,)):
+        apart = abs(check.by_formula - check.exact) / max(check.exact, 1.0)
+        if check.formula == JAW_RULE and apart > _SKIN_CM / 100 and check.subject not in told:
+            told.add(check.subject)
+            yield (
+                f"{check.subject}: SSD and match depth give {check.by_formula:.2f} cm by hand, the "
+                f"isocentre gives {check.exact:.2f} cm; SSD, skin point and isocentre disagree"
+            )

@@ -1,0 +1,248 @@
+"""Textbook formulas with their numbers, beside what the edge planes give, for a checker's pencil.
+
+Everything is before rounding, so that the two agree wherever the formula is exact. Lengths in cm,
+angles in degrees.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from itertools import pairwise
+from typing import TYPE_CHECKING
+
+from featherlog.geometry.frames import patient_from_beam
+from featherlog.junction.machine import Jaw
+from featherlog.junction.points import OUTWARD
+
+if TYPE_CHECKING:
+    from collections.abc import Iterator
+
+    from featherlog.junction.design import Course, Junction
+    from featherlog.junction.plan import (
+        BeamSetting,
+        FieldSetting,
+        JunctionSetting,
+        PositionSettings,
+    )
+
+JAW_RULE = "jaw = distance from the beam axis × SAD / distance from the source"
+GAP_RULE = "gap = depth × (j1 / SAD1 + j2 / SAD2)"
+OVERLAP_RULE = "overlap = (j1 / SAD1 − j2 / SAD2) × (depth of structure − match depth)"
+COLLIMATOR_RULE = "collimator ≈ atan(neighbour's jaw toward the junction / SAD)"
+COUCH_RULE = "couch ≈ atan(own jaw toward the junction after turning / SAD)"
+COLLIMATOR_EXACT = "tan(collimator) = (neighbour's jaw / SAD) / cos(couch)"
+KHAN = "Khan, The Physics of Radiation Therapy, adjacent fields (from memory)"
+SIMILAR = "similar triangles"
+SAGITTAL = "derived; a lateral beam against a neighbour in the sagittal plane"
+
+
+@dataclass(frozen=True, slots=True)
+class HandCheck:
+    """One formula with its numbers: ``by_formula`` beside ``exact``, both in ``unit``."""
+
+    position: str
+    subject: str
+    formula: str
+    numbers: str
+    by_formula: float
+    exact: float
+    unit: str
+    source: str
+
+
+def hand_checks(course: Course, positions: tuple[PositionSettings, ...]) -> tuple[HandCheck, ...]:
+    """Return every textbook formula that applies to a solved design, position by position."""
+    return tuple(
+        check
+        for position in positions
+        for junction, fields in zip(course.junctions, pairwise(position.fields), strict=True)
+        for check in _junction(
+            course, junction, position.label, position.junction(junction.name), fields
+        )
+    )
+
+
+def _junction(
+    course: Course,
+    junction: Junction,
+    label: str,
+    setting: JunctionSetting,
+    fields: tuple[FieldSetting, FieldSetting],
+) -> Iterator[HandCheck]:
+    turned = junction.turned_field
+    for field, end in zip(fields, ("inferior", "superior"), strict=True):
+        if field.field == turned:
+            neighbour = fields[1] if field is fields[0] else fields[0]
+            yield from _turned(junction, label, field, neighbour)
+        elif not field.earlier_course and not junction.separation_cm:
+            for beam in field.beams:
+                jaw = beam.inferior_jaw if end == "inferior" else beam.superior_jaw
+                entry = entry_depth(course, junction, setting, beam)
+                yield from _jaw(junction, label, beam, setting, entry=entry, jaw=jaw)
+    if turned is None and not junction.separation_cm:
+        yield from _gaps(label, setting, fields)
+        yield from _overlap(junction, label, setting, fields)
+
+
+def _jaw(
+    junction: Junction,
+    label: str,
+    beam: BeamSetting,
+    setting: JunctionSetting,
+    *,
+    entry: tuple[float, float] | None,
+    jaw: Jaw,
+) -> Iterator[HandCheck]:
+    if entry is None:
+        return
+    edge_z = setting.match_point_cm[2]
+    across = abs(edge_z - beam.isocentre_cm[2])
+    ssd, depth = entry
+    yield HandCheck(
+        label,
+        f"{beam.beam}, jaw {jaw} toward {junction.name}",
+        JAW_RULE,
+        f"{across:.3f} × {beam.sad_cm:.1f} / ({ssd:.2f} + {depth:.2f})",
+        across * beam.sad_cm / (ssd + depth),
+        abs(beam.exact_jaw_cm[jaw]),
+        "cm",
+        SIMILAR,
+    )
+
+
+def entry_depth(
+    course: Course, junction: Junction, setting: JunctionSetting, beam: BeamSetting
+) -> tuple[float, float] | None:
+    """Return a beam's SSD and its depth to the match point (cm), where it enters square to a skin.
+
+    None for a turned or oblique beam, and where the skin it enters is not known.
+    """
+    if beam.couch_deg or beam.exact_couch_deg:
+        return None
+    axis, sign = OUTWARD[junction.entrance]
+    toward = patient_from_beam(course.patient_position, beam.gantry_deg, 0.0, 0.0)[axis, 2]
+    facing = round(float(sign * toward), 6)
+    if facing == 1:
+        return beam.ssd_cm, setting.depth_below_skin_cm
+    if facing == -1 and junction.thickness_cm is not None:
+        return beam.ssd_cm, junction.thickness_cm - setting.match_depth_cm
+    return None
+
+
+def _gaps(
+    label: str, setting: JunctionSetting, fields: tuple[FieldSetting, FieldSetting]
+) -> Iterator[HandCheck]:
+    pair = _same_side(fields)
+    if pair is None or not setting.skin_gaps:
+        return
+    upper, lower = pair
+    gap = setting.skin_gaps[0]
+    j1, j2 = _toward(upper, upper.inferior_jaw), _toward(lower, lower.superior_jaw)
+    depth = setting.match_depth_cm
+    yield HandCheck(
+        label,
+        f"gap on the {gap.side} skin at {setting.junction}",
+        GAP_RULE,
+        f"{depth:.3f} × ({j1:.3f} / {upper.sad_cm:.1f} + {j2:.3f} / {lower.sad_cm:.1f})",
+        depth * (j1 / upper.sad_cm + j2 / lower.sad_cm),
+        gap.exact_cm,
+        "cm",
+        KHAN,
+    )
+
+
+def _overlap(
+    junction: Junction,
+    label: str,
+    setting: JunctionSetting,
+    fields: tuple[FieldSetting, FieldSetting],
+) -> Iterator[HandCheck]:
+    pair = _same_side(fields)
+    if pair is None or setting.three_field_overlap_cm is None or junction.critical is None:
+        return
+    upper, lower = pair
+    j1, j2 = _toward(upper, upper.inferior_jaw), _toward(lower, lower.superior_jaw)
+    beyond = abs(junction.critical.depth_cm - setting.match_depth_cm)
+    yield HandCheck(
+        label,
+        f"three-field overlap at {junction.critical.name}",
+        OVERLAP_RULE,
+        f"({j1:.3f} / {upper.sad_cm:.1f} − {j2:.3f} / {lower.sad_cm:.1f}) × {beyond:.3f}",
+        abs(j1 / upper.sad_cm - j2 / lower.sad_cm) * beyond,
+        setting.three_field_overlap_cm,
+        "cm",
+        KHAN,
+    )
+
+
+def _turned(
+    junction: Junction, label: str, field: FieldSetting, neighbour: FieldSetting
+) -> Iterator[HandCheck]:
+    wanted = junction.matched_beam or neighbour.beams[0].beam
+    matched = next(beam for beam in neighbour.beams if beam.beam == wanted)
+    below = field.beams[0].isocentre_cm[2] > neighbour.beams[0].isocentre_cm[2]
+    theirs = matched.superior_jaw if below else matched.inferior_jaw
+    j_theirs = _toward(matched, theirs)
+    for beam in field.beams:
+        own = beam.inferior_jaw if below else beam.superior_jaw
+        j_own = _toward(beam, own)
+        collimator, couch = abs(beam.exact_collimator_deg), abs(beam.exact_couch_deg)
+        yield HandCheck(
+            label,
+            f"{beam.beam}, collimator angle",
+            COLLIMATOR_RULE,
+            f"atan({j_theirs:.3f} / {matched.sad_cm:.1f})",
+            math.degrees(math.atan(j_theirs / matched.sad_cm)),
+            collimator,
+            "degrees",
+            KHAN,
+        )
+        yield HandCheck(
+            label,
+            f"{beam.beam}, couch angle",
+            COUCH_RULE,
+            f"atan({j_own:.3f} / {beam.sad_cm:.1f})",
+            math.degrees(math.atan(j_own / beam.sad_cm)),
+            couch,
+            "degrees",
+            KHAN,
+        )
+        if _lateral(beam) and _sagittal(matched):
+            yield HandCheck(
+                label,
+                f"{beam.beam}, collimator angle",
+                COLLIMATOR_EXACT,
+                f"atan({j_theirs:.3f} / {matched.sad_cm:.1f} / cos {couch:.3f}°)",
+                math.degrees(math.atan(j_theirs / matched.sad_cm / math.cos(math.radians(couch)))),
+                collimator,
+                "degrees",
+                SAGITTAL,
+            )
+
+
+def _toward(beam: BeamSetting, jaw: Jaw) -> float:
+    """Return a jaw's distance from the axis (cm), positive on its own side, before rounding."""
+    value = beam.exact_jaw_cm[jaw]
+    return value if jaw in (Jaw.X2, Jaw.Y2) else -value
+
+
+def _same_side(
+    fields: tuple[FieldSetting, FieldSetting],
+) -> tuple[BeamSetting, BeamSetting] | None:
+    """Return the first beams of both fields where they stand at one gantry angle, unturned."""
+    upper, lower = fields[0].beams[0], fields[1].beams[0]
+    same = upper.gantry_deg == lower.gantry_deg and _straight(upper) and _straight(lower)
+    return (upper, lower) if same else None
+
+
+def _straight(beam: BeamSetting) -> bool:
+    return beam.couch_deg == 0 and beam.exact_couch_deg == 0
+
+
+def _lateral(beam: BeamSetting) -> bool:
+    return beam.gantry_deg % 180 == 90  # noqa: PLR2004 - gantry 90 and 270
+
+
+def _sagittal(beam: BeamSetting) -> bool:
+    return beam.gantry_deg % 180 == 0 and _straight(beam)
