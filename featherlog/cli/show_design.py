@@ -68,14 +68,15 @@ def _junction(junction: JunctionSetting) -> Iterator[str]:
     )
     for gap in junction.skin_gaps:
         yield (
-            f"  gap on the {gap.side} skin {words.signed(gap.expected_cm, 2)} cm  (superior field "
-            f"{gap.superior_part_cm:.2f} + inferior field {gap.inferior_part_cm:.2f})"
+            f"  gap on the {gap.side} skin {words.signed(gap.expected_cm, 2)} cm"
+            f"  (superior {words.figure(gap.superior_part_cm, 2)}, inferior "
+            f"{words.figure(gap.inferior_part_cm, 2)})"
         )
     if junction.three_field_overlap_cm is not None:
         overlap = junction.three_field_overlap_cm
-        yield f"  three-field overlap at the critical depth {overlap:.3f} cm"
+        yield f"  three-field overlap at the critical depth {words.figure(overlap, 3, 3)} cm"
     if junction.gap_without_overlap_cm is not None:
-        yield f"  skin gap that removes it {junction.gap_without_overlap_cm:.3f} cm"
+        yield f"  skin gap that removes it {words.figure(junction.gap_without_overlap_cm, 3, 3)} cm"
     rows = [
         (
             place.place,
