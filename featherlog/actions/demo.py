@@ -17,7 +17,7 @@ from featherlog.actions.papers import review_page, sheet
 from featherlog.actions.record import Delivery, record
 from featherlog.actions.staff import add_staff
 from featherlog.actions.today import due_list, today
-from featherlog.errors import RefusedError
+from featherlog.errors import InputError, RefusedError
 from featherlog.exchange.demo import DEMO_DESIGNS, DEMO_MACHINE, demo_text
 
 if TYPE_CHECKING:
@@ -61,9 +61,13 @@ class Demo:
 def build_demo(folder: Path) -> Demo:
     """Build the demo in a folder, or look at the one that is there.
 
-    Raises RefusedError where the folder holds a database that is not for practice.
+    Raises InputError where the folder cannot be made and RefusedError where it holds a database
+    that is not for practice.
     """
-    folder.mkdir(parents=True, exist_ok=True)
+    try:
+        folder.mkdir(parents=True, exist_ok=True)
+    except OSError as error:
+        raise InputError(f"--folder {folder} cannot be made: {error.strerror}") from error
     file = folder / "featherlog.db"
     database = str(file)
     if not file.exists():
@@ -83,7 +87,7 @@ def build_demo(folder: Path) -> Demo:
 
 def _build(folder: Path, database: str) -> None:
     for name in (DEMO_MACHINE, *DEMO_DESIGNS):
-        (folder / name).write_text(demo_text(name), encoding="utf-8")
+        write_private(folder / name, demo_text(name).encode())
     databases.create(database, demo=True)
     with practice_time(_at("2026-02-27T14:00")):
         for name, role in _STAFF:

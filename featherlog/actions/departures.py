@@ -7,7 +7,8 @@ from typing import TYPE_CHECKING
 from featherlog import words
 from featherlog.actions.desk import at_desk, signing_desk
 from featherlog.actions.stored import departure_lines, load
-from featherlog.errors import InputError, NotFoundError
+from featherlog.actions.typed import required
+from featherlog.errors import NotFoundError
 from featherlog.store import queries
 from featherlog.store.entry import Kind
 
@@ -27,8 +28,7 @@ def explain(database: str | None, key: str, number: int, *, by: str, reason: str
 
     Raises InputError without a reason, NotFoundError where there is no such open departure.
     """
-    if not reason.strip():
-        raise InputError("--reason is empty, but must say why the departure happened")
+    reason = required("--reason", reason, "why the departure happened")
     with signing_desk(database) as desk:
         roles = (words.THERAPIST, words.PHYSICIST, words.PHYSICIAN)
         role = desk.role_of(by, "explain a departure", *roles)
@@ -38,7 +38,7 @@ def explain(database: str | None, key: str, number: int, *, by: str, reason: str
             raise NotFoundError(f"course {key} has no open departure {number}")
         desk.append(
             Kind.DEPARTURE_EXPLAINED,
-            {"departure": number, "reason": reason.strip()},
+            {"departure": number, "reason": reason},
             course=key,
             who=by,
             role=role,

@@ -10,7 +10,8 @@ from featherlog import words
 from featherlog.actions.desk import Desk, signing_desk
 from featherlog.actions.machines import machine_named
 from featherlog.actions.stored import load_latest
-from featherlog.errors import InputError, RefusedError
+from featherlog.actions.typed import required
+from featherlog.errors import RefusedError
 from featherlog.exchange.design_file import named_machine, read_design
 from featherlog.sequence.calendar import treatment_days
 from featherlog.sequence.planning import plan_course
@@ -140,14 +141,13 @@ def send_back(database: str | None, key: str, *, by: str, reason: str) -> Revisi
 
     Raises InputError without a reason and RefusedError where nothing waits.
     """
-    if not reason.strip():
-        raise InputError("--reason is empty, but must say why the design is returned")
+    reason = required("--reason", reason, "why the design is returned")
     with signing_desk(database) as desk:
         role = desk.role_of(by, "return a design", words.PHYSICIST, words.PHYSICIAN)
         revision = _latest(desk, key, *_WAITING, become="returned")
         desk.append(
             Kind.DESIGN_RETURNED,
-            {"revision": revision.number, "reason": reason.strip()},
+            {"revision": revision.number, "reason": reason},
             course=key,
             who=by,
             role=role,

@@ -22,6 +22,9 @@ if TYPE_CHECKING:
     from featherlog.junction.plan import Plan
     from featherlog.views.dose import JunctionDose
 
+# No patient is thicker; the profiles of a deeper line would be of no one.
+_DEEPEST_CM = 60.0
+
 
 def dose(database: str | None, key: str, *, depths_cm: tuple[float, ...] = ()) -> DoseView:
     """Return the dose of a course: planned, delivered, predicted, unfeathered.
@@ -45,7 +48,7 @@ def stored_dose(stored: Stored, *, demo: bool, depths_cm: tuple[float, ...] = ()
             stored.plan,
             stored.machine,
             delivered_beams(stored.deliveries),
-            depths_cm,
+            _checked(depths_cm),
         ),
         caution=f"{words.CAUTION} {words.DOSE_CAUTION}",
     )
@@ -60,9 +63,16 @@ def design_dose(
         fractions=course.fractions,
         delivered_fractions=0,
         model=words.DOSE_MODEL,
-        junctions=junction_doses(course, plan, machine, (), depths_cm),
+        junctions=junction_doses(course, plan, machine, (), _checked(depths_cm)),
         caution=f"{words.CAUTION} {words.DOSE_CAUTION}",
     )
+
+
+def _checked(depths_cm: tuple[float, ...]) -> tuple[float, ...]:
+    for depth in depths_cm:
+        if not 0 <= depth <= _DEEPEST_CM:
+            raise InputError(f"--depth is {depth:g}, but must be 0 to {_DEEPEST_CM:g} cm")
+    return depths_cm
 
 
 def write_pictures(view: DoseView, file: Path) -> tuple[Path, ...]:

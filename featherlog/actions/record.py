@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import asdict, dataclass
 from typing import TYPE_CHECKING, Any
 
 from featherlog.actions.confirm import measured, two_people
 from featherlog.actions.desk import Desk, signing_desk
 from featherlog.actions.stored import Stored, delivered_beams, load
+from featherlog.actions.typed import printable
 from featherlog.errors import InputError
 from featherlog.sequence.calendar import next_date
 from featherlog.sequence.departures import (
@@ -26,13 +28,16 @@ from featherlog.sequence.progress import (
     fraction_states,
     progress,
 )
-from featherlog.store import queries
+from featherlog.store import ledger, queries
 from featherlog.store.entry import Kind
 
 if TYPE_CHECKING:
     from collections.abc import Mapping
 
     from featherlog.junction.plan import PositionSettings
+
+# What may be written between the check and the record of a fraction without undoing the check.
+_LEAVE_CONFIRMED = frozenset({Kind.FRACTION_CONFIRMED, Kind.DEPARTURE_EXPLAINED})
 
 
 @dataclass(frozen=True, slots=True)
@@ -79,6 +84,7 @@ def record(
             is not a number of MU, or no position for a fraction that was not confirmed.
         RefusedError: performer and verifier are not two qualified people.
     """
+    reason = printable("--reason", delivery.reason)
     with signing_desk(database) as desk:
         role = two_people(desk, by, verified_by, "record a fraction")
         stored = load(desk, key)
@@ -100,10 +106,7 @@ def record(
                     {"junction": name, "side": side, "gap_cm": gap}
                     for (name, side), gap in measured(stored, delivery.gaps_cm).items()
                 ],
-                "departures": [
-                    {**asdict(departure), "reason": delivery.reason.strip()}
-                    for departure in departures
-                ],
+                "departures": [{**asdict(departure), "reason": reason} for departure in departures],
                 "after": {
                     "next_fraction": after.next_fraction,
                     "next_position": after.position,
@@ -124,7 +127,7 @@ def record(
         positions=tuple(dict.fromkeys((beam.field, beam.position) for beam in beams)),
         complete=states[number].complete,
         departures=departures,
-        explained=bool(delivery.reason.strip()),
+        explained=bool(reason),
         next_fraction=after.next_fraction,
         next_position=after.position,
         next_date=following,
@@ -132,18 +135,21 @@ def record(
 
 
 def _fraction(stored: Stored, asked: int | None) -> int:
-    if asked is not None:
-        if asked < 1:
-            raise InputError(f"--fraction is {asked}, but must be 1 or more")
-        return asked
     # A fraction beyond the prescribed count is recorded all the same, under the next number.
-    return stored.progress.next_fraction or max(stored.states) + 1
+    extra = max([stored.course.fractions, *stored.states]) + 1
+    if asked is not None and not 1 <= asked <= extra:
+        raise InputError(f"--fraction is {asked}, but must be 1 to {extra}")
+    return asked or stored.progress.next_fraction or extra
 
 
 def _confirmed_position(desk: Desk, stored: Stored, number: int) -> str | None:
     confirmations = queries.confirmations(desk.connection, stored.row.key, number)
-    valid = [c for c in confirmations if c.state_hash == stored.row.state_hash]
-    return valid[-1].position if valid else None
+    if not confirmations:
+        return None
+    last = confirmations[-1]
+    entries = ledger.entries(desk.connection, stored.row.key)
+    since = {entry.kind for entry in entries if entry.number > last.entry}
+    return last.position if since <= _LEAVE_CONFIRMED else None
 
 
 def _beams(
@@ -159,6 +165,9 @@ def _beams(
         )
     names = {beam.beam for field in stored.plan.positions[0].treated for beam in field.beams}
     _known("--meterset", delivery.metersets_mu, names, "beam")
+    for name, mu in delivery.metersets_mu.items():
+        if not 0 <= mu < math.inf:
+            raise InputError(f"--meterset {name}={mu:g} must be a number of MU, 0 or more")
     state = stored.states.get(number)
     rows = []
     for field in stored.plan.positions[0].treated:

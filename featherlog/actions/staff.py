@@ -6,6 +6,7 @@ from typing import TYPE_CHECKING
 
 from featherlog import words
 from featherlog.actions.desk import at_desk, signing_desk
+from featherlog.actions.typed import required
 from featherlog.errors import InputError, RefusedError
 from featherlog.store import queries
 from featherlog.store.entry import Kind
@@ -26,12 +27,12 @@ def add_staff(database: str | None, *, name: str, role: str, by: str) -> None:
     """
     if role not in words.ROLES:
         raise InputError(f"--role is {role!r}, but must be one of {', '.join(words.ROLES)}")
-    if not name.strip() or not name.isprintable():
-        raise InputError("the name is empty or holds unprintable characters")
+    name = required("NAME", name, "who it is")
     with signing_desk(database) as desk:
         known = queries.staff(desk.connection)
-        if any(person.name == name for person in known):
-            raise InputError(f"{name!r} is on the staff list already")
+        # One person under two spellings could perform and verify alone.
+        if taken := [p.name for p in known if _alike(p.name) == _alike(name)]:
+            raise InputError(f"{taken[0]!r} is on the staff list already")
         if known:
             own_role = desk.role_of(by, "add staff", words.ADMINISTRATOR)
         elif role != words.ADMINISTRATOR or by != name:
@@ -48,6 +49,10 @@ def add_staff(database: str | None, *, name: str, role: str, by: str) -> None:
             role=own_role,
             meaning=f"I put {name} on the staff list as {role}",
         )
+
+
+def _alike(name: str) -> list[str]:
+    return name.casefold().split()
 
 
 def list_staff(database: str | None) -> tuple[StaffRow, ...]:

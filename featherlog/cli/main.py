@@ -10,7 +10,7 @@ import typer
 
 from featherlog import __version__
 from featherlog.cli import chart_round, console, physicist, setup
-from featherlog.cli.output import remark, show
+from featherlog.cli.output import remark, show, write_any_terminal
 from featherlog.errors import FeatherlogError
 
 app = typer.Typer(
@@ -46,20 +46,17 @@ def main(
 
 def run() -> None:
     """Run the command line; failures become one sentence and an exit code."""
+    write_any_terminal()
     try:
         app()
     except FeatherlogError as error:
         remark("\n".join(f"featherlog: {line}" for line in str(error).splitlines()))
         sys.exit(error.exit_code)
-    except BrokenPipeError:
-        # The reader of our output went away; there is nobody left to tell.
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
-        sys.exit(1)
     except Exception as error:
         if os.environ.get("FEATHERLOG_DEBUG"):
             raise
         remark(
-            f"featherlog: the program failed ({type(error).__name__}); nothing was written. Run "
-            "`featherlog --debug ...` for the details."
+            f"featherlog: the program failed ({type(error).__name__}); `featherlog database "
+            "status` shows whether anything was written, `featherlog --debug ...` the details."
         )
         sys.exit(FeatherlogError.exit_code)

@@ -2,8 +2,12 @@
 
 from __future__ import annotations
 
+import codecs
+import io
 import sys
 from typing import TYPE_CHECKING
+
+from featherlog import words
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Sequence
@@ -11,9 +15,29 @@ if TYPE_CHECKING:
 WIDTH = 80
 
 
+_PLAIN = {words.MINUS: "-", "±": "+/-", "→": "->"}
+
+
+def write_any_terminal() -> None:
+    """Let a terminal without our characters have plain ones: a lost minus sign would mislead."""
+    codecs.register_error("featherlog", _plain)
+    for stream in (sys.stdout, sys.stderr):
+        if isinstance(stream, io.TextIOWrapper):
+            stream.reconfigure(errors="featherlog")
+
+
+def _plain(error: UnicodeError) -> tuple[str, int]:
+    if not isinstance(error, UnicodeEncodeError):
+        raise error
+    stranger = error.object[error.start]
+    return _PLAIN.get(stranger, "?"), error.start + 1
+
+
 def show(text: str) -> None:
     """Print data on standard output."""
     sys.stdout.write(text if text.endswith("\n") else f"{text}\n")
+    # Now, and not at exit, is when a full disk or a closed pipe can still be told.
+    sys.stdout.flush()
 
 
 def remark(text: str) -> None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import shlex
 from typing import TYPE_CHECKING
 
 from featherlog.cli.output import rule
@@ -14,7 +15,7 @@ if TYPE_CHECKING:
 
 def demo_text(demo: Demo) -> str:
     """Return the demo's walk around its department."""
-    database = f"--database {demo.database}"
+    database = f"--database {shlex.quote(str(demo.database))}"
     course = demo.day.heading.course
     files = "\n".join(f"  {file}" for file in demo.files)
     return "\n".join(

@@ -121,16 +121,18 @@ def _junction(junction: JunctionSetting) -> Iterator[str]:
         yield f"  planned separation {words.signed(junction.separation_cm, 2)} cm"
     for gap in junction.skin_gaps:
         yield wrapped(
-            f"gap on the {gap.side} skin {words.signed(gap.expected_cm, 2)} cm (superior field "
-            f"{gap.superior_part_cm:.2f} + inferior field {gap.inferior_part_cm:.2f}; along the "
-            f"skin {words.signed(gap.along_skin_cm, 2)})",
+            f"gap on the {gap.side} skin {words.signed(gap.expected_cm, 2)} cm (superior "
+            f"{words.figure(gap.superior_part_cm, 2)}, inferior "
+            f"{words.figure(gap.inferior_part_cm, 2)}; along the skin "
+            f"{words.signed(gap.along_skin_cm, 2)})",
             "  ",
         )
     if junction.three_field_overlap_cm is not None:
         overlap = junction.three_field_overlap_cm
-        yield f"  three-field overlap at the critical depth {overlap:.3f} cm"
+        yield f"  three-field overlap at the critical depth {words.figure(overlap, 3, 3)} cm"
     if junction.gap_without_overlap_cm is not None:
-        yield f"  skin gap that removes it {junction.gap_without_overlap_cm:.3f} cm"
+        without = words.signed(junction.gap_without_overlap_cm, 3, 3)
+        yield f"  skin gap that removes it {without} cm"
     yield "  mismatch, worst beam pair (+ gap, − overlap):"
     yield from (f"    {line}" for line in _mismatches(junction).splitlines())
     yield wrapped(

@@ -1,0 +1,81 @@
+"""A practice department whose two courses are approved and not yet begun, built by the actions."""
+
+from __future__ import annotations
+
+from datetime import datetime
+
+import pytest
+from program import SCENARIO
+
+from featherlog.actions.confirm import ReadBack, confirm
+from featherlog.actions.database import create
+from featherlog.actions.designs import approve, check, prepare
+from featherlog.actions.desk import practice_time
+from featherlog.actions.machines import add_machine
+from featherlog.actions.record import Delivery, Recorded, record
+from featherlog.actions.staff import add_staff
+from featherlog.actions.today import today
+
+ADMINISTRATOR, AUTHOR, CHECKER = "Hazel Heron", "Rowan Finch", "Linden Wren"
+PHYSICIAN, THERAPIST, SECOND = "Aspen Crane", "Ash Plover", "Maple Teal"
+STAFF = {
+    ADMINISTRATOR: "administrator",
+    AUTHOR: "physicist",
+    CHECKER: "physicist",
+    PHYSICIAN: "physician",
+    THERAPIST: "therapist",
+    SECOND: "therapist",
+}
+THIGH, BREAST = "FH-2041", "FH-2042"
+DESIGNS = {THIGH: "thigh.toml", BREAST: "breast.toml"}
+
+
+def moment(text: str) -> datetime:
+    """Return a date, or date and time, of the department's winter."""
+    return datetime.fromisoformat(f"{text if 'T' in text else text + 'T09:00:00'}+01:00")
+
+
+def build(database: str) -> None:
+    create(database, demo=True)
+    with practice_time(moment("2026-02-27")):
+        for name, role in STAFF.items():
+            add_staff(database, name=name, role=role, by=ADMINISTRATOR)
+        add_machine(database, SCENARIO / "alder.toml", by=AUTHOR)
+        for key, file in DESIGNS.items():
+            prepare(database, SCENARIO / file, by=AUTHOR)
+            check(database, key, by=CHECKER)
+            approve(database, key, by=PHYSICIAN)
+
+
+def said(**differs: object) -> Delivery:
+    """Return what was delivered: everything as confirmed except what is named."""
+    plain = {"fraction": None, "position": None, "field_positions": {}, "metersets_mu": {}}
+    return Delivery(**(plain | {"gaps_cm": {}, "reason": ""} | differs))  # type: ignore[arg-type] - a test's shorthand
+
+
+def confirmed(database: str, key: str, day: str) -> None:
+    """Confirm the fraction that is due as it is planned."""
+    with practice_time(moment(day)):
+        label = today(database, key).position
+        read_back = ReadBack(label, None, {})
+        confirm(database, key, by=THERAPIST, verified_by=SECOND, read_back=read_back)
+
+
+def recorded(database: str, key: str, day: str, **differs: object) -> Recorded:
+    with practice_time(moment(day)):
+        delivery = said(**differs)
+        return record(database, key, by=THERAPIST, verified_by=SECOND, delivery=delivery)
+
+
+def treated(database: str, key: str, day: str, **differs: object) -> Recorded:
+    """Confirm and record the fraction that is due."""
+    confirmed(database, key, day)
+    return recorded(database, key, day, **differs)
+
+
+@pytest.fixture(scope="session")
+def department_file(tmp_path_factory: pytest.TempPathFactory) -> str:
+    """Give the SQLite file of a department, from which others are copied."""
+    file = str(tmp_path_factory.mktemp("department") / "featherlog.db")
+    build(file)
+    return file
