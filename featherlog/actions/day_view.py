@@ -8,6 +8,7 @@ from itertools import pairwise
 from typing import TYPE_CHECKING
 
 from featherlog import words
+from featherlog.junction.display import shown_angle, shown_jaw
 from featherlog.junction.points import point_at_depth
 from featherlog.views.day import (
     BeamView,
@@ -25,7 +26,7 @@ if TYPE_CHECKING:
 
     from featherlog.geometry.planes import EdgePlane
     from featherlog.junction.design import Course, Junction
-    from featherlog.junction.machine import Jaw
+    from featherlog.junction.machine import DisplayScale, Jaw
     from featherlog.junction.plan import (
         BeamSetting,
         FieldSetting,
@@ -43,11 +44,16 @@ def page_code(revision_code: str, fraction: int | None, state_hash: str) -> str:
 
 
 def field_views(
-    now: PositionSettings, before: PositionSettings | None, parts: Mapping[str, float]
+    now: PositionSettings,
+    before: PositionSettings | None,
+    delivered: Mapping[str, float],
+    due: Mapping[str, float],
+    display: DisplayScale | None,
 ) -> tuple[FieldView, ...]:
     """Return every field's settings, with what changed since the position before.
 
-    ``parts`` is the part of each beam's meterset already delivered in this fraction.
+    ``delivered`` is the part of each beam's meterset already given in this fraction, ``due`` the
+    part still to be given now. ``display`` is the console's own scale, if it has one.
     """
     views = []
     for index, field in enumerate(now.treated):
@@ -66,7 +72,12 @@ def field_views(
                     )
                 ),
                 beams=tuple(
-                    _beam_view(beam, last.beams[number] if last else None, parts)
+                    _beam_view(
+                        beam,
+                        last.beams[number] if last else None,
+                        (delivered.get(beam.beam, 0.0), due.get(beam.beam, 0.0)),
+                        display,
+                    )
                     for number, beam in enumerate(field.beams)
                 ),
             )
@@ -118,8 +129,13 @@ def _table_move(move_cm: Triple) -> TableMoveView:
     return TableMoveView(*move_cm, words.table_move(move_cm))
 
 
-def _beam_view(beam: BeamSetting, last: BeamSetting | None, parts: Mapping[str, float]) -> BeamView:
-    part = parts.get(beam.beam, 0.0)
+def _beam_view(
+    beam: BeamSetting,
+    last: BeamSetting | None,
+    parts: tuple[float, float],
+    display: DisplayScale | None,
+) -> BeamView:
+    delivered, due = parts
     return BeamView(
         beam=beam.beam,
         energy=beam.energy,
@@ -128,9 +144,24 @@ def _beam_view(beam: BeamSetting, last: BeamSetting | None, parts: Mapping[str, 
         couch_deg=beam.couch_deg,
         ssd_cm=beam.ssd_cm,
         planned_mu=beam.meterset_mu,
-        delivered_mu=part * beam.meterset_mu,
-        to_deliver_mu=max(0.0, (1 - part) * beam.meterset_mu),
+        delivered_mu=delivered * beam.meterset_mu,
+        to_deliver_mu=due * beam.meterset_mu,
         jaws=tuple(_jaw_view(beam, jaw, last) for jaw in beam.jaw_cm),
+        console=_console(beam, display) if display else (),
+    )
+
+
+def _console(beam: BeamSetting, display: DisplayScale) -> tuple[tuple[str, float], ...]:
+    angles = (
+        ("gantry_deg", shown_angle(display.gantry, beam.gantry_deg)),
+        ("collimator_deg", shown_angle(display.collimator, beam.collimator_deg)),
+        ("couch_deg", shown_angle(display.couch, beam.couch_deg)),
+    )
+    if not display.jaws_outward:
+        return angles
+    return (
+        *angles,
+        *((f"{jaw.value}_cm", shown_jaw(jaw, value)) for jaw, value in beam.jaw_cm.items()),
     )
 
 
@@ -139,7 +170,8 @@ def _jaw_view(beam: BeamSetting, jaw: Jaw, last: BeamSetting | None) -> JawView:
     value = beam.jaw_cm[jaw]
     previous = last.jaw_cm[jaw] if last else None
     move = "" if previous is None else words.jaw_move(jaw, value - previous, ends.get(jaw))
-    return JawView(jaw.value, ends.get(jaw, "side"), value, previous, move)
+    by = beam.edges_by if jaw in ends else "jaws"
+    return JawView(jaw.value, ends.get(jaw, "side"), by, value, previous, move)
 
 
 def _side_view(

@@ -25,6 +25,7 @@ from featherlog.sequence.progress import (
     DeliveredBeam,
     FractionState,
     Progress,
+    due_in,
     fraction_states,
     progress,
 )
@@ -90,10 +91,26 @@ def record(
         stored = load(desk, key)
         number = _fraction(stored, delivery.fraction)
         confirmed = _confirmed_position(desk, stored, number)
-        beams = _beams(stored, number, delivery, confirmed)
+        due = due_in(
+            stored.plan,
+            number,
+            stored.states.get(number),
+            stored.machine.tolerances.meterset_percent,
+        )
+        beams = _beams(stored, due, delivery, confirmed)
         states = _states_after(stored, beams)
-        departures = _departures(stored, states[number], beams, delivery, confirmed)
-        after = progress(stored.plan, states)
+        departures = (
+            *order_departures(
+                number,
+                stored.progress.next_fraction,
+                stored.course.fractions,
+                confirmed=confirmed is not None,
+                approved=stored.approved,
+            ),
+            *_departures(stored, due, states[number], beams),
+            *gap_departures(_gaps(stored, beams, delivery)),
+        )
+        after = progress(stored.plan, states, stored.machine.tolerances.meterset_percent)
         following = _next_date(desk, stored, after, number)
         entry = desk.append(
             Kind.FRACTION_RECORDED,
@@ -153,8 +170,9 @@ def _confirmed_position(desk: Desk, stored: Stored, number: int) -> str | None:
 
 
 def _beams(
-    stored: Stored, number: int, delivery: Delivery, confirmed: str | None
+    stored: Stored, due: Progress, delivery: Delivery, confirmed: str | None
 ) -> tuple[DeliveredBeam, ...]:
+    number = due.next_fraction or 0
     everywhere = delivery.position or confirmed
     fields = {field.field for field in stored.plan.positions[0].treated}
     _known("--field-position", delivery.field_positions, fields, "field")
@@ -168,15 +186,13 @@ def _beams(
     for name, mu in delivery.metersets_mu.items():
         if not 0 <= mu < math.inf:
             raise InputError(f"--meterset {name}={mu:g} must be a number of MU, 0 or more")
-    state = stored.states.get(number)
     rows = []
     for field in stored.plan.positions[0].treated:
         label = delivery.field_positions.get(field.field, everywhere or "")
         settings = _settings(stored, label)
         for beam in field.beams:
             planned = settings.meterset(beam.beam)
-            due = _remaining(state, beam.beam) * planned
-            given = delivery.metersets_mu.get(beam.beam, due)
+            given = delivery.metersets_mu.get(beam.beam, due.due[beam.beam] * planned)
             rows.append(DeliveredBeam(number, field.field, beam.beam, label, given, planned))
     return tuple(_with_something(rows))
 
@@ -186,10 +202,6 @@ def _with_something(rows: list[DeliveredBeam]) -> list[DeliveredBeam]:
     if not given:
         raise InputError("no beam has any MU, so there is nothing to record")
     return rows
-
-
-def _remaining(state: FractionState | None, beam: str) -> float:
-    return max(0.0, 1 - state.parts[beam]) if state else 1.0
 
 
 def _settings(stored: Stored, label: str) -> PositionSettings:
@@ -215,34 +227,17 @@ def _states_after(stored: Stored, beams: tuple[DeliveredBeam, ...]) -> dict[int,
 
 
 def _departures(
-    stored: Stored,
-    state: FractionState,
-    beams: tuple[DeliveredBeam, ...],
-    delivery: Delivery,
-    confirmed: str | None,
+    stored: Stored, due: Progress, state: FractionState, beams: tuple[DeliveredBeam, ...]
 ) -> tuple[Departure, ...]:
-    number = state.number
-    planned = _planned_position(stored, number)
-    where = {**state.field_position, **beams_by_field(beams)}
-    mu = {beam.beam: beam.planned_mu for beam in beams}
+    """Return how position and meterset differ, seen over the whole of a step once begun."""
+    begun = stored.states.get(state.number) if due.part_delivered else None
+    where = {**(begun.last_position if begun else {}), **beams_by_field(beams)}
+    parts = {beam: part / due.expected for beam, part in state.parts.items()}
+    mu = {beam.beam: beam.planned_mu * due.expected for beam in beams}
     return (
-        *order_departures(
-            number,
-            stored.progress.next_fraction,
-            stored.course.fractions,
-            confirmed=confirmed is not None,
-            approved=stored.approved,
-        ),
-        *position_departures(stored.plan, planned, where),
-        *meterset_departures(state.parts, mu, stored.machine.tolerances.meterset_percent),
-        *gap_departures(_gaps(stored, beams, delivery)),
+        *position_departures(stored.plan, due.position or "", where),
+        *meterset_departures(parts, mu, stored.machine.tolerances.meterset_percent),
     )
-
-
-def _planned_position(stored: Stored, number: int) -> str:
-    if number in stored.states:
-        return stored.states[number].began_at
-    return stored.plan.fraction(min(number, stored.course.fractions)).position
 
 
 def _gaps(
@@ -264,8 +259,8 @@ def _next_date(desk: Desk, stored: Stored, after: Progress, number: int) -> str 
         return None
     today = desk.now.date()
     given = {row.fraction for row in stored.deliveries if row.at[:10] == today.isoformat()}
-    # The remainder of a broken fraction is due the same day: it takes no place of its own.
-    count = len({*given, number} - ({after.next_fraction} if after.part_delivered else set()))
+    # What remains of a fraction is due the same day: it takes no place of its own.
+    count = len({*given, number} - ({number} if after.next_fraction == number else set()))
     return next_date(
         stored.course.sequence, stored.course.fractions_a_day, today, count
     ).isoformat()

@@ -8,16 +8,18 @@ from typing import TYPE_CHECKING
 from featherlog import words
 from featherlog.actions.desk import at_desk
 from featherlog.actions.dose import stored_dose
-from featherlog.actions.stored import departure_lines, load
+from featherlog.actions.stored import delivered_beams, departure_lines, load
 from featherlog.actions.today import next_shift
-from featherlog.dose.amounts import prescribed_dose_gy
+from featherlog.dose.amounts import delivered_amounts, earlier_amounts
 from featherlog.sequence.departures import INCOHERENT
-from featherlog.sequence.pattern import shares
+from featherlog.sequence.pattern import weighted_shares
 from featherlog.store import ledger, queries
 from featherlog.views.review import GridCell, GridRow, ReviewView, ShareLine, SidesLine
 
 if TYPE_CHECKING:
     from featherlog.actions.stored import Stored
+    from featherlog.dose.amounts import Amounts
+    from featherlog.junction.plan import FieldSetting
     from featherlog.sequence.progress import FractionState
     from featherlog.views.common import DepartureLine
 
@@ -55,40 +57,73 @@ def _most_serious_first(line: DepartureLine) -> tuple[bool, bool, int]:
 
 
 def _shares(stored: Stored) -> tuple[ShareLine, ...]:
-    """Fractions by position; a fraction whose fields were apart counts by its first field."""
-    planned = [fraction.position for fraction in stored.plan.fractions]
-    so_far = shares([planned[n - 1] for n in stored.states if n <= len(planned)])
-    given = shares([state.began_at for state in stored.states.values()])
+    """Fractions by position; fields that were apart count by the part of the fields there."""
+    planned = weighted_shares(stored.plan.fractions)
+    so_far = weighted_shares([f for f in stored.plan.fractions if f.number in stored.states])
+    given = _given(stored)
     return tuple(
         ShareLine(
             position.label,
-            planned.count(position.label),
-            so_far.get(position.label, 0),
-            given.get(position.label, 0),
+            planned.get(position.label, 0.0),
+            so_far.get(position.label, 0.0),
+            given.get(position.label, 0.0),
         )
         for position in stored.plan.positions
     )
 
 
+def _given(stored: Stored) -> dict[str, float]:
+    """Return the fractions delivered at each position, each field counting for its part."""
+    treated = stored.plan.positions[0].treated
+    weight = {beam.beam: beam.weight / len(treated) for field in treated for beam in field.beams}
+    found: dict[str, float] = {}
+    for row in stored.deliveries:
+        part = row.meterset_mu / row.planned_mu * weight[row.beam]
+        found[row.position] = found.get(row.position, 0.0) + part
+    return {label: round(count, 3) for label, count in found.items()}
+
+
 def _sides(stored: Stored) -> tuple[SidesLine, ...]:
-    given = {
-        field.field: sum(
-            prescribed_dose_gy(stored.plan, state.number) * state.parts[beam.beam] * beam.weight
-            for state in stored.states.values()
-            for beam in field.beams
-        )
-        for field in stored.plan.positions[0].fields
-    }
     return tuple(
-        SidesLine(
-            junction.name,
-            upper,
-            given[upper],
-            lower,
-            given[lower],
-            abs(given[upper] - given[lower]) <= _EQUAL_GY,
+        _side(stored, junction.name, upper, lower)
+        for junction, (upper, lower) in zip(
+            stored.course.junctions, pairwise(stored.plan.positions[0].fields), strict=True
         )
-        for junction, (upper, lower) in zip(stored.course.junctions, pairwise(given), strict=True)
+    )
+
+
+def _side(stored: Stored, junction: str, upper: FieldSetting, lower: FieldSetting) -> SidesLine:
+    above, below = (
+        sum(
+            dose_gy
+            for (_, beam), dose_gy in _amounts(stored).items()
+            if beam in [setting.beam for setting in field.beams]
+        )
+        for field in (upper, lower)
+    )
+    together = _in_step(stored, upper.field, lower.field)
+    return SidesLine(
+        junction,
+        upper.field,
+        above,
+        lower.field,
+        below,
+        together and abs(above - below) <= _EQUAL_GY,
+    )
+
+
+def _amounts(stored: Stored) -> Amounts:
+    return earlier_amounts(stored.plan) | delivered_amounts(
+        stored.plan, delivered_beams(stored.deliveries)
+    )
+
+
+def _in_step(stored: Stored, upper: str, lower: str) -> bool:
+    """Tell whether both fields of a junction were at the same positions in every fraction."""
+    return all(
+        state.field_positions.get(upper) == state.field_positions.get(lower)
+        for state in stored.states.values()
+        if upper in state.field_positions and lower in state.field_positions
     )
 
 
@@ -109,7 +144,7 @@ def _grid_row(stored: Stored, number: int, state: FractionState | None) -> GridR
         cells=tuple(
             GridCell(
                 field.field,
-                state.field_position.get(field.field, "") if state else "",
+                "+".join(state.field_positions.get(field.field, ())) if state else "",
                 100 * sum(state.parts[b.beam] * b.weight for b in field.beams) if state else 0.0,
             )
             for field in stored.plan.positions[0].treated

@@ -95,7 +95,7 @@ def _stored(desk: Desk, row: CourseRow, revision: RevisionRow) -> Stored:
         machine=machine,
         deliveries=deliveries,
         states=states,
-        progress=progress(plan, states),
+        progress=progress(plan, states, machine.tolerances.meterset_percent),
     )
 
 

@@ -52,7 +52,7 @@ def day_view(desk: Desk, stored: Stored) -> DayView:
     head = ledger.head(desk.connection)
     number = stored.progress.next_fraction or stored.plan.fractions[-1].number
     position = stored.progress.position or ""
-    before = previous_position(stored.plan, stored.states, number)
+    before = previous_position(stored.plan, stored.states, number, stored.progress.step)
     planned = stored.plan.fraction(number)
     reasons = stop_reasons(stored)
     now = stored.plan.position(position) if position else None
@@ -64,16 +64,26 @@ def day_view(desk: Desk, stored: Stored) -> DayView:
         stop_reasons=reasons,
         fraction=number,
         fractions=stored.course.fractions,
+        step=stored.progress.step,
+        steps=stored.progress.steps,
         phase=planned.phase,
         dose_gy=planned.dose_gy,
         projected_date=stored.row.next_date or "",
         position=position,
         previous_position=before,
         shift=shift_of(before, position),
-        shift_words=_shift_words(before, position, number),
+        shift_words=_shift_words(before, position, number, stored.progress.step),
         part_delivered=stored.progress.part_delivered,
         junctions=junction_views(stored.course, now, last) if now else (),
-        fields=field_views(now, last, state.parts if state else {}) if now else (),
+        fields=field_views(
+            now,
+            last,
+            state.parts if state else {},
+            stored.progress.due,
+            stored.machine.display,
+        )
+        if now
+        else (),
         table_reference=words.RELATIVE_ONLY,
         open_departures=departure_lines(departures),
         next_shift=next_shift(stored),
@@ -100,7 +110,7 @@ def stop_reasons(stored: Stored) -> tuple[str, ...]:
     fraction, position = stored.progress.next_fraction, stored.progress.position
     if fraction is None or stored.progress.part_delivered:
         return ()
-    before = previous_position(stored.plan, stored.states, fraction)
+    before = previous_position(stored.plan, stored.states, fraction, stored.progress.step)
     if before in (None, position):
         return ()
     return unequal_sides(stored.plan, stored.states, fraction)
@@ -113,14 +123,15 @@ def shift_of(before: str | None, position: str) -> str:
     return "no" if before == position else "yes"
 
 
-def _shift_words(before: str | None, position: str, fraction: int) -> str:
+def _shift_words(before: str | None, position: str, fraction: int, step: int) -> str:
     if not position:
         return "No fraction is left to treat."
     if before is None:
         return f"First fraction: set position {position}."
+    earlier = f"fraction {fraction - 1}" if step == 1 else f"step {step - 1} of this fraction"
     if before == position:
-        return f"No shift: position {position}, as in fraction {fraction - 1}."
-    return f"Shift: from position {before} to position {position}, after fraction {fraction - 1}."
+        return f"No shift: position {position}, as in {earlier}."
+    return f"Shift: from position {before} to position {position}, after {earlier}."
 
 
 def next_shift(stored: Stored) -> NextShift | None:
@@ -150,7 +161,7 @@ def _is_due(row: CourseRow, on: date) -> bool:
 def _due_line(stored: Stored, on: date) -> DueLine:
     row, progress = stored.row, stored.progress
     position, number = progress.position or "", progress.next_fraction or 0
-    before = previous_position(stored.plan, stored.states, number)
+    before = previous_position(stored.plan, stored.states, number, progress.step)
     due = row.next_date or ""
     attention = [f"{row.open_departures} open departure(s)"] if row.open_departures else []
     if progress.part_delivered:

@@ -60,6 +60,8 @@ def _settings(view: DayView) -> Iterator[str]:
         f"FRACTION {view.fraction} of {view.fractions}     POSITION {view.position}     "
         f"SHIFT TODAY: {shift}"
     )
+    if view.steps > 1:
+        yield f"STEP {view.step} of {view.steps} of this fraction: each at its own position"
     yield view.shift_words
     if view.part_delivered:
         yield wrapped(
@@ -118,11 +120,16 @@ def _beam(beam: BeamView) -> Iterator[str]:
             f"{words.meterset(beam.delivered_mu)} delivered)"
         )
     yield due
+    if beam.console:
+        shown = "  ".join(f"{name} {words.figure(value)}" for name, value in beam.console)
+        yield wrapped(f"on the console: {shown}", "    ")
     yield from (f"    {_jaw(jaw)}" for jaw in beam.jaws)
 
 
 def _jaw(jaw: JawView) -> str:
     where = f"{jaw.jaw} {jaw.edge:<8}"
+    if jaw.edges_by == "leaves":
+        return f"{where} {words.signed(jaw.cm)} cm   leaf edge: from the plan, not set by hand"
     if not jaw.words or jaw.previous_cm is None:
         return f"{where} {words.signed(jaw.cm)} cm"
     change = f"{words.signed(jaw.previous_cm)} → {words.signed(jaw.cm)} cm"

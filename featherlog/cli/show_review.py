@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
+from featherlog import words
 from featherlog.cli.output import rule, table, wrapped
 from featherlog.cli.show_day import heading_lines
 from featherlog.cli.show_dose import dose_lines
@@ -12,7 +13,7 @@ if TYPE_CHECKING:
     from collections.abc import Iterable, Iterator
 
     from featherlog.views.common import DepartureLine
-    from featherlog.views.review import GridRow, ReviewView
+    from featherlog.views.review import GridRow, ReviewView, ShareLine
 
 
 def review_text(view: ReviewView) -> str:
@@ -42,10 +43,7 @@ def _review(view: ReviewView) -> Iterator[str]:
     yield rule()
     yield table(
         ("position", "planned", "planned so far", "delivered"),
-        [
-            (line.position, str(line.planned), str(line.planned_so_far), str(line.delivered))
-            for line in view.shares
-        ],
+        [(line.position, *_counts(line)) for line in view.shares],
         numeric="planned|planned so far|delivered",
     )
     for side in view.sides:
@@ -90,3 +88,11 @@ def _cell(position: str, percent: float) -> str:
     if not position:
         return "-"
     return position if round(percent) == 100 else f"{position} {percent:.0f} %"  # noqa: PLR2004 - whole
+
+
+def _counts(line: ShareLine) -> tuple[str, str, str]:
+    return (
+        words.figure(line.planned, 0),
+        words.figure(line.planned_so_far, 0),
+        words.figure(line.delivered, 0),
+    )

@@ -8,14 +8,14 @@ remainder of a broken one keeps its fraction number and the position where it be
 from __future__ import annotations
 
 from collections import defaultdict
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from itertools import accumulate
 from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Mapping
 
-    from featherlog.junction.plan import Plan, PlannedFraction
+    from featherlog.junction.plan import Plan
 
 
 @dataclass(frozen=True, slots=True)
@@ -123,17 +123,17 @@ def progress(plan: Plan, states: Mapping[int, FractionState], meterset_percent: 
     for fraction in plan.fractions:
         state = states.get(fraction.number)
         if state is None or not state.complete:
-            return _due(plan, complete, fraction, state, slack(meterset_percent))
+            due = due_in(plan, fraction.number, state, meterset_percent)
+            return replace(due, complete=complete)
     return Progress(complete)
 
 
-def _due(
-    plan: Plan,
-    complete: int,
-    fraction: PlannedFraction,
-    state: FractionState | None,
-    allowed: float,
+def due_in(
+    plan: Plan, number: int, state: FractionState | None, meterset_percent: float
 ) -> Progress:
+    """Return what is due in one fraction; one beyond the prescribed count is like the last."""
+    fraction = plan.fraction(min(number, len(plan.fractions)))
+    allowed = slack(meterset_percent)
     names = [beam.beam for field in plan.positions[0].treated for beam in field.beams]
     parts = state.parts if state else dict.fromkeys(names, 0.0)
     ends = list(accumulate(step.weight for step in fraction.steps))
@@ -145,8 +145,8 @@ def _due(
     begun = state is not None and any(part > before + allowed for part in parts.values())
     place = state.stood_at(len(ends)) if state and begun else fraction.steps[step].position
     return Progress(
-        complete=complete,
-        next_fraction=fraction.number,
+        complete=0,
+        next_fraction=number,
         step=step + 1,
         steps=len(ends),
         position=place,

@@ -15,10 +15,13 @@ class JawView:
     """One jaw. ``edge`` is superior, inferior or side; ``previous_cm`` None at the first fraction.
 
     ``words`` says which way the edge it forms moves in the patient, empty when it stays.
+    ``edges_by`` is ``leaves`` where leaves form this edge: they belong to the plan and are not set
+    by hand.
     """
 
     jaw: str
     edge: str
+    edges_by: str
     cm: float
     previous_cm: float | None
     words: str
@@ -26,7 +29,12 @@ class JawView:
 
 @dataclass(frozen=True, slots=True)
 class BeamView:
-    """One beam to set. ``to_deliver_mu`` is what remains of ``planned_mu`` in this fraction."""
+    """One beam to set.
+
+    ``to_deliver_mu`` is what remains of this step of the fraction, ``delivered_mu`` what the
+    fraction has had and ``planned_mu`` its whole meterset. ``console`` holds (name, value) pairs as
+    the machine's own console shows them, empty where that shows IEC 61217.
+    """
 
     beam: str
     energy: str
@@ -38,6 +46,7 @@ class BeamView:
     delivered_mu: float
     to_deliver_mu: float
     jaws: tuple[JawView, ...]
+    console: tuple[tuple[str, float], ...]
 
 
 @dataclass(frozen=True, slots=True)
@@ -133,6 +142,7 @@ class DayView:
 
     ``status`` is ``ready``, ``complete`` (nothing left to treat) or ``stop``; ``stop_reasons`` say
     why and whom to call. ``shift`` is ``yes``, ``no`` or ``first`` (there is no earlier fraction).
+    ``step`` of ``steps`` counts the positions of a fraction that is split over several.
     ``part_delivered`` is true when this fraction was begun and its remainder is locked to
     ``position``. ``page_code`` names this page's state of the course.
     """
@@ -142,6 +152,8 @@ class DayView:
     stop_reasons: tuple[str, ...]
     fraction: int
     fractions: int
+    step: int
+    steps: int
     phase: str
     dose_gy: float
     projected_date: str

@@ -17,9 +17,9 @@ class ShareLine:
     """Fractions at one position: planned for the course, planned so far, and delivered."""
 
     position: str
-    planned: int
-    planned_so_far: int
-    delivered: int
+    planned: float
+    planned_so_far: float
+    delivered: float
 
 
 @dataclass(frozen=True, slots=True)
@@ -45,7 +45,10 @@ class GridRow:
 
 @dataclass(frozen=True, slots=True)
 class SidesLine:
-    """Dose given by the field on each side of a junction so far, Gy at its own reference."""
+    """Dose given by the field on each side of a junction so far, Gy at its own reference.
+
+    ``equal`` is true only when both sides also stood at the same positions in every fraction.
+    """
 
     junction: str
     superior_field: str
