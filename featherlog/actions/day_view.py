@@ -142,6 +142,8 @@ def _beam_view(
         gantry_deg=beam.gantry_deg,
         collimator_deg=beam.collimator_deg,
         couch_deg=beam.couch_deg,
+        previous_collimator_deg=last.collimator_deg if last else None,
+        previous_couch_deg=last.couch_deg if last else None,
         ssd_cm=beam.ssd_cm,
         planned_mu=beam.meterset_mu,
         delivered_mu=delivered * beam.meterset_mu,

@@ -108,10 +108,12 @@ def _field(field: FieldView) -> Iterator[str]:
 
 
 def _beam(beam: BeamView) -> Iterator[str]:
-    yield (
-        f"  {beam.beam}: {beam.energy}  gantry {words.figure(beam.gantry_deg)}  collimator "
-        f"{words.figure(beam.collimator_deg)}  couch {words.figure(beam.couch_deg)}  SSD "
-        f"{words.figure(beam.ssd_cm)}"
+    collimator = _angle("collimator", beam.collimator_deg, beam.previous_collimator_deg)
+    couch = _angle("couch", beam.couch_deg, beam.previous_couch_deg)
+    yield wrapped(
+        f"{beam.beam}: {beam.energy}  gantry {words.figure(beam.gantry_deg)}  {collimator}  "
+        f"{couch}  SSD {words.figure(beam.ssd_cm)}",
+        "  ",
     )
     due = f"    deliver {words.meterset(beam.to_deliver_mu)} MU"
     if beam.delivered_mu:
@@ -124,6 +126,12 @@ def _beam(beam: BeamView) -> Iterator[str]:
         shown = "  ".join(f"{name} {words.figure(value)}" for name, value in beam.console)
         yield wrapped(f"on the console: {shown}", "    ")
     yield from (f"    {_jaw(jaw)}" for jaw in beam.jaws)
+
+
+def _angle(name: str, degrees: float, previous: float | None) -> str:
+    if previous is None or previous == degrees:
+        return f"{name} {words.signed(degrees)}"
+    return f"{name} {words.signed(previous)} → {words.signed(degrees)} CHANGED"
 
 
 def _jaw(jaw: JawView) -> str:

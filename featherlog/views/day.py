@@ -31,7 +31,8 @@ class JawView:
 class BeamView:
     """One beam to set.
 
-    ``to_deliver_mu`` is what remains of this step of the fraction, ``delivered_mu`` what the
+    The previous angles are those of the fraction before, None at the first. ``to_deliver_mu`` is
+    what remains of this step of the fraction, ``delivered_mu`` what the
     fraction has had and ``planned_mu`` its whole meterset. ``console`` holds (name, value) pairs as
     the machine's own console shows them, empty where that shows IEC 61217.
     """
@@ -41,6 +42,8 @@ class BeamView:
     gantry_deg: float
     collimator_deg: float
     couch_deg: float
+    previous_collimator_deg: float | None
+    previous_couch_deg: float | None
     ssd_cm: float
     planned_mu: float
     delivered_mu: float
