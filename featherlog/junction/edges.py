@@ -270,7 +270,6 @@ def _set_superior(field: PlacedField, jaws_cm: tuple[float, ...]) -> PlacedField
 
 
 def _neighbours(value: float, step: float) -> tuple[float, ...]:
-    low = math.floor(value / step + 1e-9) * step
-    if abs(value - low) <= step * 1e-6:
-        return (round(low, 9) + 0.0,)
-    return (round(low, 9) + 0.0, round(low + step, 9) + 0.0)
+    # One step either way even from a value that can be set: the other side may have been rounded.
+    nearest = to_step(value, step)
+    return tuple(round(nearest + steps * step, 9) + 0.0 for steps in (-1, 0, 1))
