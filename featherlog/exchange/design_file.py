@@ -9,13 +9,15 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from featherlog.exchange.design_fields import read_borders, read_fields
-from featherlog.exchange.design_junctions import read_junction, read_position
+from featherlog.exchange.design_junctions import bear_separations, read_junction, read_position
 from featherlog.exchange.design_rules import broken_rules
-from featherlog.exchange.kinds import choice, day, letters, number, several, text, whole
+from featherlog.exchange.design_sequence import read_sequence
+from featherlog.exchange.kinds import choice, letters, text, whole
+from featherlog.exchange.quantities import FRACTION_DOSE_GY
 from featherlog.exchange.toml_fields import Reading, Table
 from featherlog.exchange.toml_text import read_text
-from featherlog.geometry.frames import PatientPosition
-from featherlog.junction.design import Course, Pattern, Phase, SequencePattern, Weekday
+from featherlog.geometry.patient import PatientPosition
+from featherlog.junction.design import Course, Phase
 
 if TYPE_CHECKING:
     from pathlib import Path
@@ -23,14 +25,6 @@ if TYPE_CHECKING:
     from featherlog.junction.machine import Machine
 
 FORMAT = "featherlog design 1"
-
-_WORKING_WEEK = (
-    Weekday.MONDAY,
-    Weekday.TUESDAY,
-    Weekday.WEDNESDAY,
-    Weekday.THURSDAY,
-    Weekday.FRIDAY,
-)
 
 
 def read_design(path: Path, machine: Machine) -> Course:
@@ -47,7 +41,7 @@ def parse_design(text: str, name: str, machine: Machine) -> Course:
     """Read a design from the text of a file called ``name``; errors as ``read_design``."""
     reading = Reading(text, name)
     reading.require_format(FORMAT)
-    course = _course(reading.root, machine.sad_cm)
+    course = _course(reading.root, machine)
     reading.finish()
     reading.check(broken_rules(course, machine))
     return course
@@ -62,7 +56,7 @@ def named_machine(path: Path) -> str:
     return name
 
 
-def _course(root: Table, sad_cm: float) -> Course:
+def _course(root: Table, machine: Machine) -> Course:
     about = root.table("course")
     phases = tuple(_phase(table) for table in root.tables("phase"))
     dose_gy = sum(phase.fractions * phase.dose_per_fraction_gy for phase in phases)
@@ -71,6 +65,7 @@ def _course(root: Table, sad_cm: float) -> Course:
     position = about.take("patient_position", choice(PatientPosition))
     field_tables = root.tables("field", at_least=2)
     superior_border, inferior_border = read_borders(field_tables)
+    fields = read_fields(field_tables, names, position, machine.sad_cm)
     return Course(
         key=about.take("key", letters(20, dashes=True)),
         patient_name=about.take("patient_name", text(private=True)),
@@ -82,12 +77,12 @@ def _course(root: Table, sad_cm: float) -> Course:
         machine=about.take("machine", text()),
         fractions_a_day=about.take("fractions_a_day", whole(1, 2)),
         phases=phases,
-        fields=read_fields(field_tables, names, position, sad_cm),
+        fields=fields,
         superior_border=superior_border,
         inferior_border=inferior_border,
-        junctions=junctions,
+        junctions=bear_separations(junctions, fields),
         positions=tuple(read_position(table, names) for table in root.tables("position")),
-        sequence=_sequence(root.table("sequence")),
+        sequence=read_sequence(root.table("sequence"), machine.closed_dates),
     )
 
 
@@ -95,25 +90,5 @@ def _phase(table: Table) -> Phase:
     return Phase(
         name=table.take("name", text()),
         fractions=table.take("fractions", whole(1, 100)),
-        dose_per_fraction_gy=table.take("dose_per_fraction_gy", number("Gy", 0, 30, low_open=True)),
+        dose_per_fraction_gy=table.take("dose_per_fraction_gy", FRACTION_DOSE_GY),
     )
-
-
-def _sequence(table: Table) -> SequencePattern:
-    pattern = table.take("pattern", choice(Pattern))
-    return SequencePattern(
-        pattern=pattern,
-        positions=table.take("positions", several(letters(8), at_least=1)),
-        block_fractions=_block_fractions(table, pattern),
-        start_date=table.take("start_date", day()),
-        weekdays=table.take_or("weekdays", several(choice(Weekday), at_least=1), _WORKING_WEEK),
-        closed_dates=table.take_or("closed_dates", several(day()), ()),
-    )
-
-
-def _block_fractions(table: Table, pattern: Pattern) -> int | None:
-    if pattern is Pattern.BLOCKS:
-        return table.take("block_fractions", whole(1, 100))
-    if table.has("block_fractions"):
-        table.fault("block_fractions", 'is given, but is allowed only with the pattern "blocks"')
-    return None

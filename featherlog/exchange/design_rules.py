@@ -1,4 +1,4 @@
-"""The rules of a design that no single key shows: names, fields and junctions.
+"""The rules of a design that no single key shows: the machine, names, fields and depths.
 
 Each rule yields its own faults as a path and the sentence that goes on from it, and assumes nothing
 about the others.
@@ -10,6 +10,8 @@ from itertools import pairwise
 from typing import TYPE_CHECKING
 
 from featherlog.exchange.kinds import either, quoted, text
+from featherlog.exchange.earlier_rules import EARLIER_RULES
+from featherlog.exchange.match_rules import MATCH_RULES
 from featherlog.exchange.sequence_rules import SEQUENCE_RULES
 from featherlog.exchange.toml_fields import Fault, repeated
 from featherlog.junction.design import MovedBy, Side, Technique
@@ -21,7 +23,7 @@ if TYPE_CHECKING:
     from featherlog.junction.design import Beam, Course, Field, Junction
     from featherlog.junction.machine import Machine
 
-_SAME_CM = 1e-3
+_SAD_SLACK_CM = 10.0  # a beam's own source may lie so far from the machine's
 _SUM_SLACK = 1e-6
 _IDENTIFIERS = 2
 _IDENTIFIER_NAME = text(30)
@@ -30,7 +32,8 @@ _IDENTIFIER_NAME = text(30)
 def broken_rules(course: Course, machine: Machine) -> Iterator[Fault]:
     """Yield every fault of a course whose keys are each allowed by themselves."""
     yield from _machine(course, machine)
-    for rule in (*_RULES, *SEQUENCE_RULES):
+    yield from _source_distances(course, machine)
+    for rule in (*_RULES, *MATCH_RULES, *EARLIER_RULES, *SEQUENCE_RULES):
         yield from rule(course)
 
 
@@ -43,6 +46,15 @@ def _machine(course: Course, machine: Machine) -> Iterator[Fault]:
         if beam.energy not in energies:
             sentence = f"is {quoted(beam.energy)}, but must be one of {machine.name}'s"
             yield (*path, "energy"), f"{sentence}: {either(energies)}"
+
+
+def _source_distances(course: Course, machine: Machine) -> Iterator[Fault]:
+    for path, beam in _placed_beams(course):
+        # An earlier course may have been given on another machine.
+        treated = course.fields[int(path[1])].earlier is None
+        if treated and abs(beam.sad_cm - machine.sad_cm) > _SAD_SLACK_CM:
+            sentence = f"is {beam.sad_cm:g}, but must be within {_SAD_SLACK_CM:g} cm of"
+            yield (*path, "sad_cm"), f"{sentence} {machine.name}'s {machine.sad_cm:g}"
 
 
 def _identifiers(course: Course) -> Iterator[Fault]:
@@ -100,21 +112,6 @@ def _field_order(course: Course) -> Iterator[Fault]:
             yield ("field", place + 1), f"{sentence} before it at z {above:g}"
 
 
-def _half_beams(course: Course) -> Iterator[Fault]:
-    for place, junction in enumerate(course.junctions):
-        if junction.technique is Technique.HALF_BEAM:
-            z_cm = junction.skin_point_cm[2]
-            for field in course.fields[place : place + 2]:
-                for beam in field.beams:
-                    if abs(beam.isocentre_cm[2] - z_cm) > _SAME_CM:
-                        yield ("junction", place, "skin_point_cm"), _off_axis(z_cm, beam)
-
-
-def _off_axis(z_cm: float, beam: Beam) -> str:
-    isocentre = f"the isocentre of {quoted(beam.name)} at z {beam.isocentre_cm[2]:g}"
-    return f"has z {z_cm:g}, but a half-beam junction must lie in the plane of {isocentre}"
-
-
 def _depths(course: Course) -> Iterator[Fault]:
     for place, junction in enumerate(course.junctions):
         thickness_cm = junction.thickness_cm
@@ -163,7 +160,6 @@ _RULES = (
     _follows,
     _weights,
     _field_order,
-    _half_beams,
     _depths,
     _lateral_limits,
 )

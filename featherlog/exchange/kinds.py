@@ -12,7 +12,7 @@ if TYPE_CHECKING:
     from collections.abc import Callable, Iterable
     from enum import StrEnum
 
-    from featherlog.geometry.frames import Point
+    from featherlog.geometry.patient import Point
 
 T = TypeVar("T")
 Choice = TypeVar("Choice", bound="StrEnum")

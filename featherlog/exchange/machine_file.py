@@ -4,7 +4,9 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from featherlog.exchange.kinds import interval, number, rising, several, text
+from featherlog.exchange.console_scale import read_display
+from featherlog.exchange.kinds import day, interval, number, rising, several, text
+from featherlog.exchange.quantities import DEPTH_CM, JAW_CM, SAD_CM
 from featherlog.exchange.toml_fields import Fault, Reading, Table, repeated
 from featherlog.exchange.toml_text import read_text
 from featherlog.junction.machine import (
@@ -25,10 +27,10 @@ FORMAT = "featherlog machine 1"
 
 _STEP_CM = number("cm", 0, 2, low_open=True)
 _STEP_DEG = number("degrees", 0, 5, low_open=True)
-_TRAVEL_CM = interval(number("cm", -30, 30))
+_TRAVEL_CM = interval(JAW_CM)
 _SIGNED_DEG = interval(number("degrees", -185, 185))
 _GANTRY_DEG = interval(number("degrees", -185, 365))
-_DEPTHS_CM = rising(number("cm", 0, 60))
+_DEPTHS_CM = rising(DEPTH_CM)
 _WIDTHS_CM = several(number("cm", 0, 10, low_open=True), at_least=1)
 
 
@@ -57,7 +59,7 @@ def _machine(root: Table) -> Machine:
     angles = root.table("angle_ranges_deg")
     return Machine(
         name=root.take("name", text()),
-        sad_cm=root.take("sad_cm", number("cm", 50, 200)),
+        sad_cm=root.take("sad_cm", SAD_CM),
         jaw_travel_cm={jaw: Range(*travel.take(jaw.value, _TRAVEL_CM)) for jaw in Jaw},
         largest_opening_cm=root.take("largest_opening_cm", number("cm", 0, 60, low_open=True)),
         gantry_deg=Range(*angles.take("gantry", _GANTRY_DEG)),
@@ -66,6 +68,8 @@ def _machine(root: Table) -> Machine:
         steps=_steps(root.table("settable_steps")),
         tolerances=_tolerances(root.table("tolerances")),
         qualities=tuple(_quality(table) for table in root.tables("energy")),
+        closed_dates=tuple(sorted(set(root.take_or("closed_dates", several(day()), ())))),
+        display=read_display(root.table_or_none("display")),
     )
 
 

@@ -3,11 +3,11 @@
 from __future__ import annotations
 
 from itertools import pairwise
-from math import ceil
 from typing import TYPE_CHECKING
 
 from featherlog.exchange.kinds import either, quoted
 from featherlog.junction.design import Pattern, Weekday
+from featherlog.sequence.planning import plan_fractions
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Iterator
@@ -26,11 +26,18 @@ def _offset_names(course: Course) -> Iterator[Fault]:
 
 
 def _metersets(course: Course) -> Iterator[Fault]:
-    names = [beam.name for beam in course.beams]
+    names = [beam.name for field in course.fields if not field.earlier for beam in field.beams]
+    earlier = {beam.name for field in course.fields if field.earlier for beam in field.beams}
     for place, position in enumerate(course.positions):
-        yield from _same_names(
-            ("position", place, "meterset_mu"), position.meterset_mu, names, "beam"
-        )
+        path = ("position", place, "meterset_mu")
+        given = [name for name in position.meterset_mu if name not in earlier - set(names)]
+        yield from _same_names(path, given, names, "beam")
+        for name in position.meterset_mu:
+            if name not in given:
+                yield (
+                    (*path, name),
+                    "is given, but a beam of an earlier course is not treated again",
+                )
 
 
 def _same_names(path: Path, given: Iterable[str], names: list[str], what: str) -> Iterator[Fault]:
@@ -65,32 +72,52 @@ def _known_positions(course: Course) -> Iterator[Fault]:
 
 
 def _used_positions(course: Course) -> Iterator[Fault]:
-    block = course.sequence.block_fractions or 1
-    used = course.sequence.positions[: ceil(course.fractions / block)]
+    used = _used(course)
     for place, position in enumerate(course.positions):
         if position.label not in used:
             path = ("position", place, "label")
             yield path, f"is {quoted(position.label)}, but the sequence never comes to it"
 
 
+def _used(course: Course) -> set[str]:
+    if any(True for _ in _length(course)):
+        return set(course.sequence.positions)  # what it would come to cannot be told yet
+    return {step.position for fraction in plan_fractions(course) for step in fraction.steps}
+
+
 def _length(course: Course) -> Iterator[Fault]:
-    path, count = ("sequence", "positions"), len(course.sequence.positions)
-    if course.sequence.pattern is Pattern.LIST and count != course.fractions:
+    sequence = course.sequence
+    path, count = ("sequence", "positions"), len(sequence.positions)
+    if sequence.pattern is Pattern.LIST and count != course.fractions:
         yield (
             path,
             f"has {count}, but a list must have one for each of {course.fractions} fractions",
         )
-    if course.sequence.pattern is Pattern.NO_SHIFT and count != 1:
+    if sequence.pattern is Pattern.NO_SHIFT and count != 1:
         yield path, f'has {count}, but with "no shift" it must have exactly 1'
+    if sequence.pattern is Pattern.SPLIT and len(sequence.weights) != count:
+        sentence = f"has {len(sequence.weights)}, but must have one for each of {count} positions"
+        yield ("sequence", "weights"), sentence
+
+
+def _split_once(course: Course) -> Iterator[Fault]:
+    labels = course.sequence.positions
+    for place, label in enumerate(labels):
+        if course.sequence.pattern is Pattern.SPLIT and label in labels[:place]:
+            path = ("sequence", "positions", place)
+            yield path, f"is {quoted(label)} again, but a fraction is split over it only once"
 
 
 def _start_date(course: Course) -> Iterator[Fault]:
-    path, start = ("sequence", "start_date"), course.sequence.start_date
+    sequence = course.sequence
+    path, start = ("sequence", "start_date"), sequence.start_date
     weekday = list(Weekday)[start.weekday()]
-    if weekday not in course.sequence.weekdays:
+    if weekday not in sequence.weekdays:
         yield path, f"is {start}, a {weekday}, but must be one of the weekdays of treatment"
-    if start in course.sequence.closed_dates:
-        yield path, f"is {start}, but must not be one of the closed_dates"
+    if start in sequence.closed_dates:
+        yield path, f"is {start}, but must not be one of the course's or machine's closed_dates"
+    if start in sequence.holidays:
+        yield path, f"is {start}, but must not be a public holiday of {sequence.holiday_calendar}"
 
 
 SEQUENCE_RULES = (
@@ -101,6 +128,7 @@ SEQUENCE_RULES = (
     _known_positions,
     _used_positions,
     _length,
+    _split_once,
     _start_date,
 )
 """Every rule about positions and their sequence."""

@@ -122,6 +122,12 @@ class Table:
         self._asked[key] = None
         return self._read(key, kind) if self.has(key) else default
 
+    def allows(self, key: str, *, when: bool, only_with: str) -> bool:
+        """Tell whether a key may be read; a fault where it is given but does not belong."""
+        if not when and self.has(key):
+            self.fault(key, f"is given, but is allowed only with {only_with}")
+        return when
+
     def table(self, key: str, allowed: str = "a table") -> Table:
         """Return a required table; ``allowed`` says more of it where that helps."""
         return Table(self._reading, (*self.path, key), self._table_values(key, allowed))

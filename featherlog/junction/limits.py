@@ -9,6 +9,7 @@ from featherlog.junction.borders import border_settings
 from featherlog.junction.design import EdgesBy
 from featherlog.junction.machine import Jaw
 from featherlog.junction.rounding import place_rounded
+from featherlog.words import signed
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterator
@@ -80,8 +81,13 @@ def _narrow(admissible: Callable[[float], bool], sign: int, count: int) -> float
 def _offsets(position: Position, shift_cm: float) -> str:
     values = {name: value + shift_cm for name, value in position.offset_cm.items()}
     if len(set(values.values())) == 1:
-        return f"{next(iter(values.values())):+.2f} cm"
-    return ", ".join(f"{name} {value:+.2f} cm" for name, value in values.items())
+        return _offset(next(iter(values.values())))
+    return ", ".join(f"{name} {_offset(value)}" for name, value in values.items())
+
+
+def _offset(value_cm: float) -> str:
+    # Digits that the design wrote are kept, or the offset shown might pass the limit again.
+    return f"{signed(value_cm, 2, 6)} cm"
 
 
 def _jaw_faults(machine: Machine, placed: PlacedBeam) -> Iterator[str]:
@@ -93,8 +99,8 @@ def _jaw_faults(machine: Machine, placed: PlacedBeam) -> Iterator[str]:
             continue  # a leaf edge stands inside jaws that belong to the plan
         if not travel.holds(value):
             yield (
-                f"jaw {jaw} of beam {placed.beam.name} would stand at {value:+.2f} cm, beyond its "
-                f"travel {_range(travel)} cm"
+                f"jaw {jaw} of beam {placed.beam.name} would stand at {signed(value, 2)} cm, "
+                f"beyond its travel {_range(travel)} cm"
             )
     for low, high in ((Jaw.X1, Jaw.X2), (Jaw.Y1, Jaw.Y2)):
         opening = settings[high] - settings[low]
@@ -123,4 +129,4 @@ def _angle_faults(machine: Machine, placed: PlacedBeam) -> Iterator[str]:
 
 
 def _range(allowed: Range) -> str:
-    return f"{allowed.low:+.1f} to {allowed.high:+.1f}"
+    return f"{signed(allowed.low)} to {signed(allowed.high)}"

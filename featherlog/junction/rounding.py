@@ -148,7 +148,7 @@ def _nearest(field: PlacedField, end: End, step: float) -> PlacedField:
 
 
 def _choices(field: PlacedField, end: End, step: float) -> list[PlacedField]:
-    """Return the field with its jaws at one end rounded down or up, in every combination."""
+    """Return the field with its jaws at one end at each settable value near by, all combinations."""
     if field.field.earlier:
         return [field]
     values = [_neighbours(beam.jaw_cm(end), step) for beam in field.beams]
@@ -164,7 +164,6 @@ def _choices(field: PlacedField, end: End, step: float) -> list[PlacedField]:
 
 
 def _neighbours(value: float, step: float) -> tuple[float, ...]:
-    low = math.floor(value / step + 1e-9) * step
-    if abs(value - low) <= step * 1e-6:
-        return (round(low, 9) + 0.0,)
-    return (round(low, 9) + 0.0, round(low + step, 9) + 0.0)
+    # One step either way even from a value that can be set: the other side may have been rounded.
+    nearest = to_step(value, step)
+    return tuple(round(nearest + steps * step, 9) + 0.0 for steps in (-1, 0, 1))

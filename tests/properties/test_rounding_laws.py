@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from itertools import product
-from math import ceil, floor
+from math import floor
 from typing import TYPE_CHECKING
 
 import pytest
@@ -81,12 +81,10 @@ def test_no_other_way_of_rounding_the_inferior_field_changes_the_mismatch_less(
     assert abs(found.rounding_cm) == pytest.approx(least, abs=1e-9)
 
 
-def around(jaw_cm: float, step: float) -> set[float]:
-    """Give the two settable positions beside a jaw, or the one it is at."""
-    near = round(jaw_cm / step)
-    if abs(jaw_cm / step - near) < 1e-6:
-        return {near * step}
-    return {floor(jaw_cm / step) * step, ceil(jaw_cm / step) * step}
+def around(jaw_cm: float, step: float) -> list[float]:
+    """Give the four settable positions nearest to a jaw."""
+    below = floor(jaw_cm / step)
+    return [(below + steps) * step for steps in (-1, 0, 1, 2)]
 
 
 def worst_change(

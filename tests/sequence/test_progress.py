@@ -65,6 +65,12 @@ def test_each_field_counts_where_it_received_dose(plan: Plan) -> None:
     assert state.field_position == {"BRAIN": "B", "UPPER": "B", "LOWER": "A"}
 
 
+def test_a_field_stays_where_it_began_though_its_remainder_went_elsewhere(plan: Plan) -> None:
+    rows = [*deliver(plan, 3, part=0.5), *deliver(plan, 3, part=0.5, UPPER="C")]
+    (state,) = fraction_states(plan, rows, PERCENT).values()
+    assert state.field_position["UPPER"] == "B"
+
+
 def test_the_position_before_is_the_delivered_one_else_the_planned_one(plan: Plan) -> None:
     late = deliver(plan, 3, **dict.fromkeys(FIELDS, "A"))
     states = fraction_states(plan, late, PERCENT)

@@ -1,0 +1,58 @@
+"""The practice department: as it is said, again and again, in any folder."""
+
+from __future__ import annotations
+
+import stat
+from typing import TYPE_CHECKING
+
+import pytest
+from program import SCENARIO
+
+from featherlog.actions.database import status
+from featherlog.actions.demo import build_demo
+from featherlog.actions.solution import solve_files, stored_solution
+from featherlog.cli.show_demo import demo_text
+
+if TYPE_CHECKING:
+    from featherlog.actions.demo import Demo
+
+
+@pytest.fixture(scope="module")
+def demo(tmp_path_factory: pytest.TempPathFactory) -> Demo:
+    return build_demo(tmp_path_factory.mktemp("demo") / "my practice")
+
+
+def test_it_stands_on_its_own_morning(demo: Demo) -> None:
+    assert [(line.course, line.shift, line.due) for line in demo.due.lines] == [
+        ("FH-2041", "yes", "today"),
+        ("FH-2042", "yes", "today"),
+    ]
+    assert demo.due.lines[1].attention == "1 open departure(s)"
+    assert (demo.day.fraction, demo.day.position, demo.day.heading.demo) == (6, "B", True)
+
+
+def test_a_second_time_it_is_looked_at_and_not_built_again(demo: Demo) -> None:
+    before = status(str(demo.database))
+    assert build_demo(demo.folder) == demo
+    assert status(str(demo.database)) == before
+
+
+def test_what_to_type_next_can_be_typed(demo: Demo) -> None:
+    quoted = f"'{demo.database}'"
+    assert f"  featherlog today --database {quoted}" in demo_text(demo)
+
+
+def test_its_files_are_its_owners(demo: Demo) -> None:
+    assert [file.name for file in demo.files] == [
+        "FH-2041-fraction-6.pdf",
+        "FH-2042-review.pdf",
+        "FH-2041-dose.svg",
+    ]
+    modes = {stat.S_IMODE(file.stat().st_mode) for file in demo.folder.iterdir()}
+    assert modes == {0o600}
+
+
+@pytest.mark.parametrize(("key", "file"), [("FH-2041", "thigh.toml"), ("FH-2042", "breast.toml")])
+def test_a_stored_design_is_what_its_file_is_solved_to(demo: Demo, key: str, file: str) -> None:
+    stored = stored_solution(str(demo.database), key)
+    assert stored == solve_files(SCENARIO / file, SCENARIO / "alder.toml")

@@ -1,0 +1,161 @@
+"""What differs from the plan is recorded and named, never refused."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+import pytest
+from department import (
+    AUTHOR,
+    BREAST,
+    PHYSICIAN,
+    SECOND,
+    THERAPIST,
+    THIGH,
+    confirmed,
+    moment,
+    recorded,
+    said,
+    treated,
+)
+from program import SCENARIO
+
+from featherlog.actions.departures import explain, list_departures
+from featherlog.actions.designs import prepare
+from featherlog.actions.desk import practice_time
+from featherlog.actions.record import record
+from featherlog.actions.review import review
+from featherlog.actions.today import today
+
+if TYPE_CHECKING:
+    from program import Program
+
+    from featherlog.actions.record import Recorded
+
+COHERENT = ("other position", "coherent")
+INCOHERENT = ("fields apart", "incoherent")
+UNCONFIRMED = ("not confirmed", "for review")
+
+
+def _kinds(done: Recorded) -> list[tuple[str, str]]:
+    return [(departure.kind, departure.grade) for departure in done.departures]
+
+
+def test_as_confirmed_nothing_differs(department: Program) -> None:
+    done = treated(department.database, THIGH, "2026-03-02")
+    assert (done.departures, done.positions) == ((), (("upper thigh", "A"), ("lower thigh", "A")))
+
+
+def test_all_fields_elsewhere_are_coherent(department: Program) -> None:
+    done = treated(department.database, THIGH, "2026-03-02", position="B")
+    assert _kinds(done) == [COHERENT]
+    assert done.departures[0].detail == "all fields treated at B, planned A: the shares change"
+
+
+def test_naming_every_field_is_the_same_as_the_position(department: Program) -> None:
+    everywhere = {"upper thigh": "B", "lower thigh": "B"}
+    done = recorded(department.database, THIGH, "2026-03-02", field_positions=everywhere)
+    assert _kinds(done) == [UNCONFIRMED, COHERENT]
+
+
+def test_one_field_elsewhere_is_incoherent(department: Program) -> None:
+    done = treated(department.database, THIGH, "2026-03-02", field_positions={"lower thigh": "C"})
+    assert _kinds(done) == [INCOHERENT]
+    assert "2.0 cm" in done.departures[0].detail
+
+
+def test_a_gap_out_of_tolerance_is_kept_and_named(department: Program) -> None:
+    gaps = {"mid thigh": 2.4, "mid thigh:posterior": 2.9}
+    done = treated(department.database, THIGH, "2026-03-02", gaps_cm=gaps)
+    assert [departure.detail for departure in done.departures] == [
+        "gap on the posterior skin at mid thigh measured +2.90 cm, expected +2.32 ± 0.20 cm"
+    ]
+
+
+def test_a_meterset_within_its_tolerance_is_complete(department: Program) -> None:
+    """The practice machine allows one percent of 112 MU."""
+    done = treated(department.database, THIGH, "2026-03-02", metersets_mu={"AP upper": 111.0})
+    assert (done.complete, done.departures) == (True, ())
+
+
+def test_an_extra_fraction_takes_the_next_number(department: Program) -> None:
+    for number in range(1, 16):
+        recorded(department.database, THIGH, "2026-03-02", fraction=number, position="A")
+    extra = [recorded(department.database, THIGH, "2026-03-03", position="C") for _ in range(2)]
+    assert [done.fraction for done in extra] == [16, 17]
+    assert ("extra fraction", "for review") in _kinds(extra[0])
+    found = review(department.database, THIGH)
+    assert [row.fraction for row in found.grid][-2:] == [16, 17]
+    assert found.sides[0].superior_gy == pytest.approx(34.0)
+
+
+def test_a_fraction_out_of_order_leaves_the_one_before_due(department: Program) -> None:
+    done = recorded(department.database, THIGH, "2026-03-02", fraction=3, position="A")
+    assert _kinds(done) == [("fraction order", "for review"), UNCONFIRMED]
+    assert (done.next_fraction, done.next_position) == (1, "A")
+
+
+def test_treatment_before_approval_is_recorded(department: Program) -> None:
+    text = (SCENARIO / "breast.toml").read_text(encoding="utf-8")
+    design = department.folder / "early.toml"
+    design.write_text(text.replace("FH-2042", "FH-2044"), encoding="utf-8")
+    prepare(department.database, design, by=AUTHOR)
+    done = recorded(department.database, "FH-2044", "2026-03-04", position="A")
+    assert ("not approved", "for review") in _kinds(done)
+    assert today(department.database, "FH-2044").status == "stop"
+
+
+def test_the_remainder_is_due_at_the_position_where_the_fraction_began(
+    department: Program,
+) -> None:
+    part = {"SCV anterior": 100.0, "lateral tangent": 0.0}
+    treated(department.database, BREAST, "2026-03-04", position="C", metersets_mu=part)
+    confirmed(department.database, BREAST, "2026-03-05")
+    done = recorded(department.database, BREAST, "2026-03-05")
+    assert (done.fraction, done.complete) == (1, True)
+    assert done.positions == (("supraclavicular", "C"), ("tangents", "C"))
+    assert (done.next_fraction, done.next_position, done.next_date) == (2, "B", "2026-03-06")
+
+
+def test_a_confirmation_is_good_for_one_record(department: Program) -> None:
+    confirmed(department.database, THIGH, "2026-03-02")
+    recorded(department.database, THIGH, "2026-03-02", metersets_mu={"AP upper": 50.0})
+    done = recorded(department.database, THIGH, "2026-03-02", position="A")
+    assert UNCONFIRMED in _kinds(done)
+
+
+def test_a_reason_closes_what_it_was_given_for(department: Program) -> None:
+    done = treated(department.database, THIGH, "2026-03-02", position="B", reason=" misread ")
+    assert done.explained
+    [line] = list_departures(department.database, THIGH)
+    assert line.reason == "misread"
+
+
+def test_a_reason_can_follow(department: Program) -> None:
+    done = treated(department.database, THIGH, "2026-03-02", position="B")
+    assert not done.explained
+    explain(department.database, THIGH, 1, by=PHYSICIAN, reason="label misread")
+    assert [line.reason for line in list_departures(department.database, THIGH)] == [
+        "label misread"
+    ]
+
+
+def test_the_worst_comes_first_in_the_review(department: Program) -> None:
+    treated(department.database, THIGH, "2026-03-02", position="B", reason="misread")
+    treated(department.database, THIGH, "2026-03-03", position="B")
+    treated(department.database, THIGH, "2026-03-04", field_positions={"lower thigh": "B"})
+    found = review(department.database, THIGH).departures
+    assert [(line.fraction, line.grade, bool(line.reason)) for line in found] == [
+        (3, "incoherent", False),
+        (2, "coherent", False),
+        (1, "coherent", True),
+    ]
+
+
+def test_a_physicist_may_treat_with_a_therapist(department: Program) -> None:
+    with practice_time(moment("2026-03-02")):
+        done = record(
+            department.database, THIGH, by=AUTHOR, verified_by=SECOND, delivery=said(position="A")
+        )
+    assert done.fraction == 1
+    assert review(department.database, THIGH).grid[0].performer == AUTHOR != THERAPIST
