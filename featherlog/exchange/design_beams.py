@@ -8,7 +8,6 @@ from typing import TYPE_CHECKING
 from featherlog.exchange.kinds import choice, interval, number, point, text
 from featherlog.exchange.quantities import COORDINATE_CM, JAW_CM, SAD_CM
 from featherlog.geometry.frames import patient_from_beam
-from featherlog.geometry.matching import signed_angle
 from featherlog.junction.design import Beam, EdgesBy
 
 if TYPE_CHECKING:
@@ -23,6 +22,7 @@ _ENTRY_CM = replace(
     point(COORDINATE_CM),
     allowed=f"{point(COORDINATE_CM).allowed} (or isocentre_cm given for the whole field)",
 )
+_HALF_TURN_DEG = 180.0
 _DIGITS = 9  # of a computed isocentre: far below any distance that can be set
 
 
@@ -56,8 +56,8 @@ def _beam(
     machine_sad_cm: float,
 ) -> Beam:
     gantry_deg = table.take("gantry_deg", _GANTRY_DEG)
-    collimator_deg = signed_angle(table.take("collimator_deg", _SIGNED_DEG))
-    couch_deg = signed_angle(table.take("couch_deg", _SIGNED_DEG))
+    collimator_deg = _signed(table.take("collimator_deg", _SIGNED_DEG))
+    couch_deg = _signed(table.take("couch_deg", _SIGNED_DEG))
     ssd_cm = table.take("ssd_cm", _SSD_CM)
     sad_cm = table.take_or("sad_cm", SAD_CM, machine_sad_cm)
     if shared_cm is None:
@@ -96,3 +96,10 @@ def _along(start_cm: Point, direction: list[float], distance_cm: float) -> Point
         for start, part in zip(start_cm, direction, strict=True)
     )
     return x, y, z
+
+
+def _signed(angle_deg: float) -> float:
+    """Return the same angle in (-180, 180], exactly as written where it is in there."""
+    if angle_deg > _HALF_TURN_DEG:
+        return angle_deg - 2 * _HALF_TURN_DEG
+    return angle_deg if angle_deg > -_HALF_TURN_DEG else _HALF_TURN_DEG

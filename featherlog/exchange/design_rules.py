@@ -9,8 +9,8 @@ from __future__ import annotations
 from itertools import pairwise
 from typing import TYPE_CHECKING
 
-from featherlog.exchange.kinds import either, quoted, text
 from featherlog.exchange.earlier_rules import EARLIER_RULES
+from featherlog.exchange.kinds import either, quoted, text
 from featherlog.exchange.match_rules import MATCH_RULES
 from featherlog.exchange.sequence_rules import SEQUENCE_RULES
 from featherlog.exchange.toml_fields import Fault, repeated

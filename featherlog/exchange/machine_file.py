@@ -21,6 +21,7 @@ from featherlog.junction.machine import (
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
+    from datetime import date
     from pathlib import Path
 
 FORMAT = "featherlog machine 1"
@@ -68,9 +69,14 @@ def _machine(root: Table) -> Machine:
         steps=_steps(root.table("settable_steps")),
         tolerances=_tolerances(root.table("tolerances")),
         qualities=tuple(_quality(table) for table in root.tables("energy")),
-        closed_dates=tuple(sorted(set(root.take_or("closed_dates", several(day()), ())))),
+        closed_dates=_closed_dates(root),
         display=read_display(root.table_or_none("display")),
     )
+
+
+def _closed_dates(root: Table) -> tuple[date, ...]:
+    given = root.take_or("closed_dates", several(day()), ())
+    return tuple(sorted({*given}))
 
 
 def _steps(table: Table) -> Steps:

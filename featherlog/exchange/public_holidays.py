@@ -10,9 +10,9 @@ from featherlog.exchange.kinds import Kind, either
 if TYPE_CHECKING:
     from datetime import date
 
-    from featherlog.exchange.toml_fields import Table
-
     from holidays import HolidayBase
+
+    from featherlog.exchange.toml_fields import Table
 
 _YEARS = 3  # the year of the start date and two more: longer than any course
 
