@@ -96,12 +96,20 @@ _TABLE_WORDS = (
 )
 
 
-def table_move(move_cm: tuple[float, float, float]) -> tuple[str, ...]:
-    """Say each component of a table move in words with its IEC 61217 sign; empty when none."""
+def table_move(
+    move_cm: tuple[float, float, float], *, couch_turned: bool = False
+) -> tuple[str, ...]:
+    """Say each component of a table move in words with its IEC 61217 sign; empty when none.
+
+    Lateral and longitudinal run along the table top; with the couch turned, that is said.
+    """
     return tuple(
         f"TABLE moves {figure(abs(component))} cm {plus if component > 0 else minus} "
-        f"({axis} {signed(component)} cm)"
-        for component, (axis, plus, minus) in zip(move_cm, _TABLE_WORDS, strict=True)
+        f"({axis} {signed(component)} cm"
+        f"{', along the table top as it turns with the couch' if couch_turned and level else ''})"
+        for component, (axis, plus, minus), level in zip(
+            move_cm, _TABLE_WORDS, (True, True, False), strict=True
+        )
         if abs(component) >= STILL_CM
     )
 

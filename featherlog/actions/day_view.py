@@ -62,14 +62,15 @@ def field_views(
             FieldView(
                 field=field.field,
                 moved_by=field.moved_by,
-                since_last=_table_move(_since(field, last)),
+                since_last=_table_move(_since(field, last), field),
                 from_field_before=None
                 if index == 0
                 else _table_move(
                     _difference(
                         field.table_from_first_field_cm,
                         now.treated[index - 1].table_from_first_field_cm,
-                    )
+                    ),
+                    field,
                 ),
                 beams=tuple(
                     _beam_view(
@@ -125,8 +126,9 @@ def _difference(one: Triple, other: Triple) -> Triple:
     return (x, y, z)
 
 
-def _table_move(move_cm: Triple) -> TableMoveView:
-    return TableMoveView(*move_cm, words.table_move(move_cm))
+def _table_move(move_cm: Triple, field: FieldSetting) -> TableMoveView:
+    turned = any(beam.couch_deg for beam in field.beams)
+    return TableMoveView(*move_cm, words.table_move(move_cm, couch_turned=turned))
 
 
 def _beam_view(

@@ -148,7 +148,7 @@ def _nearest(field: PlacedField, end: End, step: float) -> PlacedField:
 
 
 def _choices(field: PlacedField, end: End, step: float) -> list[PlacedField]:
-    """Return the field with its jaws at one end at each settable value near by, all combinations."""
+    """Return the field with its jaws at one end at every combination of settable values near by."""
     if field.field.earlier:
         return [field]
     values = [_neighbours(beam.jaw_cm(end), step) for beam in field.beams]
