@@ -1,4 +1,4 @@
-"""A fictional department in a folder of its own, with two courses at different stages."""
+"""A fictional department in a folder of its own, with three courses at different stages."""
 
 from __future__ import annotations
 
@@ -18,7 +18,7 @@ from featherlog.actions.record import Delivery, record
 from featherlog.actions.staff import add_staff
 from featherlog.actions.today import due_list, today
 from featherlog.errors import InputError, RefusedError
-from featherlog.exchange.demo import DEMO_DESIGNS, DEMO_MACHINE, demo_text
+from featherlog.exchange.demo import DEMO_DESIGNS, DEMO_MACHINE, DEMO_SPINE, demo_text
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
@@ -37,7 +37,7 @@ _STAFF = (
     (SECOND_THERAPIST, "therapist"),
     (PHYSICIAN, "physician"),
 )
-THIGH, BREAST = "FH-2041", "FH-2042"
+THIGH, BREAST, SPINE = "FH-2041", "FH-2042", "FH-2043"
 _TODAY = "2026-03-09T08:30"
 _OFFSET = "+01:00"
 # Treated so far: the day, and the position of each field where it was not the planned one.
@@ -58,8 +58,10 @@ class Demo:
     files: tuple[Path, ...]
 
 
-def build_demo(folder: Path) -> Demo:
+def build_demo(folder: Path, *, prone: bool = False) -> Demo:
     """Build the demo in a folder, or look at the one that is there.
+
+    ``prone`` lays the craniospinal patient on the face instead of on the back.
 
     Raises InputError where the folder cannot be made and RefusedError where it holds a database
     that is not for practice.
@@ -71,7 +73,7 @@ def build_demo(folder: Path) -> Demo:
     file = folder / "featherlog.db"
     database = str(file)
     if not file.exists():
-        _build(folder, database)
+        _build(folder, database, DEMO_SPINE["prone" if prone else "supine"])
     elif not databases.status(database).demo:
         raise RefusedError(f"{file} is not a practice database; name another --folder")
     with practice_time(_at(_TODAY)):
@@ -85,20 +87,22 @@ def build_demo(folder: Path) -> Demo:
         )
 
 
-def _build(folder: Path, database: str) -> None:
-    for name in (DEMO_MACHINE, *DEMO_DESIGNS):
+def _build(folder: Path, database: str, spine: str) -> None:
+    designs = (*DEMO_DESIGNS, spine)
+    for name in (DEMO_MACHINE, *designs):
         write_private(folder / name, demo_text(name).encode())
     databases.create(database, demo=True)
     with practice_time(_at("2026-02-27T14:00")):
         for name, role in _STAFF:
             add_staff(database, name=name, role=role, by=ADMINISTRATOR)
         add_machine(database, folder / DEMO_MACHINE, by=PHYSICIST)
-        for name in DEMO_DESIGNS:
+        for name in designs:
             key, _, _ = prepare(database, folder / name, by=PHYSICIST)
             check(database, key, by=CHECKER)
             approve(database, key, by=PHYSICIAN)
     for day in _THIGH_DAYS:
         _treat(database, THIGH, f"{day}T09:00")
+        _treat(database, SPINE, f"{day}T09:30")
     for day in _BREAST_DAYS:
         mistake = "A" if day == _BREAST_MISTAKE_ON else None
         _treat(database, BREAST, f"{day}T10:00", position=mistake)
@@ -124,10 +128,11 @@ def _treat(database: str, key: str, when: str, position: str | None = None) -> N
 
 
 def _papers(folder: Path, database: str) -> Iterator[Path]:
-    view, pdf = sheet(database, THIGH)
-    file = folder / f"{THIGH}-fraction-{view.fraction}.pdf"
-    write_private(file, pdf)
-    yield file
+    for course in (THIGH, SPINE):
+        view, pdf = sheet(database, course)
+        file = folder / f"{course}-fraction-{view.fraction}.pdf"
+        write_private(file, pdf)
+        yield file
     _, pdf = review_page(database, BREAST)
     file = folder / f"{BREAST}-review.pdf"
     write_private(file, pdf)

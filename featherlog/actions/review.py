@@ -44,7 +44,7 @@ def review(database: str | None, key: str) -> ReviewView:
             shares=_shares(stored),
             sides=_sides(stored),
             grid=_grid(stored),
-            next_shift=next_shift(stored),
+            next_shift=next_shift(stored, desk.now.date()),
             dose=stored_dose(stored, demo=desk.demo),
             ledger_head=f"{head.number}:{head.hash[:12]}" if head else "",
             printed_at=desk.stamp,

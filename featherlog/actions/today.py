@@ -86,7 +86,7 @@ def day_view(desk: Desk, stored: Stored) -> DayView:
         else (),
         table_reference=words.RELATIVE_ONLY,
         open_departures=departure_lines(departures),
-        next_shift=next_shift(stored),
+        next_shift=next_shift(stored, desk.now.date()),
         page_code=page_code(
             stored.revision.code, stored.progress.next_fraction, stored.row.state_hash
         ),
@@ -134,10 +134,10 @@ def _shift_words(before: str | None, position: str, fraction: int, step: int) ->
     return f"Shift: from position {before} to position {position}, after {earlier}."
 
 
-def next_shift(stored: Stored) -> NextShift | None:
+def next_shift(stored: Stored, today: date) -> NextShift | None:
     """Return the next fraction after the one due whose position differs; None when there is none.
 
-    Its date is projected from the date of the fraction due.
+    Its date is projected from the date of the fraction due, or from today where that has passed.
     """
     due, on = stored.progress.next_fraction, stored.row.next_date
     positions = [fraction.position for fraction in stored.plan.fractions]
@@ -149,7 +149,7 @@ def next_shift(stored: Stored) -> NextShift | None:
         stored.course.sequence,
         number - due + 1,
         stored.course.fractions_a_day,
-        date.fromisoformat(on),
+        max(date.fromisoformat(on), today),
     )
     return NextShift(number, positions[number - 1], dates[-1].isoformat())
 

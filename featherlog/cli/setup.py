@@ -34,6 +34,9 @@ def demo(
     folder: Annotated[
         Path, typer.Option("--folder", metavar="FOLDER", help="Where to build it.")
     ] = Path("featherlog-demo"),
+    prone: Annotated[
+        bool, typer.Option("--prone", help="Lay the craniospinal patient prone, not supine.")
+    ] = False,
 ) -> None:
     """Build a fictional department in a folder of its own and look around it.
 
@@ -43,7 +46,7 @@ def demo(
     from featherlog.actions.demo import build_demo
     from featherlog.cli.show_demo import demo_text
 
-    show(demo_text(build_demo(folder)))
+    show(demo_text(build_demo(folder, prone=prone)))
 
 
 @database_app.command()

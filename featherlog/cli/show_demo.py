@@ -32,6 +32,7 @@ def demo_text(demo: Demo) -> str:
             "",
             "What to type next:",
             f"  featherlog today {database}",
+            f"  featherlog course show FH-2043 {database}",
             f"  featherlog review FH-2042 {database}",
             f"  featherlog confirm {course} {database} \\",
             f'    --by "Ash Plover" --with "Maple Teal" --position {demo.day.position}',
