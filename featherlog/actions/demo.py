@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from datetime import datetime
+from pathlib import Path
+from tempfile import TemporaryDirectory
 from typing import TYPE_CHECKING
 
 from featherlog.actions import database as databases
@@ -22,7 +24,6 @@ from featherlog.exchange.demo import DEMO_DESIGNS, DEMO_MACHINE, demo_text
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
-    from pathlib import Path
 
     from featherlog.views.day import DayView, DueList
     from featherlog.views.dose import DoseView
@@ -38,6 +39,7 @@ _STAFF = (
     (PHYSICIAN, "physician"),
 )
 THIGH, BREAST = "FH-2041", "FH-2042"
+_DATABASE, _FILES = "featherlog.db", (DEMO_MACHINE, *DEMO_DESIGNS)
 _TODAY = "2026-03-09T08:30"
 _OFFSET = "+01:00"
 # Treated so far: the day, and the position of each field where it was not the planned one.
@@ -62,16 +64,16 @@ def build_demo(folder: Path) -> Demo:
     """Build the demo in a folder, or look at the one that is there.
 
     Raises InputError where the folder cannot be made and RefusedError where it holds a database
-    that is not for practice.
+    that is not for practice, or files that would be written over.
     """
     try:
         folder.mkdir(parents=True, exist_ok=True)
     except OSError as error:
         raise InputError(f"--folder {folder} cannot be made: {error.strerror}") from error
-    file = folder / "featherlog.db"
+    file = folder / _DATABASE
     database = str(file)
     if not file.exists():
-        _build(folder, database)
+        _build(folder)
     elif not databases.status(database).demo:
         raise RefusedError(f"{file} is not a practice database; name another --folder")
     with practice_time(_at(_TODAY)):
@@ -85,8 +87,20 @@ def build_demo(folder: Path) -> Demo:
         )
 
 
-def _build(folder: Path, database: str) -> None:
-    for name in (DEMO_MACHINE, *DEMO_DESIGNS):
+def _build(folder: Path) -> None:
+    for name in _FILES:
+        if (folder / name).exists():
+            raise RefusedError(f"{folder / name} is there already; name another --folder")
+    # In a place of its own until it is whole: a run that was stopped leaves nothing half built.
+    with TemporaryDirectory(dir=folder) as work:
+        _build_in(Path(work))
+        for name in (*_FILES, _DATABASE):
+            (Path(work) / name).rename(folder / name)
+
+
+def _build_in(folder: Path) -> None:
+    database = str(folder / _DATABASE)
+    for name in _FILES:
         write_private(folder / name, demo_text(name).encode())
     databases.create(database, demo=True)
     with practice_time(_at("2026-02-27T14:00")):
