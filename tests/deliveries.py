@@ -15,7 +15,7 @@ FIELDS = ("BRAIN", "UPPER", "LOWER")
 def deliver(
     plan: Plan, fraction: int, *, part: float = 1.0, **at: str | None
 ) -> list[DeliveredBeam]:
-    """Deliver a part of every field where planned, or where ``at`` says; None leaves a field out."""
+    """Deliver a part of every field where planned, or where ``at`` says; None omits a field."""
     planned = plan.fraction(fraction).position
     return [
         DeliveredBeam(

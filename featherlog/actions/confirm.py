@@ -143,8 +143,9 @@ def _day_reasons(desk: Desk, stored: Stored, view: DayView) -> Iterator[str]:
     given = {row.fraction for row in stored.deliveries if row.at[:10] == day}
     given.discard(view.fraction)
     if len(given) >= stored.course.fractions_a_day:
-        numbers = ", ".join(str(number) for number in sorted(given))
+        numbers = " and ".join(str(number) for number in sorted(given))
+        was = "s {} were" if len(given) > 1 else " {} was"
         yield (
-            f"fraction {numbers} was delivered today already, and the course has "
+            f"fraction{was.format(numbers)} delivered today already, and the course has "
             f"{stored.course.fractions_a_day} a day"
         )

@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from datetime import datetime
+from pathlib import Path
+from tempfile import TemporaryDirectory
 from typing import TYPE_CHECKING
 
 from featherlog.actions import database as databases
@@ -22,7 +24,6 @@ from featherlog.exchange.demo import DEMO_DESIGNS, DEMO_MACHINE, DEMO_SPINE, dem
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
-    from pathlib import Path
 
     from featherlog.views.day import DayView, DueList
     from featherlog.views.dose import DoseView
@@ -38,6 +39,7 @@ _STAFF = (
     (PHYSICIAN, "physician"),
 )
 THIGH, BREAST, SPINE = "FH-2041", "FH-2042", "FH-2043"
+_DATABASE = "featherlog.db"
 _TODAY = "2026-03-09T08:30"
 _OFFSET = "+01:00"
 # Treated so far: the day, and the position of each field where it was not the planned one.
@@ -64,16 +66,16 @@ def build_demo(folder: Path, *, prone: bool = False) -> Demo:
     ``prone`` lays the craniospinal patient on the face instead of on the back.
 
     Raises InputError where the folder cannot be made and RefusedError where it holds a database
-    that is not for practice.
+    that is not for practice, or files that would be written over.
     """
     try:
         folder.mkdir(parents=True, exist_ok=True)
     except OSError as error:
         raise InputError(f"--folder {folder} cannot be made: {error.strerror}") from error
-    file = folder / "featherlog.db"
+    file = folder / _DATABASE
     database = str(file)
     if not file.exists():
-        _build(folder, database, DEMO_SPINE["prone" if prone else "supine"])
+        _build(folder, DEMO_SPINE["prone" if prone else "supine"])
     elif not databases.status(database).demo:
         raise RefusedError(f"{file} is not a practice database; name another --folder")
     with practice_time(_at(_TODAY)):
@@ -87,16 +89,28 @@ def build_demo(folder: Path, *, prone: bool = False) -> Demo:
         )
 
 
-def _build(folder: Path, database: str, spine: str) -> None:
-    designs = (*DEMO_DESIGNS, spine)
-    for name in (DEMO_MACHINE, *designs):
+def _build(folder: Path, spine: str) -> None:
+    files = (DEMO_MACHINE, *DEMO_DESIGNS, spine)
+    for name in files:
+        if (folder / name).exists():
+            raise RefusedError(f"{folder / name} is there already; name another --folder")
+    # In a place of its own until it is whole: a run that was stopped leaves nothing half built.
+    with TemporaryDirectory(dir=folder) as work:
+        _build_in(Path(work), files)
+        for name in (*files, _DATABASE):
+            (Path(work) / name).rename(folder / name)
+
+
+def _build_in(folder: Path, files: tuple[str, ...]) -> None:
+    database = str(folder / _DATABASE)
+    for name in files:
         write_private(folder / name, demo_text(name).encode())
     databases.create(database, demo=True)
     with practice_time(_at("2026-02-27T14:00")):
         for name, role in _STAFF:
             add_staff(database, name=name, role=role, by=ADMINISTRATOR)
         add_machine(database, folder / DEMO_MACHINE, by=PHYSICIST)
-        for name in designs:
+        for name in files[1:]:
             key, _, _ = prepare(database, folder / name, by=PHYSICIST)
             check(database, key, by=CHECKER)
             approve(database, key, by=PHYSICIAN)

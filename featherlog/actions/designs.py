@@ -10,7 +10,7 @@ from featherlog import words
 from featherlog.actions.desk import Desk, signing_desk
 from featherlog.actions.machines import machine_named
 from featherlog.actions.stored import load_latest
-from featherlog.actions.typed import required
+from featherlog.actions.typed import printable_everywhere, required
 from featherlog.errors import RefusedError
 from featherlog.exchange.design_file import named_machine, read_design
 from featherlog.sequence.calendar import treatment_days
@@ -41,6 +41,7 @@ def prepare(database: str | None, file: Path, *, by: str) -> tuple[str, int, Pla
         number = _next_revision(desk, course.key)
         plan = plan_course(course, machine)
         parts = [msgspec.to_builtins(part) for part in (course, plan, machine)]
+        printable_everywhere(parts[0])
         desk.append(
             Kind.DESIGN_PREPARED,
             {

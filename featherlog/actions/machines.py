@@ -8,6 +8,7 @@ import msgspec
 
 from featherlog import words
 from featherlog.actions.desk import Desk, at_desk, signing_desk
+from featherlog.actions.typed import printable_everywhere
 from featherlog.errors import NotFoundError
 from featherlog.exchange.machine_file import read_machine
 from featherlog.junction.machine import Machine
@@ -24,11 +25,13 @@ def add_machine(database: str | None, file: Path, *, by: str) -> Machine:
     Raises InputError for a faulty file and RefusedError unless a physicist does it.
     """
     machine = read_machine(file)
+    content = msgspec.to_builtins(machine)
+    printable_everywhere(content)
     with signing_desk(database) as desk:
         role = desk.role_of(by, "add a machine", words.PHYSICIST)
         desk.append(
             Kind.MACHINE_ADDED,
-            {"machine": msgspec.to_builtins(machine)},
+            {"machine": content},
             who=by,
             role=role,
             meaning=f"I describe machine {machine.name} for the designs that follow",

@@ -29,3 +29,16 @@ def required(what: str, text: str, why: str) -> str:
     if not text:
         raise InputError(f"{what} is empty, but must say {why}")
     return text
+
+
+def printable_everywhere(value: object) -> None:
+    """Check every text in plain data (text, mappings, lists), as ``printable`` does one."""
+    match value:
+        case str():
+            printable("a text of the file", value)
+        case dict():
+            for pair in value.items():
+                printable_everywhere(pair)
+        case list() | tuple():
+            for item in value:
+                printable_everywhere(item)

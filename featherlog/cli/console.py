@@ -70,11 +70,12 @@ def sheet(
     """
     from featherlog.actions.files import write_private
     from featherlog.actions.papers import sheet as action
+    from featherlog.cli.show_day import sheet_words
 
     view, pdf = action(database, course, page_size=page_size)
     file = output or Path(f"{course}-fraction-{view.fraction}.pdf")
     write_private(file, pdf)
-    show(f"{file}: fraction {view.fraction}, position {view.position}, code {view.page_code}")
+    show(f"{file}: {sheet_words(view)}")
 
 
 def confirm(
@@ -158,6 +159,8 @@ def record(
     )
     result = action(database, course, by=by, verified_by=verified_by, delivery=delivery)
     show_json(result) if json else show(_recorded_text(result))
+    if delivery.reason and not result.departures:
+        remark("Nothing differs from the plan, so the reason was not kept.")
     if result.departures and not result.explained:
         remark(
             wrapped(

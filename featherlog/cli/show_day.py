@@ -154,6 +154,15 @@ def _departures(view: DayView) -> Iterator[str]:
         )
 
 
+def sheet_words(view: DayView) -> str:
+    """Return what a sheet is for, or why it holds no settings."""
+    if view.status == "stop":
+        return words.STOP_AND_CALL
+    if view.status == "complete":
+        return f"all {view.fractions} prescribed fractions are complete"
+    return f"fraction {view.fraction}, position {view.position}, code {view.page_code}"
+
+
 def confirmed_text(view: DayView) -> str:
     """Return what the people at the console see once a fraction is confirmed."""
     lines = [

@@ -12,8 +12,11 @@ from featherlog.actions.database import status
 from featherlog.actions.demo import build_demo
 from featherlog.actions.solution import solve_files, stored_solution
 from featherlog.cli.show_demo import demo_text
+from featherlog.errors import RefusedError
 
 if TYPE_CHECKING:
+    from pathlib import Path
+
     from featherlog.actions.demo import Demo
 
 
@@ -56,3 +59,24 @@ def test_its_files_are_its_owners(demo: Demo) -> None:
 def test_a_stored_design_is_what_its_file_is_solved_to(demo: Demo, key: str, file: str) -> None:
     stored = stored_solution(str(demo.database), key)
     assert stored == solve_files(SCENARIO / file, SCENARIO / "alder.toml")
+
+
+def test_a_stopped_run_leaves_nothing_half_built(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    with monkeypatch.context() as patch:
+        patch.setattr("featherlog.actions.demo.approve", _stop)
+        with pytest.raises(KeyboardInterrupt):
+            build_demo(tmp_path)
+    assert list(tmp_path.iterdir()) == []
+
+
+def _stop(*_: object, **__: object) -> None:
+    raise KeyboardInterrupt
+
+
+def test_a_file_of_the_users_own_is_not_written_over(tmp_path: Path) -> None:
+    (tmp_path / "thigh.toml").write_text("my own", encoding="utf-8")
+    with pytest.raises(RefusedError, match=r"thigh\.toml is there already; name another"):
+        build_demo(tmp_path)
+    assert [file.read_text(encoding="utf-8") for file in tmp_path.iterdir()] == ["my own"]

@@ -8,6 +8,7 @@ import pytest
 from department import (
     AUTHOR,
     BREAST,
+    CHECKER,
     PHYSICIAN,
     SECOND,
     THERAPIST,
@@ -21,11 +22,12 @@ from department import (
 from program import SCENARIO
 
 from featherlog.actions.departures import explain, list_departures
-from featherlog.actions.designs import prepare
+from featherlog.actions.designs import approve, check, prepare
 from featherlog.actions.desk import practice_time
 from featherlog.actions.record import record
 from featherlog.actions.review import review
 from featherlog.actions.today import today
+from featherlog.errors import RefusedError
 
 if TYPE_CHECKING:
     from program import Program
@@ -159,3 +161,22 @@ def test_a_physicist_may_treat_with_a_therapist(department: Program) -> None:
         )
     assert done.fraction == 1
     assert review(department.database, THIGH).grid[0].performer == AUTHOR != THERAPIST
+
+
+def test_two_fractions_a_day(department: Program) -> None:
+    text = (SCENARIO / "breast.toml").read_text(encoding="utf-8")
+    design = department.folder / "twice.toml"
+    text = text.replace("fractions_a_day = 1", "fractions_a_day = 2").replace("FH-2042", "FH-2045")
+    design.write_text(text, encoding="utf-8")
+    prepare(department.database, design, by=AUTHOR)
+    check(department.database, "FH-2045", by=CHECKER)
+    with practice_time(moment("2026-03-04")):
+        approve(department.database, "FH-2045", by=PHYSICIAN)
+    dates = [
+        treated(department.database, "FH-2045", day).next_date
+        for day in ("2026-03-12T08:00:00", "2026-03-12T15:00:00", "2026-03-16T08:00:00")
+    ]
+    assert dates == ["2026-03-12", "2026-03-16", "2026-03-16"]
+    treated(department.database, "FH-2045", "2026-03-16T15:00:00")
+    with pytest.raises(RefusedError, match=r"^fractions 3 and 4 were delivered today already"):
+        confirmed(department.database, "FH-2045", "2026-03-16T18:00:00")

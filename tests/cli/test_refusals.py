@@ -10,7 +10,7 @@ from pathlib import Path
 from typing import Any
 
 import pytest
-from department import AUTHOR, CHECKER, PHYSICIAN, THIGH, confirmed, treated
+from department import AUTHOR, CHECKER, PHYSICIAN, THIGH, confirmed, recorded, treated
 from program import PAIR, SCENARIO, Outcome, Program
 
 from featherlog.actions.database import create, status
@@ -150,6 +150,8 @@ def test_an_unapproved_design_is_not_confirmed(refuses: Refuses) -> None:
     assert refuses.run("course", "prepare", str(design), "--by", AUTHOR).code == 0
     reason = "revision 1 of this design is prepared, not approved"
     refuses(Case(("confirm", "FH-2043", *PAIR), REFUSED, f"{reason}. {STOP_AND_CALL}"))
+    came = refuses.run("sheet", "FH-2043", "--output", "stop.pdf")
+    assert came.out == f"stop.pdf: {STOP_AND_CALL}\n"
 
 
 def test_a_database_that_is_not_there(refuses: Refuses) -> None:
@@ -237,3 +239,35 @@ def test_a_reason_given_meanwhile_leaves_the_confirmation_valid(refuses: Refuses
     )
     came = refuses.run(*RECORD, *PAIR, on="2026-03-03")
     assert (came.code, "DEPARTURE" in came.out) == (0, False)
+
+
+@pytest.mark.parametrize(
+    ("words", "file"),
+    [(("course", "prepare"), "thigh.toml"), (("machine", "add"), "alder.toml")],
+)
+def test_a_file_with_a_name_that_no_paper_can_print(
+    words: tuple[str, ...], file: str, refuses: Refuses
+) -> None:
+    text = (SCENARIO / file).read_text(encoding="utf-8")
+    strange = refuses.program.folder / file
+    strange.write_text(text.replace('name = "Alder"', 'name = "松"').replace("Lark", "松"))
+    came = refuses.run(*words, str(strange), "--by", AUTHOR)
+    assert came.code == INPUT
+    assert "has no way to show U+677E" in came.fault
+
+
+def test_a_sheet_says_when_there_is_nothing_to_set(refuses: Refuses) -> None:
+    database = refuses.program.database
+    for number in range(1, 16):
+        recorded(database, THIGH, "2026-03-02", fraction=number, position="A")
+    came = refuses.run("sheet", THIGH, "--output", "last.pdf")
+    assert came.out == "last.pdf: all 15 prescribed fractions are complete\n"
+
+
+def test_a_reason_for_nothing_is_not_dropped_in_silence(refuses: Refuses) -> None:
+    confirmed(refuses.program.database, THIGH, "2026-03-02")
+    came = refuses.run(*RECORD, *PAIR, "--reason", "late")
+    assert (came.code, came.fault) == (
+        0,
+        "Nothing differs from the plan, so the reason was not kept.",
+    )
