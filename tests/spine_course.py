@@ -11,10 +11,12 @@ from typing import TYPE_CHECKING
 
 from featherlog.geometry.patient import PatientPosition, Point
 from featherlog.junction.design import (
+    Angles,
     Beam,
     Border,
     Course,
     CriticalStructure,
+    EdgesBy,
     Field,
     Junction,
     MovedBy,
@@ -52,6 +54,7 @@ def machine(
     travel: dict[Jaw, Range] | None = None,
     opening_cm: float = 80.0,
     gantry_deg: tuple[float, float] = (0, 360),
+    couch_deg: tuple[float, float] = (-95, 95),
 ) -> Machine:
     """Give a machine of SAD 100 whose wide limits only bite where a test narrows them."""
     penumbra = DepthTable((0.0, 30.0), (0.4, 1.0))
@@ -62,7 +65,7 @@ def machine(
         largest_opening_cm=opening_cm,
         gantry_deg=Range(*gantry_deg),
         collimator_deg=Range(-90, 90),
-        couch_deg=Range(-95, 95),
+        couch_deg=Range(*couch_deg),
         steps=steps,
         tolerances=Tolerances(jaw_cm=0.1, table_cm=0.2, angle_deg=1.0, meterset_percent=2.0),
         qualities=(BeamQuality(ENERGY, penumbra, 0.005),),
@@ -92,6 +95,9 @@ def beam(
     collimator_deg: float = 0.0,
     couch_deg: float = 0.0,
     weight: float = 1.0,
+    sad_cm: float = 100.0,
+    ssd_cm: float = 95.0,
+    edges_by: EdgesBy = EdgesBy.JAWS,
 ) -> Beam:
     return Beam(
         name=name,
@@ -100,9 +106,11 @@ def beam(
         collimator_deg=collimator_deg,
         couch_deg=couch_deg,
         isocentre_cm=isocentre_cm,
-        ssd_cm=95.0,
+        sad_cm=sad_cm,
+        ssd_cm=ssd_cm,
         side_jaws_cm=(-5.0, 5.0),
         weight=weight,
+        edges_by=edges_by,
     )
 
 
@@ -124,11 +132,17 @@ def junction(
     lateral_limits_cm: tuple[float, float] = (-3.0, 3.0),
     critical_depth_cm: float | None = None,
     skin_slope_deg: float | None = 0.0,
+    separation_cm: float = 0.0,
+    borne_by: str | None = None,
+    turned_field: str | None = None,
+    matched_beam: str | None = None,
+    angles: Angles = Angles.RECOMPUTED,
 ) -> Junction:
+    """Give a junction; one with a turned field is rotated, whatever technique is named."""
     critical = None if critical_depth_cm is None else CriticalStructure("cord", critical_depth_cm)
     return Junction(
         name=name,
-        technique=technique,
+        technique=Technique.ROTATED if turned_field else technique,
         entrance=entrance,
         skin_point_cm=skin_point_cm,
         match_depth_cm=depth_cm,
@@ -140,6 +154,11 @@ def junction(
         reference_dose_gy=36.0,
         gap_tolerance_cm=0.3,
         skin_slope_deg=skin_slope_deg,
+        separation_cm=separation_cm,
+        borne_by=borne_by,
+        turned_field=turned_field,
+        matched_beam=matched_beam,
+        angles=angles,
     )
 
 
@@ -207,13 +226,19 @@ def posterior_gantry(position: PatientPosition) -> float:
 def spine(
     position: PatientPosition = HFS,
     *,
+    brain_follows: str | None = None,
     upper_follows: str | None = None,
     lower_follows: str | None = None,
     offsets_cm: Sequence[float] = (0.0, -1.0, -2.0),
     fractions: int = 20,
     order: SequencePattern | None = None,
+    borders: tuple[Border, Border] | None = None,
+    angles: Angles = Angles.RECOMPUTED,
 ) -> Course:
-    """Give two laterals above two posterior spine fields, matched at 5 and 6 cm."""
+    """Give two laterals turned onto the upper of two posterior spine fields, matched at 5 and 6 cm.
+
+    It is the course of the known answers (derived): SAD 100, posterior skin at y = 0.
+    """
     gantry = posterior_gantry(position)
     laterals = (
         beam("left lateral", 90, (0, -8, 9)),
@@ -222,12 +247,15 @@ def spine(
     return course(
         position,
         (
-            field("BRAIN", *laterals),
+            field("BRAIN", *laterals, follows=brain_follows),
             field("UPPER", beam("upper", gantry, (0, 0, -14)), follows=upper_follows),
             field("LOWER", beam("lower", gantry, (0, 0, -44)), follows=lower_follows),
         ),
-        (junction("J1", (0, 0, 0), 5.0), junction("J2", (0, 0, -30), 6.0)),
-        (held(0, -8, 20), held(0, -6, -56)),
+        (
+            junction("J1", (0, 0, 0), 5.0, turned_field="BRAIN", angles=angles),
+            junction("J2", (0, 0, -30), 6.0),
+        ),
+        borders or (held(0, -8, 20), held(0, -6, -56)),
         offsets_cm=offsets_cm,
         fractions=fractions,
         order=order,

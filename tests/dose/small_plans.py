@@ -38,6 +38,7 @@ from featherlog.junction.machine import (
 from featherlog.junction.plan import (
     BeamSetting,
     FieldSetting,
+    FractionStep,
     JunctionSetting,
     Plan,
     PlannedFraction,
@@ -89,6 +90,10 @@ def beam(
         inferior_jaw=Jaw.Y1,
         superior_edge=edge(superior_jaw_cm, gantry_deg, isocentre_cm),
         inferior_edge=edge(inferior_jaw_cm, gantry_deg, isocentre_cm),
+        sad_cm=SAD_CM,
+        exact_collimator_deg=0.0,
+        exact_couch_deg=0.0,
+        edges_by="jaws",
     )
 
 
@@ -110,7 +115,7 @@ def plan(positions: list[PositionSettings], fractions: list[tuple[str, float]]) 
     return Plan(
         tuple(positions),
         tuple(
-            PlannedFraction(number, "whole", dose_gy, label)
+            PlannedFraction(number, "whole", dose_gy, (FractionStep(label, 1.0),))
             for number, (label, dose_gy) in enumerate(fractions, start=1)
         ),
         (),
@@ -127,6 +132,10 @@ def half_beam_position(label: str, offset_cm: float, gap_cm: float = 0.0) -> Pos
         skin_gaps=(),
         mismatches=(),
         rounding_cm=0.0,
+        depth_below_skin_cm=MATCH_DEPTH_CM,
+        separation_cm=0.0,
+        if_jaws_off_cm=0.0,
+        if_all_off_cm=0.0,
         three_field_overlap_cm=None,
         gap_without_overlap_cm=None,
     )
@@ -215,5 +224,5 @@ def course(
 
 def _field(name: str) -> Field:
     isocentre_cm = (0.0, -MATCH_DEPTH_CM, 0.0)
-    only = Beam(name, "6 MV", 180.0, 0.0, 0.0, isocentre_cm, 95.0, (-5.0, 5.0), 1.0)
+    only = Beam(name, "6 MV", 180.0, 0.0, 0.0, isocentre_cm, SAD_CM, 95.0, (-5.0, 5.0), 1.0)
     return Field(name, (only,), MovedBy.JAWS, None)

@@ -25,18 +25,18 @@ def test_the_width_is_interpolated_and_held_beyond_the_table(
 def test_depth_runs_from_the_beams_own_entrance_surface() -> None:
     anterior = dataclasses.replace(POSTERIOR, gantry_deg=0.0, ssd_cm=88.0)
     point_cm = (1.0, -7.0, 3.0)
-    assert depth_in_beam(point_cm, POSTERIOR, 100.0, PatientPosition.HFS) == pytest.approx(7.0)
-    assert depth_in_beam(point_cm, anterior, 100.0, PatientPosition.HFS) == pytest.approx(10.0)
+    assert depth_in_beam(point_cm, POSTERIOR, PatientPosition.HFS) == pytest.approx(7.0)
+    assert depth_in_beam(point_cm, anterior, PatientPosition.HFS) == pytest.approx(10.0)
 
 
 def test_the_same_beam_enters_the_other_side_of_a_prone_patient() -> None:
     over_the_back = dataclasses.replace(POSTERIOR, gantry_deg=0.0)
     point_cm = (1.0, -7.0, 3.0)
-    assert depth_in_beam(point_cm, over_the_back, 100.0, PatientPosition.HFP) == pytest.approx(7.0)
+    assert depth_in_beam(point_cm, over_the_back, PatientPosition.HFP) == pytest.approx(7.0)
 
 
 def test_no_depth_lies_above_the_entrance_surface() -> None:
-    assert depth_in_beam((0.0, 2.0, 0.0), POSTERIOR, 100.0, PatientPosition.HFS) == 0.0
+    assert depth_in_beam((0.0, 2.0, 0.0), POSTERIOR, PatientPosition.HFS) == 0.0
 
 
 def test_with_the_table_turned_depth_changes_along_the_axis() -> None:
@@ -44,6 +44,6 @@ def test_with_the_table_turned_depth_changes_along_the_axis() -> None:
     # Counter-clockwise from above, the feet of a supine patient swing to the left lateral source.
     per_cm = math.sin(math.radians(30.0))
     here, there = (
-        depth_in_beam((0.0, -5.0, z_cm), turned, 100.0, PatientPosition.HFS) for z_cm in (0.0, 2.0)
+        depth_in_beam((0.0, -5.0, z_cm), turned, PatientPosition.HFS) for z_cm in (0.0, 2.0)
     )
     assert (here, there - here) == pytest.approx((5.0, 2.0 * per_cm))

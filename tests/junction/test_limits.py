@@ -9,6 +9,7 @@ import pytest
 from spine_course import FFS, HFS, beam, junction, machine, pair, spine
 
 from featherlog.errors import RefusedError
+from featherlog.junction.design import Technique
 from featherlog.junction.machine import Jaw, Machine, Range, Steps
 from featherlog.junction.solve import solve
 from featherlog.words import MINUS, signed
@@ -82,7 +83,8 @@ def tilted(gantry_deg: float, couch_deg: float = 0.0) -> Course:
     beams = [
         beam(name, gantry_deg, (0, -5, z), couch_deg=couch_deg) for name, z in (("u", 9), ("l", -9))
     ]
-    return pair(beams[:1], beams[1:], junction("J", (0, 0, 0), 5.0))
+    between = junction("J", (0, 0, 0), 5.0, technique=Technique.HALF_BEAM)
+    return pair(beams[:1], beams[1:], between)
 
 
 def test_an_angle_the_machine_does_not_have() -> None:
@@ -125,8 +127,9 @@ def test_a_field_whose_jaws_face_no_junction_is_refused_by_its_beam() -> None:
         junction("J", (0, 0, 0), 5.0),
         position=HFS,
     )
-    assert "finch-2031: beam u: no jaw faces the junction within 30 degrees" in refusal(
-        of, machine()
+    assert refusal(of, machine()).startswith(
+        "position A: beam u: no jaw faces the junction within 30 degrees: the nearest is turned "
+        "45.0 degrees from the junction axis"
     )
 
 

@@ -1,8 +1,8 @@
 import pytest
 from spine_course import beam, junction, machine, pair, spine
 
-from featherlog.junction.edges import to_step
 from featherlog.junction.machine import Jaw, Steps
+from featherlog.junction.rounding import to_step
 from featherlog.junction.solve import solve
 
 
@@ -30,9 +30,9 @@ def test_no_value_rounds_to_minus_zero() -> None:
 def test_what_is_set_goes_to_the_nearest_step_at_the_borders() -> None:
     _, settings = solve(spine(offsets_cm=(0.0, -1.0)), machine(steps=Steps(0.1, 0.1, 1.0)))
     laterals, _, lower = settings.fields
-    # 10.6796 up to the border at 20 for the laterals; 11.3208 down to the one at -56.
+    # With whole angles 10.7 up to the border at 20 for the laterals; 11.3208 down to -56.
     for lateral in laterals.beams:
-        assert lateral.jaw_cm[Jaw.Y2] == pytest.approx(11.0)
+        assert lateral.jaw_cm[Jaw.Y2] == pytest.approx(10.7)
     assert lower.beams[0].jaw_cm[Jaw.Y1] == pytest.approx(-11.3)
 
 

@@ -12,7 +12,8 @@ from spine_course import beam, junction, machine, pair
 
 from featherlog.geometry.beams import BeamFrame, beam_frame
 from featherlog.geometry.frames import PatientPosition
-from featherlog.junction.edges import place_exact
+from featherlog.junction.placing import Task
+from featherlog.junction.rounding import place_exact
 
 if TYPE_CHECKING:
     from featherlog.junction.design import Beam
@@ -80,7 +81,7 @@ def test_every_solved_edge_passes_through_the_moved_match_point(
         junction("J", (0, 0, 0), depth_cm),
         position=position,
     )
-    chain = place_exact(course, machine(), {"J": depth_cm}, {"J": offset_cm})
+    chain = place_exact(Task(course, machine(), {"J": depth_cm}), {"J": offset_cm})
     for setting, end in (
         (upper, chain[0].beams[0].inferior),
         (lower, chain[1].beams[0].superior),

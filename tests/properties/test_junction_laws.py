@@ -134,7 +134,8 @@ def aimed(upper: Aim, lower: Aim, position: PatientPosition, move: float, x: flo
         for a, z in sides
     )
     limits = (x - 3, x + 3)
-    between = junction("J", (x, 0, 0), 5.0, lateral_limits_cm=limits)
+    # A technique that asks for no gap on the skin, for the beams may enter anywhere.
+    between = junction("J", (x, 0, 0), 5.0, lateral_limits_cm=limits, technique=Technique.HALF_BEAM)
     return pair([first], [second], between, position=position, offsets_cm=(0.0, move))
 
 

@@ -28,7 +28,7 @@ def test_position_counts_add_up_to_the_fractions_delivered(
     begun: dict[int, tuple[str, float]] = {}
     for part, asked in sessions:
         states = fraction_states(PLAN, rows, 2.0)
-        now = progress(PLAN, states)
+        now = progress(PLAN, states, 2.0)
         if now.next_fraction is None:
             break
         before, had = begun.get(now.next_fraction, (asked, 0.0))
@@ -40,7 +40,7 @@ def test_position_counts_add_up_to_the_fractions_delivered(
         where = dict.fromkeys(FIELDS, before)
         rows += deliver(PLAN, now.next_fraction, part=given_part, **where)
     states = fraction_states(PLAN, rows, 2.0)
-    now = progress(PLAN, states)
+    now = progress(PLAN, states, 2.0)
     counts = Counter(state.began_at for state in states.values() if state.complete)
     assert sum(counts.values()) == now.complete <= len(PLAN.fractions)
     assert now.complete == sum(had == 1 for _, had in begun.values())

@@ -12,6 +12,7 @@ from hypothesis import strategies as st
 from rays import Setting, edge_z
 from spine_course import beam, junction, machine, pair
 
+from featherlog.junction.design import Technique
 from featherlog.junction.machine import Steps
 from featherlog.junction.solve import solve
 
@@ -47,7 +48,7 @@ def rounded(of: tuple[Aims, Aims, float, bool], by: Steps) -> PositionSettings:
     course = pair(
         beams("u", 13.03, upper),
         beams("l", -12.41, lower),
-        junction("J", (0, 0, 0), 5.0, critical_depth_cm=8.0),
+        junction("J", (0, 0, 0), 5.0, critical_depth_cm=8.0, technique=Technique.HALF_BEAM),
         follows="J" if couch else None,
         offsets_cm=(0.0, move),
     )

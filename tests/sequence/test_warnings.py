@@ -21,8 +21,8 @@ def two_fields(
     between: Junction = BETWEEN, *offsets_cm: float, gantry_deg: float = 180.0
 ) -> Course:
     return pair(
-        [beam("u", gantry_deg, (0, -4, 10))],
-        [beam("l", 180, (0, -4, -10))],
+        [beam("u", gantry_deg, (0, -4, 10), ssd_cm=96.0)],
+        [beam("l", 180, (0, -4, -10), ssd_cm=96.0)],
         between,
         offsets_cm=offsets_cm or (0.0,),
     )
@@ -38,10 +38,16 @@ def test_nothing_to_say() -> None:
 
 def test_uneven_shares() -> None:
     uneven = two_fields(BETWEEN, 0.0, -1.0, -2.0)
-    assert said(uneven) == ("shares are uneven: A 10, B 5, C 5 of 20 fractions",)
+    (found,) = said(uneven)
+    assert found == (
+        "shares are uneven: A 10, B 5, C 5 of 20 fractions; as many shift days with blocks of "
+        "A 4, B 7, C 6, A 3 would be more even"
+    )
     helped = replace(uneven, phases=(replace(uneven.phases[0], fractions=21),))
-    assert said(helped) == (
-        "shares are uneven: A 10, B 6, C 5 of 21 fractions; blocks of 7 would make them equal",
+    (found,) = said(helped)
+    assert found == (
+        "shares are uneven: A 10, B 6, C 5 of 21 fractions; as many shift days with blocks of "
+        "A 4, B 4, C 7, A 3, B 3 would be more even"
     )
 
 
@@ -53,7 +59,7 @@ def test_a_skin_slope_that_is_not_entered() -> None:
 
 def test_a_half_beam_match_needs_no_skin_slope() -> None:
     between = junction("J", (0, 0, 0), 4.0, technique=Technique.HALF_BEAM, skin_slope_deg=None)
-    both = [beam(name, 180, (0, -4, 0)) for name in "ul"]
+    both = [beam(name, 180, (0, -4, 0), ssd_cm=96.0) for name in "ul"]
     assert said(pair(both[:1], both[1:], between)) == ()
 
 
@@ -68,8 +74,8 @@ def test_a_gap_as_wide_as_the_step() -> None:
 def test_an_overlap_as_wide_as_the_step_is_hot() -> None:
     # Both edges are over-travelled by 20 cm, so they overlap on the skin by 4·40/100 cm.
     crossed = pair(
-        [beam("u", 180, (0, -4, -20))],
-        [beam("l", 180, (0, -4, 20))],
+        [beam("u", 180, (0, -4, -20), ssd_cm=96.0)],
+        [beam("l", 180, (0, -4, 20), ssd_cm=96.0)],
         BETWEEN,
         borders=(reach(45.0), reach(45.0)),
         offsets_cm=(0.0, -1.0),
@@ -82,7 +88,7 @@ def test_an_overlap_as_wide_as_the_step_is_hot() -> None:
 def test_a_step_smaller_than_the_penumbra() -> None:
     # The penumbra is 0.4 cm wide at the surface and grows by 0.6 cm in 30 cm of depth.
     half = junction("J", (0, 0, 0), 4.0, technique=Technique.HALF_BEAM)
-    both = [beam(name, 180, (0, -4, 0)) for name in "ul"]
+    both = [beam(name, 180, (0, -4, 0), ssd_cm=96.0) for name in "ul"]
     (found,) = said(pair(both[:1], both[1:], half, offsets_cm=(0.0, -0.45)))
     assert found == (
         "junction J: the feather step (0.45 cm) is smaller than the 80-20 % penumbra of 6 MV at "
@@ -94,7 +100,7 @@ def test_half_beams_of_different_gantry_that_part_once_moved() -> None:
     # The posterior skin lies 4 cm past the isocentre along the anterior beam and 4 cm before it
     # along the posterior one: moved by 2 cm, they part by 2·(4 + 4)/100 cm.
     half = junction("J", (0, 0, 0), 4.0, technique=Technique.HALF_BEAM, lateral_limits_cm=(0, 0))
-    opposed = [beam("u", 0, (0, -4, 0))], [beam("l", 180, (0, -4, 0))]
+    opposed = [beam("u", 0, (0, -4, 0))], [beam("l", 180, (0, -4, 0), ssd_cm=96.0)]
     (found,) = said(pair(*opposed, half, offsets_cm=(0.0, 2.0)))
     assert found == (
         "junction J, position B: gap of 0.16 cm at entrance skin (x +0.0, y +0.0), more than the "
