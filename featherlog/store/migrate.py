@@ -6,9 +6,6 @@ a SQLite file is copied beside itself first.
 
 from __future__ import annotations
 
-import os
-import sqlite3
-from contextlib import closing
 from datetime import UTC, datetime
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -16,6 +13,7 @@ from typing import TYPE_CHECKING
 from sqlalchemy import func, insert, inspect, select
 
 from featherlog.errors import InputError, RefusedError
+from featherlog.store.copying import copy_file, make_private
 from featherlog.store.engine import migrating, open_engine, sqlite_file
 from featherlog.store.schema import REVISIONS, schema_revision
 from featherlog.store.tables import ledger_entry, store_property
@@ -50,7 +48,7 @@ def create(url: str, *, demo: bool) -> None:
         StoreError: it cannot be reached or made.
     """
     file = sqlite_file(url)
-    made = file is not None and _make_private(file)
+    made = file is not None and make_private(file)
     try:
         with migrating(open_engine(url)) as connection:
             _refuse_tables(connection)
@@ -137,23 +135,11 @@ def _has_entries(connection: Connection) -> bool:
     return connection.execute(select(func.count()).select_from(ledger_entry)).scalar_one() > 0
 
 
-def _make_private(file: Path) -> bool:
-    """Make an empty file that its owner alone can read; tell whether it was made."""
-    file.parent.mkdir(mode=0o700, parents=True, exist_ok=True)
-    try:
-        os.close(os.open(file, os.O_CREAT | os.O_EXCL | os.O_RDWR, 0o600))
-    except FileExistsError:
-        return False
-    return True
-
-
 def _back_up(url: str, version: str) -> Path | None:
     file = sqlite_file(url)
     if file is None:
         return None
     stamp = datetime.now(UTC).strftime("%Y%m%dT%H%M%S%fZ")
     backup = file.with_name(f"{file.name}.{version}.{stamp}.backup")
-    _make_private(backup)
-    with closing(sqlite3.connect(file)) as source, closing(sqlite3.connect(backup)) as target:
-        source.backup(target)
+    copy_file(file, backup)
     return backup

@@ -38,6 +38,7 @@ READING = [
     ("machine", "list"),
     ("staff", "list"),
     ("database", "status"),
+    ("database", "health"),
     ("solve", str(SCENARIO / "thigh.toml"), "--machine", str(SCENARIO / "alder.toml")),
 ]
 HEAVY = ("sqlalchemy", "alembic", "pandas", "numpy", "scipy", "reportlab", "msgspec")

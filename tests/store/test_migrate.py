@@ -15,6 +15,7 @@ from sqlalchemy import inspect, text
 
 from featherlog.errors import InputError, RefusedError, StoreError
 from featherlog.store import migrate
+from featherlog.store.backup import verify
 from featherlog.store.engine import migrating, open_engine, reading, sqlite_file, writing
 from featherlog.store.ledger import append, entries
 from featherlog.store.migrate import create, downgrade, script_location, upgrade
@@ -94,15 +95,31 @@ def test_an_upgrade_of_a_current_database_does_nothing(database_url: str, tmp_pa
 @pytest.mark.parametrize("backend", ["sqlite"])
 def test_a_file_is_copied_beside_itself_before_its_schema_changes(database_url: str) -> None:
     with writing(open_engine(database_url)) as connection:
-        written = append(connection, scenario.staff())
+        written = [append(connection, draft) for draft in scenario.whole_story()]
     backup = downgrade(database_url, "base", lose_records=True)
     file = sqlite_file(database_url)
     assert backup is not None
     assert file is not None
     assert backup.parent == file.parent
     assert stat.S_IMODE(backup.stat().st_mode) == 0o600
+    verify(backup)
     with reading(open_engine(f"sqlite:///{backup}")) as connection:
-        assert list(entries(connection)) == [written]
+        assert list(entries(connection)) == written
+
+
+@pytest.mark.parametrize("backend", ["sqlite"])
+def test_without_room_for_the_backup_nothing_is_migrated(
+    database_url: str, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def full(_source: Path, target: Path) -> None:
+        raise StoreError(f"{target} has no room")
+
+    monkeypatch.setattr(migrate, "copy_file", full)
+    before = table_names(database_url)
+    with pytest.raises(StoreError, match="has no room"):
+        downgrade(database_url, "base")
+    assert table_names(database_url) == before
+    assert [path.name for path in tmp_path.iterdir()] == ["featherlog.db"]
 
 
 def test_the_migrations_make_the_tables_the_program_knows(database_url: str) -> None:

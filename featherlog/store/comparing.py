@@ -1,0 +1,92 @@
+"""The projections against the ledger: made again in a scratch database, and compared row by row."""
+
+from __future__ import annotations
+
+import sqlite3
+from contextlib import contextmanager
+from itertools import zip_longest
+from typing import TYPE_CHECKING, Any
+
+import sqlalchemy
+from sqlalchemy import StaticPool, Text, insert, select
+
+from featherlog.store import ledger, projection
+from featherlog.store.tables import PROJECTIONS, ledger_entry, metadata
+
+if TYPE_CHECKING:
+    from collections.abc import Iterator
+
+    from sqlalchemy import Connection, Table
+
+_BATCH = 500
+
+
+def first_difference(connection: Connection) -> str | None:
+    """Return a sentence on the first row that the ledger did not make; None when all agree.
+
+    The database itself is only read. The ledger's chain is to be walked before.
+
+    Raises:
+        IntegrityError: an entry cannot be projected at all.
+    """
+    with _scratch() as scratch:
+        _copy_ledger(connection, scratch)
+        for entry in ledger.entries(scratch):
+            projection.apply(scratch, entry)
+        for table in reversed(PROJECTIONS):
+            fault = _difference(connection, scratch, table)
+            if fault is not None:
+                return fault
+    return None
+
+
+@contextmanager
+def _scratch() -> Iterator[Connection]:
+    # A database without a name lives in a private, nameless temporary file; it is no second truth.
+    engine = sqlalchemy.create_engine(
+        "sqlite://", creator=lambda: sqlite3.connect(""), poolclass=StaticPool
+    )
+    try:
+        with engine.connect() as connection:
+            metadata.create_all(connection)
+            yield connection
+    finally:
+        engine.dispose()
+
+
+def _copy_ledger(connection: Connection, scratch: Connection) -> None:
+    rows = connection.execute(select(ledger_entry).order_by(ledger_entry.c.number))
+    for batch in rows.mappings().partitions(_BATCH):
+        scratch.execute(insert(ledger_entry), [dict(row) for row in batch])
+
+
+def _difference(live: Connection, made: Connection, table: Table) -> str | None:
+    for found, expected in zip_longest(_rows(live, table), _rows(made, table)):
+        if found == expected:
+            continue
+        if found is None or (expected is not None and _key(table, expected) < _key(table, found)):
+            return f"{_name(table, expected)} is missing, though the ledger made it."
+        if expected is None or _key(table, found) < _key(table, expected):
+            return f"{_name(table, found)} is there, though no ledger entry made it."
+        columns = table.columns.keys()
+        other = [n for n, a, b in zip(columns, found, expected, strict=True) if a != b]
+        return f"{_name(table, found)} differs from what the ledger made, in {', '.join(other)}."
+    return None
+
+
+def _rows(connection: Connection, table: Table) -> Iterator[tuple[Any, ...]]:
+    # Both databases then order by code points, and not one of them by the rules of a language.
+    collation = "C" if connection.dialect.name == "postgresql" else "BINARY"
+    order = [
+        key.collate(collation) if isinstance(key.type, Text) else key for key in table.primary_key
+    ]
+    for row in connection.execute(select(table).order_by(*order)):
+        yield tuple(row)
+
+
+def _key(table: Table, row: tuple[Any, ...]) -> tuple[Any, ...]:
+    return tuple(row[table.columns.keys().index(column.name)] for column in table.primary_key)
+
+
+def _name(table: Table, row: tuple[Any, ...]) -> str:
+    return f"The row of {table.name} {'/'.join(map(str, _key(table, row)))}"
