@@ -65,9 +65,9 @@ def _difference(live: Connection, made: Connection, table: Table) -> str | None:
         if found == expected:
             continue
         if found is None or (expected is not None and _key(table, expected) < _key(table, found)):
-            return f"{_name(table, expected)} is missing, though the ledger made it."
+            return f"{_name(table, expected)} is missing, but the ledger made it."
         if expected is None or _key(table, found) < _key(table, expected):
-            return f"{_name(table, found)} is there, though no ledger entry made it."
+            return f"{_name(table, found)} is there, but no ledger entry made it."
         columns = table.columns.keys()
         other = [n for n, a, b in zip(columns, found, expected, strict=True) if a != b]
         return f"{_name(table, found)} differs from what the ledger made, in {', '.join(other)}."

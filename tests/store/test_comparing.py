@@ -39,11 +39,11 @@ def test_what_was_written_live_is_what_the_ledger_makes(told: str) -> None:
         ),
         (
             "DELETE FROM observation WHERE entry = 11",
-            "The row of observation 11/upper spine/posterior is missing, though the ledger made it.",
+            "The row of observation 11/upper spine/posterior is missing, but the ledger made it.",
         ),
         (
-            "INSERT INTO staff VALUES ('Ash Plover', 'therapist', 1)",
-            "The row of staff Ash Plover is there, though no ledger entry made it.",
+            "INSERT INTO staff VALUES ('Ash Plover', 'therapist', 1, NULL)",
+            "The row of staff Ash Plover is there, but no ledger entry made it.",
         ),
     ],
 )
