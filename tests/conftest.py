@@ -14,6 +14,8 @@ import subprocess
 import tempfile
 import uuid
 from contextlib import contextmanager
+from dataclasses import dataclass
+from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -42,8 +44,18 @@ def postgresql_server() -> Iterator[URL]:
     if binaries is None:
         required = os.environ.get("FEATHERLOG_REQUIRE_POSTGRESQL") == "1"
         (pytest.fail if required else pytest.skip)(MISSING)
-    with _throwaway_server(binaries) as url:
-        yield url
+    with _throwaway_server(binaries) as server:
+        yield server.url
+
+
+@pytest.fixture
+def own_postgresql() -> Iterator[OwnServer]:
+    """Give a server that a test may restart, with nobody else on it."""
+    binaries = _server_binaries()
+    if binaries is None:
+        pytest.skip(MISSING)
+    with _throwaway_server(binaries) as server:
+        yield server
 
 
 @pytest.fixture(scope="session")
@@ -124,8 +136,20 @@ def _server_binaries() -> Path | None:
     return Path(found).resolve().parent if found else None
 
 
+@dataclass(frozen=True)
+class OwnServer:
+    """A server of ours: its URL, and a way to end it hard and start it again."""
+
+    url: URL
+    restart: Callable[[], None]
+
+    def database(self) -> str:
+        """Make a database without tables and return its URL."""
+        return _url_of(self.url, _make_database(self.url))
+
+
 @contextmanager
-def _throwaway_server(binaries: Path) -> Iterator[URL]:
+def _throwaway_server(binaries: Path) -> Iterator[OwnServer]:
     # The path of a socket has to be short, and the server's user has to reach it.
     folder = Path(tempfile.mkdtemp(prefix="featherlog-pg-", dir="/tmp"))
     run = _as_server_user(folder)
@@ -134,8 +158,9 @@ def _throwaway_server(binaries: Path) -> Iterator[URL]:
         options = f"-c listen_addresses='' -k {folder} -c fsync=off -c full_page_writes=off"
         control = (binaries / "pg_ctl", "-D", folder / "data")
         run(*control, "-w", "-s", "-o", options, "-l", folder / "log", "start")
+        restart = partial(run, *control, "-w", "-s", "-m", "immediate", "restart")
         try:
-            yield make_url(f"postgresql://featherlog@/postgres?host={folder}")
+            yield OwnServer(make_url(f"postgresql://featherlog@/postgres?host={folder}"), restart)
         finally:
             run(*control, "-w", "-s", "-m", "immediate", "stop")
     finally:

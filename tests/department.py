@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 from datetime import datetime
+from pathlib import Path
+from tempfile import TemporaryDirectory
 
 import pytest
 from program import SCENARIO
@@ -45,6 +47,17 @@ def build(database: str) -> None:
             prepare(database, SCENARIO / file, by=AUTHOR)
             check(database, key, by=CHECKER)
             approve(database, key, by=PHYSICIAN)
+
+
+def add_course(database: str, key: str) -> None:
+    """Prepare, check and approve one more course, like the thigh's in all but its key."""
+    text = (SCENARIO / DESIGNS[THIGH]).read_text(encoding="utf-8").replace(THIGH, key)
+    with TemporaryDirectory() as folder, practice_time(moment("2026-02-27")):
+        design = Path(folder) / "design.toml"
+        design.write_text(text, encoding="utf-8")
+        prepare(database, design, by=AUTHOR)
+        check(database, key, by=CHECKER)
+        approve(database, key, by=PHYSICIAN)
 
 
 def said(**differs: object) -> Delivery:

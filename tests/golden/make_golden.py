@@ -73,7 +73,7 @@ def _postgresql() -> Iterator[str]:
     if binaries is None:
         sys.exit(conftest.MISSING)
     with conftest._throwaway_server(binaries) as server:
-        yield conftest._url_of(server, conftest._make_database(server))
+        yield server.database()
 
 
 if __name__ == "__main__":
