@@ -7,12 +7,12 @@ from pathlib import Path
 from tempfile import TemporaryDirectory
 
 import pytest
-from program import SCENARIO
+from program import PASSPHRASE, SCENARIO
 
 from featherlog.actions.confirm import ReadBack, confirm
 from featherlog.actions.database import create
 from featherlog.actions.designs import approve, check, prepare
-from featherlog.actions.desk import practice_time
+from featherlog.actions.desk import Signer, practice_time
 from featherlog.actions.machines import add_machine
 from featherlog.actions.record import Delivery, Recorded, record
 from featherlog.actions.staff import add_staff
@@ -37,16 +37,21 @@ def moment(text: str) -> datetime:
     return datetime.fromisoformat(f"{text if 'T' in text else text + 'T09:00:00'}+01:00")
 
 
+def by(name: str) -> Signer:
+    """Return a person who knows the one passphrase of the tests."""
+    return Signer(name, lambda: PASSPHRASE)
+
+
 def build(database: str) -> None:
     create(database, demo=True)
     with practice_time(moment("2026-02-27")):
         for name, role in STAFF.items():
-            add_staff(database, name=name, role=role, by=ADMINISTRATOR)
-        add_machine(database, SCENARIO / "alder.toml", by=AUTHOR)
+            add_staff(database, newcomer=by(name), role=role, by=by(ADMINISTRATOR))
+        add_machine(database, SCENARIO / "alder.toml", by=by(AUTHOR))
         for key, file in DESIGNS.items():
-            prepare(database, SCENARIO / file, by=AUTHOR)
-            check(database, key, by=CHECKER)
-            approve(database, key, by=PHYSICIAN)
+            prepare(database, SCENARIO / file, by=by(AUTHOR))
+            check(database, key, by=by(CHECKER))
+            approve(database, key, by=by(PHYSICIAN), verified_by=by(CHECKER))
 
 
 def add_course(database: str, key: str) -> None:
@@ -55,9 +60,9 @@ def add_course(database: str, key: str) -> None:
     with TemporaryDirectory() as folder, practice_time(moment("2026-02-27")):
         design = Path(folder) / "design.toml"
         design.write_text(text, encoding="utf-8")
-        prepare(database, design, by=AUTHOR)
-        check(database, key, by=CHECKER)
-        approve(database, key, by=PHYSICIAN)
+        prepare(database, design, by=by(AUTHOR))
+        check(database, key, by=by(CHECKER))
+        approve(database, key, by=by(PHYSICIAN), verified_by=by(CHECKER))
 
 
 def said(**differs: object) -> Delivery:
@@ -71,13 +76,13 @@ def confirmed(database: str, key: str, day: str) -> None:
     with practice_time(moment(day)):
         label = today(database, key).position
         read_back = ReadBack(label, None, {})
-        confirm(database, key, by=THERAPIST, verified_by=SECOND, read_back=read_back)
+        confirm(database, key, by=by(THERAPIST), verified_by=by(SECOND), read_back=read_back)
 
 
 def recorded(database: str, key: str, day: str, **differs: object) -> Recorded:
     with practice_time(moment(day)):
         delivery = said(**differs)
-        return record(database, key, by=THERAPIST, verified_by=SECOND, delivery=delivery)
+        return record(database, key, by=by(THERAPIST), verified_by=by(SECOND), delivery=delivery)
 
 
 def treated(database: str, key: str, day: str, **differs: object) -> Recorded:

@@ -2,10 +2,13 @@
 
 from __future__ import annotations
 
+import atexit
 import json
 import os
+import shutil
 import subprocess
 import sys
+import tempfile
 from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
@@ -16,8 +19,37 @@ if TYPE_CHECKING:
     import pytest
 
 SCENARIO = Path(__file__).parents[1] / "featherlog" / "exchange" / "scenario"
+PASSPHRASE = "every bird sings alike"  # noqa: S105 - of all the people of the tests
 PAIR = ("--by", "Ash Plover", "--with", "Maple Teal")
 """The two people who treat."""
+
+
+def _passphrase_file() -> Path:
+    folder = Path(tempfile.mkdtemp(prefix="featherlog-passphrase-"))
+    atexit.register(shutil.rmtree, folder, ignore_errors=True)
+    file = folder / "passphrase"
+    file.touch(mode=0o600)
+    file.write_text(f"{PASSPHRASE}\n", encoding="utf-8")
+    return file
+
+
+PASSPHRASE_FILE = _passphrase_file()
+
+
+def signed(words: tuple[object, ...]) -> list[str]:
+    """Return a command that finds the passphrases of the people it names, unless it names files."""
+    told = [str(word) for word in words]
+    files = {
+        "--passphrase-file": "--by" in told,
+        "--with-passphrase-file": "--with" in told,
+        "--new-passphrase-file": "staff" in told and bool({"add", "replace-key"} & {*told}),
+    }
+    return told + [
+        word
+        for option, needed in files.items()
+        if needed and option not in told
+        for word in (option, str(PASSPHRASE_FILE))
+    ]
 
 
 @dataclass(frozen=True)
@@ -60,7 +92,7 @@ class Program:
     def start(self, *words: object, **more: str) -> Outcome:
         """Run a command in a process of its own."""
         done = subprocess.run(
-            [sys.executable, "-m", "featherlog", *map(str, words)],
+            [sys.executable, "-m", "featherlog", *signed(words)],
             check=False,
             capture_output=True,
             encoding=more.get("PYTHONIOENCODING", "utf-8"),
@@ -91,7 +123,7 @@ class Program:
             for name, text in self.environment().items():
                 patch.setenv(name, text)
             patch.chdir(self.folder)
-            patch.setattr(sys, "argv", ["featherlog", *map(str, words)])
+            patch.setattr(sys, "argv", ["featherlog", *signed(words)])
             try:
                 run()
             except SystemExit as end:

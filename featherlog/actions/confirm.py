@@ -6,15 +6,18 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from featherlog import words
-from featherlog.actions.desk import Desk, signing_desk
+from featherlog.actions.desk import at_desk
+from featherlog.actions.signing import signing_desk
 from featherlog.actions.stored import Stored, load
 from featherlog.actions.today import day_view, stop_reasons
 from featherlog.errors import InputError, RefusedError
+from featherlog.policy import Act
 from featherlog.store.entry import Kind
 
 if TYPE_CHECKING:
     from collections.abc import Iterator, Mapping
 
+    from featherlog.actions.desk import Desk, Signer
     from featherlog.views.day import DayView
 
 
@@ -32,7 +35,7 @@ class ReadBack:
 
 
 def confirm(
-    database: str | None, key: str, *, by: str, verified_by: str, read_back: ReadBack
+    database: str | None, key: str, *, by: Signer, verified_by: Signer, read_back: ReadBack
 ) -> DayView:
     """Confirm the next fraction: two people, the right position, the current sheet.
 
@@ -40,42 +43,27 @@ def confirm(
         RefusedError: a reason to stop, and whom to call.
         InputError: a gap names no junction of the course.
     """
-    with signing_desk(database) as desk:
-        role = two_people(desk, by, verified_by, "confirm a fraction")
-        stored = load(desk, key)
-        view = day_view(desk, stored)
-        reasons = list(_reasons(desk, stored, view, read_back))
-        if reasons:
-            raise RefusedError(f"{'; '.join(reasons)}. {words.STOP_AND_CALL}")
+    with at_desk(database) as desk:
+        _checked(desk, key, read_back)  # before anybody has typed a passphrase for nothing
+    with signing_desk(database, Act.CONFIRM, by, verified_by) as desk:
+        stored, view = _checked(desk, key, read_back)
         desk.append(
             Kind.FRACTION_CONFIRMED,
             {
                 "fraction": view.fraction,
                 "position": view.position,
                 "state_hash": stored.row.state_hash,
-                "performer": by,
-                "verifier": verified_by,
+                "performer": by.name,
+                "verifier": verified_by.name,
                 "gaps": [
                     {"junction": name, "side": side, "gap_cm": gap}
                     for (name, side), gap in measured(stored, read_back.gaps_cm).items()
                 ],
             },
             course=key,
-            who=by,
-            role=role,
             meaning=f"We confirm position {view.position} for fraction {view.fraction}",
         )
     return view
-
-
-def two_people(desk: Desk, by: str, verified_by: str, act: str) -> str:
-    """Return the performer's role, refusing anything but two different qualified people."""
-    roles = (words.THERAPIST, words.PHYSICIST, words.PHYSICIAN)
-    role = desk.role_of(by, act, *roles)
-    desk.role_of(verified_by, f"verify that ({act})", *roles)
-    if by == verified_by:
-        raise RefusedError(f"{by} cannot {act} and verify it; a second person must verify")
-    return role
 
 
 def measured(stored: Stored, gaps_cm: Mapping[str, float]) -> dict[tuple[str, str], float]:
@@ -98,6 +86,15 @@ def measured(stored: Stored, gaps_cm: Mapping[str, float]) -> dict[tuple[str, st
             raise InputError(f"--gap {text!r} names no gap of this course; allowed: {allowed}")
         found[place] = gap
     return found
+
+
+def _checked(desk: Desk, key: str, read_back: ReadBack) -> tuple[Stored, DayView]:
+    stored = load(desk, key)
+    view = day_view(desk, stored)
+    reasons = list(_reasons(desk, stored, view, read_back))
+    if reasons:
+        raise RefusedError(f"{'; '.join(reasons)}. {words.STOP_AND_CALL}")
+    return stored, view
 
 
 def _reasons(desk: Desk, stored: Stored, view: DayView, read_back: ReadBack) -> Iterator[str]:

@@ -11,7 +11,7 @@ from typing import TYPE_CHECKING
 from featherlog.actions import database as databases
 from featherlog.actions.confirm import ReadBack, confirm
 from featherlog.actions.designs import approve, check, prepare
-from featherlog.actions.desk import practice_time
+from featherlog.actions.desk import Signer, practice_time
 from featherlog.actions.dose import dose, write_pictures
 from featherlog.actions.files import write_private
 from featherlog.actions.machines import add_machine
@@ -50,7 +50,10 @@ _BREAST_MISTAKE_ON = "2026-03-05"
 
 @dataclass(frozen=True, slots=True)
 class Demo:
-    """What the demo built, as it stands on its own fixed morning."""
+    """What the demo built, as it stands on its own fixed morning.
+
+    ``passphrases`` are the files of its fictional people, by name.
+    """
 
     folder: Path
     database: Path
@@ -58,6 +61,7 @@ class Demo:
     day: DayView
     dose: DoseView
     files: tuple[Path, ...]
+    passphrases: dict[str, Path]
 
 
 def build_demo(folder: Path, *, prone: bool = False) -> Demo:
@@ -86,17 +90,19 @@ def build_demo(folder: Path, *, prone: bool = False) -> Demo:
             day=today(database, THIGH),
             dose=dose(database, THIGH),
             files=tuple(_papers(folder, database)),
+            passphrases={name: folder / passphrase_file(name) for name, _ in _STAFF},
         )
 
 
 def _build(folder: Path, spine: str) -> None:
-    files = (DEMO_MACHINE, *DEMO_DESIGNS, spine)
+    designs = (DEMO_MACHINE, *DEMO_DESIGNS, spine)
+    files = (*designs, *(passphrase_file(name) for name, _ in _STAFF))
     for name in files:
         if (folder / name).exists():
             raise RefusedError(f"{folder / name} is there already; name another --folder")
     # In a place of its own until it is whole: a run that was stopped leaves nothing half built.
     with TemporaryDirectory(dir=folder) as work:
-        _build_in(Path(work), files)
+        _build_in(Path(work), designs)
         for name in (*files, _DATABASE):
             (Path(work) / name).rename(folder / name)
 
@@ -105,15 +111,17 @@ def _build_in(folder: Path, files: tuple[str, ...]) -> None:
     database = str(folder / _DATABASE)
     for name in files:
         write_private(folder / name, demo_text(name).encode())
+    for name, _ in _STAFF:
+        write_private(folder / passphrase_file(name), f"{_passphrase(name)}\n".encode())
     databases.create(database, demo=True)
     with practice_time(_at("2026-02-27T14:00")):
         for name, role in _STAFF:
-            add_staff(database, name=name, role=role, by=ADMINISTRATOR)
-        add_machine(database, folder / DEMO_MACHINE, by=PHYSICIST)
+            add_staff(database, newcomer=_signer(name), role=role, by=_signer(ADMINISTRATOR))
+        add_machine(database, folder / DEMO_MACHINE, by=_signer(PHYSICIST))
         for name in files[1:]:
-            key, _, _ = prepare(database, folder / name, by=PHYSICIST)
-            check(database, key, by=CHECKER)
-            approve(database, key, by=PHYSICIAN)
+            key, _, _ = prepare(database, folder / name, by=_signer(PHYSICIST))
+            check(database, key, by=_signer(CHECKER))
+            approve(database, key, by=_signer(PHYSICIAN), verified_by=_signer(CHECKER))
     for day in _THIGH_DAYS:
         _treat(database, THIGH, f"{day}T09:00")
         _treat(database, SPINE, f"{day}T09:30")
@@ -128,15 +136,15 @@ def _treat(database: str, key: str, when: str, position: str | None = None) -> N
         confirm(
             database,
             key,
-            by=THERAPIST,
-            verified_by=SECOND_THERAPIST,
+            by=_signer(THERAPIST),
+            verified_by=_signer(SECOND_THERAPIST),
             read_back=ReadBack(planned, None, {}),
         )
         record(
             database,
             key,
-            by=THERAPIST,
-            verified_by=SECOND_THERAPIST,
+            by=_signer(THERAPIST),
+            verified_by=_signer(SECOND_THERAPIST),
             delivery=Delivery(None, position, {}, {}, {}, ""),
         )
 
@@ -152,6 +160,19 @@ def _papers(folder: Path, database: str) -> Iterator[Path]:
     write_private(file, pdf)
     yield file
     yield from write_pictures(dose(database, THIGH), folder / f"{THIGH}-dose.svg")
+
+
+def passphrase_file(name: str) -> str:
+    """Return the name of the file that holds a fictional person's passphrase."""
+    return f"{name.lower().replace(' ', '-')}.passphrase"
+
+
+def _signer(name: str) -> Signer:
+    return Signer(name, lambda: _passphrase(name))
+
+
+def _passphrase(name: str) -> str:
+    return f"{name}, for practice only"
 
 
 def _at(moment: str) -> datetime:

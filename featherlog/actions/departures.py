@@ -4,11 +4,12 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from featherlog import words
-from featherlog.actions.desk import at_desk, signing_desk
+from featherlog.actions.desk import Signer, at_desk
+from featherlog.actions.signing import signing_desk
 from featherlog.actions.stored import departure_lines, load
 from featherlog.actions.typed import required
 from featherlog.errors import NotFoundError
+from featherlog.policy import Act
 from featherlog.store import queries
 from featherlog.store.entry import Kind
 
@@ -23,15 +24,21 @@ def list_departures(database: str | None, key: str) -> tuple[DepartureLine, ...]
         return departure_lines(queries.departures(desk.connection, key))
 
 
-def explain(database: str | None, key: str, number: int, *, by: str, reason: str) -> None:
+def explain(
+    database: str | None,
+    key: str,
+    number: int,
+    *,
+    by: Signer,
+    reason: str,
+    verified_by: Signer | None = None,
+) -> None:
     """Give the reason for an open departure.
 
     Raises InputError without a reason, NotFoundError where there is no such open departure.
     """
     reason = required("--reason", reason, "why the departure happened")
-    with signing_desk(database) as desk:
-        roles = (words.THERAPIST, words.PHYSICIST, words.PHYSICIAN)
-        role = desk.role_of(by, "explain a departure", *roles)
+    with signing_desk(database, Act.EXPLAIN, by, verified_by) as desk:
         load(desk, key)
         rows = queries.departures(desk.connection, key)
         if not any(row.number == number and row.status == "open" for row in rows):
@@ -40,7 +47,5 @@ def explain(database: str | None, key: str, number: int, *, by: str, reason: str
             Kind.DEPARTURE_EXPLAINED,
             {"departure": number, "reason": reason},
             course=key,
-            who=by,
-            role=role,
             meaning="I give the reason for this departure",
         )

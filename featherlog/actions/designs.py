@@ -6,13 +6,13 @@ from typing import TYPE_CHECKING
 
 import msgspec
 
-from featherlog import words
-from featherlog.actions.desk import Desk, signing_desk
 from featherlog.actions.machines import machine_named
+from featherlog.actions.signing import signing_desk
 from featherlog.actions.stored import load_latest
 from featherlog.actions.typed import printable_everywhere, required
 from featherlog.errors import RefusedError
 from featherlog.exchange.design_file import named_machine, read_design
+from featherlog.policy import Act
 from featherlog.sequence.calendar import treatment_days
 from featherlog.sequence.planning import plan_course
 from featherlog.store import queries
@@ -21,21 +21,23 @@ from featherlog.store.entry import Kind, content_hash
 if TYPE_CHECKING:
     from pathlib import Path
 
+    from featherlog.actions.desk import Desk, Signer
     from featherlog.junction.plan import Plan
     from featherlog.store.rows import RevisionRow
 
 _WAITING = ("prepared", "checked")
 
 
-def prepare(database: str | None, file: Path, *, by: str) -> tuple[str, int, Plan]:
+def prepare(
+    database: str | None, file: Path, *, by: Signer, verified_by: Signer | None = None
+) -> tuple[str, int, Plan]:
     """Solve a design file and store it as the course's next revision.
 
     Returns the course's key, the revision's number and the plan. Raises InputError for a faulty
     file and RefusedError where the machine cannot deliver it, another revision waits, or treatment
     has begun.
     """
-    with signing_desk(database) as desk:
-        role = desk.role_of(by, "prepare a design", words.PHYSICIST)
+    with signing_desk(database, Act.PREPARE, by, verified_by) as desk:
         machine = machine_named(desk, named_machine(file))
         course = read_design(file, machine)
         number = _next_revision(desk, course.key)
@@ -57,8 +59,6 @@ def prepare(database: str | None, file: Path, *, by: str) -> tuple[str, int, Pla
                 "content_hash": content_hash(*parts),
             },
             course=course.key,
-            who=by,
-            role=role,
             meaning="I prepared this design",
         )
     return course.key, number, plan
@@ -81,41 +81,35 @@ def _next_revision(desk: Desk, key: str) -> int:
     return row.revision + 1
 
 
-def check(database: str | None, key: str, *, by: str) -> RevisionRow:
+def check(
+    database: str | None, key: str, *, by: Signer, verified_by: Signer | None = None
+) -> RevisionRow:
     """Sign the independent check of the latest revision; its author may not.
 
     Raises RefusedError where it is not waiting for a check, or its author checks it.
     """
-    with signing_desk(database) as desk:
-        role = desk.role_of(by, "check a design", words.PHYSICIST)
+    with signing_desk(database, Act.CHECK, by, verified_by) as desk:
         revision = _latest(desk, key, "prepared", become="checked")
-        if by == revision.prepared_by:
-            raise RefusedError(
-                f"{by} prepared revision {revision.number} of {key}; someone else must check it"
-            )
+        _refuse_author(desk, revision, "check")
         desk.append(
             Kind.DESIGN_CHECKED,
             {"revision": revision.number},
             course=key,
-            who=by,
-            role=role,
             meaning="I checked this design independently",
         )
     return revision
 
 
-def approve(database: str | None, key: str, *, by: str) -> str:
+def approve(
+    database: str | None, key: str, *, by: Signer, verified_by: Signer | None = None
+) -> str:
     """Approve the latest revision, fixing its content; return its revision code.
 
     Raises RefusedError where it was not checked, or its author approves it.
     """
-    with signing_desk(database) as desk:
-        role = desk.role_of(by, "approve a design", words.PHYSICIST, words.PHYSICIAN)
+    with signing_desk(database, Act.APPROVE, by, verified_by) as desk:
         revision = _latest(desk, key, "checked", become="approved")
-        if by == revision.prepared_by:
-            raise RefusedError(
-                f"{by} prepared revision {revision.number} of {key}; someone else must approve it"
-            )
+        _refuse_author(desk, revision, "approve")
         stored = load_latest(desk, key)
         code = f"R{revision.number}-{revision.content_hash[:6].upper()}"
         sequence = stored.course.sequence
@@ -130,31 +124,42 @@ def approve(database: str | None, key: str, *, by: str) -> str:
                 "next_date": next(treatment_days(sequence, first)).isoformat(),
             },
             course=key,
-            who=by,
-            role=role,
             meaning="I approve this design for treatment",
         )
     return code
 
 
-def send_back(database: str | None, key: str, *, by: str, reason: str) -> RevisionRow:
+def send_back(
+    database: str | None,
+    key: str,
+    *,
+    by: Signer,
+    reason: str,
+    verified_by: Signer | None = None,
+) -> RevisionRow:
     """Return the latest revision to its author with a reason.
 
     Raises InputError without a reason and RefusedError where nothing waits.
     """
     reason = required("--reason", reason, "why the design is returned")
-    with signing_desk(database) as desk:
-        role = desk.role_of(by, "return a design", words.PHYSICIST, words.PHYSICIAN)
+    with signing_desk(database, Act.RETURN, by, verified_by) as desk:
         revision = _latest(desk, key, *_WAITING, become="returned")
         desk.append(
             Kind.DESIGN_RETURNED,
             {"revision": revision.number, "reason": reason},
             course=key,
-            who=by,
-            role=role,
             meaning="I return this design to its author",
         )
     return revision
+
+
+def _refuse_author(desk: Desk, revision: RevisionRow, what: str) -> None:
+    author = revision.prepared_by
+    if author in [signatory.who for signatory in desk.signatories]:
+        raise RefusedError(
+            f"{author} prepared revision {revision.number} of {revision.course}; someone else must "
+            f"{what} it"
+        )
 
 
 def _latest(desk: Desk, key: str, *states: str, become: str) -> RevisionRow:

@@ -1,21 +1,25 @@
-"""Where every action begins: the database, the time, and who is acting."""
+"""Where every action begins: the database, the time, the policy, and who is acting."""
 
 from __future__ import annotations
 
 import os
 from contextlib import contextmanager
 from contextvars import ContextVar
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from datetime import datetime
 from typing import TYPE_CHECKING, Any
+from zoneinfo import ZoneInfo
 
-from featherlog.errors import InputError, NotFoundError, RefusedError
+import msgspec
+
+from featherlog.errors import InputError
+from featherlog.policy import DEFAULT_POLICY, Policy
 from featherlog.store import ledger, queries
 from featherlog.store.engine import open_engine, reading, resolve_url, writing
-from featherlog.store.entry import Draft, Entry
+from featherlog.store.entry import Draft, Entry, Signatory
 
 if TYPE_CHECKING:
-    from collections.abc import Iterator
+    from collections.abc import Callable, Iterator
 
     from sqlalchemy import Connection
 
@@ -24,49 +28,48 @@ _practice_time: ContextVar[datetime | None] = ContextVar("practice_time", defaul
 
 
 @dataclass(frozen=True, slots=True)
+class Signer:
+    """A person who is to sign; their passphrase is asked for only once it is needed."""
+
+    name: str
+    passphrase: Callable[[], str] = field(repr=False)
+
+
+@dataclass(frozen=True, slots=True)
 class Desk:
-    """One transaction: its connection, the time it happens and whether it is for practice."""
+    """One transaction: its connection, its time, whether it is for practice, the policy in force.
+
+    ``signatories`` sign every entry that is written here, whoever acts first.
+    """
 
     connection: Connection
     now: datetime
     demo: bool
+    policy: Policy
+    signatories: tuple[Signatory, ...] = ()
 
     @property
     def stamp(self) -> str:
         """Return the time with its offset, to the second (ISO 8601)."""
         return self.now.isoformat(timespec="seconds")
 
-    def role_of(self, name: str, act: str, *allowed: str) -> str:
-        """Return a person's role, refusing strangers and roles that may not do this act.
-
-        Raises:
-            NotFoundError: nobody of that name is on the staff list.
-            RefusedError: their role does not allow the act.
-        """
-        role = queries.staff_role(self.connection, name)
-        if role is None:
-            raise NotFoundError(
-                f"nobody called {name!r} is on the staff list; see `featherlog staff list`"
-            )
-        if role not in allowed:
-            raise RefusedError(
-                f"{name} has the role {role} and may not {act}; allowed: {' or '.join(allowed)}"
-            )
-        return role
-
     def append(
         self,
         kind: str,
         content: dict[str, Any],
         *,
-        who: str,
-        role: str,
         meaning: str,
         course: str | None = None,
+        also: tuple[Signatory, ...] = (),
     ) -> Entry:
-        """Write one ledger entry, with its projections, in this transaction."""
-        draft = Draft(course, kind, who, role, meaning, self.stamp, content)
-        return ledger.append(self.connection, draft)
+        """Write one signed ledger entry, with its projections, in this transaction.
+
+        ``also`` sign after the desk's own signatories.
+        """
+        signatories = (*self.signatories, *also)
+        first = signatories[0]
+        draft = Draft(course, kind, first.who, first.role, meaning, self.stamp, content)
+        return ledger.append(self.connection, draft, signatories)
 
 
 @contextmanager
@@ -77,8 +80,8 @@ def at_desk(database: str | None) -> Iterator[Desk]:
 
 
 @contextmanager
-def signing_desk(database: str | None) -> Iterator[Desk]:
-    """Give a desk that writes: everything it does is one transaction."""
+def writing_desk(database: str | None) -> Iterator[Desk]:
+    """Give a desk that writes, with nobody at it yet: all it does is one transaction."""
     with writing(open_engine(resolve_url(database))) as connection:
         yield _desk(connection)
 
@@ -95,16 +98,24 @@ def practice_time(moment: datetime) -> Iterator[None]:
 
 def _desk(connection: Connection) -> Desk:
     demo = queries.properties(connection).get("demo") == "yes"
-    return Desk(connection, _now(demo=demo), demo)
+    policy = policy_in_force(connection)
+    return Desk(connection, _now(policy.time_zone, demo=demo), demo, policy)
 
 
-def _now(*, demo: bool) -> datetime:
+def policy_in_force(connection: Connection) -> Policy:
+    """Return the department's policy; the built-in one until it has set its own."""
+    row = queries.policy(connection)
+    return msgspec.json.decode(row.content, type=Policy) if row else DEFAULT_POLICY
+
+
+def _now(time_zone: str, *, demo: bool) -> datetime:
+    zone = ZoneInfo(time_zone) if time_zone else None
     fixed = _practice_time.get() or _clock()
     if fixed is None:
-        return datetime.now().astimezone()
+        return datetime.now().astimezone(zone)
     if not demo:
         raise InputError(f"{CLOCK} is set, but only a practice database takes a fixed clock")
-    return fixed
+    return fixed.astimezone(zone) if zone else fixed
 
 
 def _clock() -> datetime | None:

@@ -6,12 +6,13 @@ from typing import TYPE_CHECKING
 
 import msgspec
 
-from featherlog import words
-from featherlog.actions.desk import Desk, at_desk, signing_desk
+from featherlog.actions.desk import Desk, Signer, at_desk
+from featherlog.actions.signing import signing_desk
 from featherlog.actions.typed import printable_everywhere
 from featherlog.errors import NotFoundError
 from featherlog.exchange.machine_file import read_machine
 from featherlog.junction.machine import Machine
+from featherlog.policy import Act
 from featherlog.store import queries
 from featherlog.store.entry import Kind
 
@@ -19,7 +20,9 @@ if TYPE_CHECKING:
     from pathlib import Path
 
 
-def add_machine(database: str | None, file: Path, *, by: str) -> Machine:
+def add_machine(
+    database: str | None, file: Path, *, by: Signer, verified_by: Signer | None = None
+) -> Machine:
     """Add a machine, or replace its description for designs prepared from now on.
 
     Raises InputError for a faulty file and RefusedError unless a physicist does it.
@@ -27,13 +30,10 @@ def add_machine(database: str | None, file: Path, *, by: str) -> Machine:
     machine = read_machine(file)
     content = msgspec.to_builtins(machine)
     printable_everywhere(content)
-    with signing_desk(database) as desk:
-        role = desk.role_of(by, "add a machine", words.PHYSICIST)
+    with signing_desk(database, Act.ADD_MACHINE, by, verified_by) as desk:
         desk.append(
             Kind.MACHINE_ADDED,
             {"machine": content},
-            who=by,
-            role=role,
             meaning=f"I describe machine {machine.name} for the designs that follow",
         )
     return machine

@@ -6,11 +6,12 @@ import math
 from dataclasses import asdict, dataclass
 from typing import TYPE_CHECKING, Any
 
-from featherlog.actions.confirm import measured, two_people
-from featherlog.actions.desk import Desk, signing_desk
+from featherlog.actions.confirm import measured
+from featherlog.actions.signing import signing_desk
 from featherlog.actions.stored import Stored, delivered_beams, load
 from featherlog.actions.typed import printable
 from featherlog.errors import InputError
+from featherlog.policy import Act
 from featherlog.sequence.calendar import next_date
 from featherlog.sequence.departures import (
     Departure,
@@ -35,6 +36,7 @@ from featherlog.store.entry import Kind
 if TYPE_CHECKING:
     from collections.abc import Mapping
 
+    from featherlog.actions.desk import Desk, Signer
     from featherlog.junction.plan import PositionSettings
 
 # What may be written between the check and the record of a fraction without undoing the check.
@@ -76,7 +78,7 @@ class Recorded:
 
 
 def record(
-    database: str | None, key: str, *, by: str, verified_by: str, delivery: Delivery
+    database: str | None, key: str, *, by: Signer, verified_by: Signer, delivery: Delivery
 ) -> Recorded:
     """Record one fraction, or the part of one that was delivered.
 
@@ -86,8 +88,7 @@ def record(
         RefusedError: performer and verifier are not two qualified people.
     """
     reason = printable("--reason", delivery.reason)
-    with signing_desk(database) as desk:
-        role = two_people(desk, by, verified_by, "record a fraction")
+    with signing_desk(database, Act.RECORD, by, verified_by) as desk:
         stored = load(desk, key)
         number = _fraction(stored, delivery.fraction)
         confirmed = _confirmed_position(desk, stored, number)
@@ -116,8 +117,8 @@ def record(
             Kind.FRACTION_RECORDED,
             {
                 "fraction": number,
-                "performer": by,
-                "verifier": verified_by,
+                "performer": by.name,
+                "verifier": verified_by.name,
                 "beams": [_without(asdict(beam), "fraction") for beam in beams],
                 "gaps": [
                     {"junction": name, "side": side, "gap_cm": gap}
@@ -134,8 +135,6 @@ def record(
                 },
             },
             course=key,
-            who=by,
-            role=role,
             meaning=f"We record fraction {number} as delivered",
         )
     return Recorded(

@@ -9,12 +9,15 @@ import typer
 
 from featherlog.cli.options import (
     By,
+    ByFile,
     CourseKey,
     Database,
     Gaps,
     Json,
     Output,
     PaperSize,
+    Second,
+    SecondFile,
     VerifiedBy,
     named_numbers,
     named_texts,
@@ -82,6 +85,8 @@ def confirm(
     course: CourseKey,
     by: By,
     verified_by: VerifiedBy,
+    passphrase_file: ByFile = None,
+    second_file: SecondFile = None,
     position: Annotated[
         str | None,
         typer.Option(
@@ -104,10 +109,12 @@ def confirm(
     """
     from featherlog.actions.confirm import ReadBack
     from featherlog.actions.confirm import confirm as action
+    from featherlog.cli.passphrases import second, signer
     from featherlog.cli.show_day import confirmed_text
 
     read_back = ReadBack(position, page, named_numbers(gap, "--gap", "cm"))
-    view = action(database, course, by=by, verified_by=verified_by, read_back=read_back)
+    performer, verifier = signer(by, passphrase_file), second(verified_by, second_file)
+    view = action(database, course, by=performer, verified_by=verifier, read_back=read_back)
     show_json(view) if json else show(confirmed_text(view))
 
 
@@ -115,6 +122,8 @@ def record(
     course: CourseKey,
     by: By,
     verified_by: VerifiedBy,
+    passphrase_file: ByFile = None,
+    second_file: SecondFile = None,
     fraction: Annotated[
         int | None,
         typer.Option("--fraction", metavar="N", help="The fraction, when not the one due."),
@@ -148,6 +157,7 @@ def record(
     """
     from featherlog.actions.record import Delivery
     from featherlog.actions.record import record as action
+    from featherlog.cli.passphrases import second, signer
 
     delivery = Delivery(
         fraction=fraction,
@@ -157,7 +167,8 @@ def record(
         gaps_cm=named_numbers(gap, "--gap", "cm"),
         reason=reason or "",
     )
-    result = action(database, course, by=by, verified_by=verified_by, delivery=delivery)
+    performer, verifier = signer(by, passphrase_file), second(verified_by, second_file)
+    result = action(database, course, by=performer, verified_by=verifier, delivery=delivery)
     show_json(result) if json else show(_recorded_text(result))
     if delivery.reason and not result.departures:
         remark("Nothing differs from the plan, so the reason was not kept.")
@@ -208,6 +219,9 @@ def explain(
     number: Annotated[int, typer.Argument(metavar="NUMBER", help="The departure's number.")],
     reason: Annotated[str, typer.Option("--reason", metavar="TEXT", help="Why it happened.")],
     by: By,
+    passphrase_file: ByFile = None,
+    second: Second = None,
+    second_file: SecondFile = None,
     database: Database = None,
 ) -> None:
     """Give the reason for an open departure.
@@ -216,8 +230,10 @@ def explain(
     Example: featherlog explain FH-2042 1 --reason "sheet misread" --by "Rowan Finch"
     """
     from featherlog.actions.departures import explain as action
+    from featherlog.cli.passphrases import signers
 
-    action(database, course, number, by=by, reason=reason)
+    people = signers(by, passphrase_file, second, second_file)
+    action(database, course, number, reason=reason, **people)
     show(f"Departure {number} of {course} now has its reason.")
 
 

@@ -9,7 +9,7 @@ from typing import Annotated
 import typer
 
 from featherlog import __version__
-from featherlog.cli import chart_round, console, physicist, setup
+from featherlog.cli import chart_round, console, department, physicist, record_keeping, setup
 from featherlog.cli.output import remark, show, write_any_terminal
 from featherlog.errors import FeatherlogError
 
@@ -22,7 +22,7 @@ app = typer.Typer(
     context_settings={"help_option_names": ["-h", "--help"]},
     epilog="Example: featherlog demo",
 )
-for module in (console, physicist, chart_round, setup):
+for module in (console, physicist, chart_round, record_keeping, department, setup):
     module.register(app)
 
 

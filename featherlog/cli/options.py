@@ -24,6 +24,43 @@ By = Annotated[
 VerifiedBy = Annotated[
     str, typer.Option("--with", metavar="NAME", help="Who verifies it; someone else.")
 ]
+Second = Annotated[
+    str | None,
+    typer.Option(
+        "--with",
+        metavar="NAME",
+        help="Who signs with them; needed where the policy asks two people.",
+        show_default=False,
+    ),
+]
+ByFile = Annotated[
+    Path | None,
+    typer.Option(
+        "--passphrase-file",
+        metavar="FILE",
+        help="Holds the passphrase of --by; without it, it is asked for.",
+        show_default=False,
+    ),
+]
+SecondFile = Annotated[
+    Path | None,
+    typer.Option(
+        "--with-passphrase-file",
+        metavar="FILE",
+        help="Holds the passphrase of --with; without it, it is asked for.",
+        show_default=False,
+    ),
+]
+NewFile = Annotated[
+    Path | None,
+    typer.Option(
+        "--new-passphrase-file",
+        metavar="FILE",
+        help="Holds the passphrase that the new key gets; without it, it is asked for.",
+        show_default=False,
+    ),
+]
+Reason = Annotated[str, typer.Option("--reason", metavar="TEXT", help="Why; it stays on record.")]
 CourseKey = Annotated[str, typer.Argument(metavar="COURSE", help="The course's key.")]
 Depths = Annotated[
     list[float] | None,

@@ -8,17 +8,27 @@ from typing import Annotated
 
 import typer
 
-from featherlog.cli.options import By, CourseKey, Database, Depths, Json
+from featherlog.cli.options import (
+    By,
+    ByFile,
+    CourseKey,
+    Database,
+    Depths,
+    Json,
+    Second,
+    SecondFile,
+)
 from featherlog.cli.output import show, show_json, table, wrapped
 
 DesignFile = Annotated[Path, typer.Argument(metavar="DESIGN", help="A design file (TOML).")]
 
 
 class TemplateKind(StrEnum):
-    """The two kinds of file."""
+    """The three kinds of file."""
 
     DESIGN = "design"
     MACHINE = "machine"
+    POLICY = "policy"
 
 
 course_app = typer.Typer(
@@ -32,7 +42,7 @@ course_app = typer.Typer(
 def template(
     kind: Annotated[TemplateKind, typer.Argument(help="Which file to write.")],
 ) -> None:
-    """Print a commented design or machine file to fill in.
+    """Print a commented design, machine or policy file to fill in.
 
     \b
     Example: featherlog template design > thigh.toml
@@ -63,15 +73,24 @@ def solve(
 
 
 @course_app.command()
-def prepare(design: DesignFile, by: By, database: Database = None) -> None:
+def prepare(
+    design: DesignFile,
+    by: By,
+    passphrase_file: ByFile = None,
+    second: Second = None,
+    second_file: SecondFile = None,
+    database: Database = None,
+) -> None:
     """Solve a design file and store it as the course's next revision.
 
     \b
     Example: featherlog course prepare thigh.toml --by "Rowan Finch"
     """
     from featherlog.actions.designs import prepare as action
+    from featherlog.cli.passphrases import signers
 
-    key, number, plan = action(database, design, by=by)
+    people = signers(by, passphrase_file, second, second_file)
+    key, number, plan = action(database, design, **people)
     show(f"Prepared revision {number} of course {key}. Next: someone else checks it with")
     show(f"  featherlog course check {key} --by NAME")
     for warning in plan.warnings:
@@ -79,28 +98,46 @@ def prepare(design: DesignFile, by: By, database: Database = None) -> None:
 
 
 @course_app.command()
-def check(course: CourseKey, by: By, database: Database = None) -> None:
+def check(
+    course: CourseKey,
+    by: By,
+    passphrase_file: ByFile = None,
+    second: Second = None,
+    second_file: SecondFile = None,
+    database: Database = None,
+) -> None:
     """Sign the independent check; the author may not.
 
     \b
     Example: featherlog course check FH-2041 --by "Linden Wren"
     """
     from featherlog.actions.designs import check as action
+    from featherlog.cli.passphrases import signers
 
-    revision = action(database, course, by=by)
+    people = signers(by, passphrase_file, second, second_file)
+    revision = action(database, course, **people)
     show(f"Checked revision {revision.number} of course {course}. Next: approve or return it.")
 
 
 @course_app.command()
-def approve(course: CourseKey, by: By, database: Database = None) -> None:
+def approve(
+    course: CourseKey,
+    by: By,
+    passphrase_file: ByFile = None,
+    second: Second = None,
+    second_file: SecondFile = None,
+    database: Database = None,
+) -> None:
     """Approve a checked design for treatment; its content is then fixed.
 
     \b
-    Example: featherlog course approve FH-2041 --by "Aspen Crane"
+    Example: featherlog course approve FH-2041 --by "Aspen Crane" --with "Linden Wren"
     """
     from featherlog.actions.designs import approve as action
+    from featherlog.cli.passphrases import signers
 
-    show(f"Approved course {course}, revision {action(database, course, by=by)}.")
+    people = signers(by, passphrase_file, second, second_file)
+    show(f"Approved course {course}, revision {action(database, course, **people)}.")
 
 
 @course_app.command("return")
@@ -108,6 +145,9 @@ def send_back(
     course: CourseKey,
     reason: Annotated[str, typer.Option("--reason", metavar="TEXT", help="Why it goes back.")],
     by: By,
+    passphrase_file: ByFile = None,
+    second: Second = None,
+    second_file: SecondFile = None,
     database: Database = None,
 ) -> None:
     """Return a design to its author with a reason.
@@ -116,8 +156,10 @@ def send_back(
     Example: featherlog course return FH-2041 --reason "gap too wide" --by "Linden Wren"
     """
     from featherlog.actions.designs import send_back as action
+    from featherlog.cli.passphrases import signers
 
-    revision = action(database, course, by=by, reason=reason)
+    people = signers(by, passphrase_file, second, second_file)
+    revision = action(database, course, reason=reason, **people)
     show(f"Returned revision {revision.number} of course {course} to {revision.prepared_by}.")
 
 

@@ -1,4 +1,4 @@
-"""Setting the department up: database, staff, machines, and the demo."""
+"""Setting the program up: database, machines, and the demo."""
 
 from __future__ import annotations
 
@@ -8,7 +8,7 @@ from typing import Annotated
 import typer
 
 from featherlog.cli import operations
-from featherlog.cli.options import By, Database, Json
+from featherlog.cli.options import By, ByFile, Database, Json, Second, SecondFile
 from featherlog.cli.output import show, show_json, table
 
 database_app = typer.Typer(
@@ -16,12 +16,6 @@ database_app = typer.Typer(
     no_args_is_help=True,
     rich_markup_mode=None,
     epilog="Example: featherlog database status",
-)
-staff_app = typer.Typer(
-    help="Keep the staff list.",
-    no_args_is_help=True,
-    rich_markup_mode=None,
-    epilog="Example: featherlog staff list",
 )
 machine_app = typer.Typer(
     help="Keep the machines.",
@@ -102,50 +96,13 @@ def status(json: Json = False, database: Database = None) -> None:
         raise IntegrityError(found.first_fault)
 
 
-@staff_app.command("add")
-def add_staff(
-    name: Annotated[str, typer.Argument(metavar="NAME", help="The person's name.")],
-    role: Annotated[
-        str,
-        typer.Option(
-            "--role", metavar="ROLE", help="physicist, therapist, physician or administrator."
-        ),
-    ],
-    by: By,
-    database: Database = None,
-) -> None:
-    """Put a person on the staff list; the first is an administrator who adds themselves.
-
-    \b
-    Example: featherlog staff add "Ash Plover" --role therapist --by "Hazel Heron"
-    """
-    from featherlog.actions.staff import add_staff as action
-
-    action(database, name=name, role=role, by=by)
-    show(f"{name} is on the staff list as {role}.")
-
-
-@staff_app.command("list")
-def list_staff(json: Json = False, database: Database = None) -> None:
-    """List everyone and their role.
-
-    \b
-    Example: featherlog staff list
-    """
-    from featherlog.actions.staff import list_staff as action
-
-    people = action(database)
-    if json:
-        show_json(people)
-    else:
-        rows = [(person.name, person.role) for person in people]
-        show(table(("name", "role"), rows) if rows else "Nobody yet.")
-
-
 @machine_app.command("add")
 def add_machine(
     file: Annotated[Path, typer.Argument(metavar="FILE", help="A machine file (TOML).")],
     by: By,
+    passphrase_file: ByFile = None,
+    second: Second = None,
+    second_file: SecondFile = None,
     database: Database = None,
 ) -> None:
     """Add a machine from its file, or replace its description for later designs.
@@ -154,8 +111,10 @@ def add_machine(
     Example: featherlog machine add alder.toml --by "Rowan Finch"
     """
     from featherlog.actions.machines import add_machine as action
+    from featherlog.cli.passphrases import signers
 
-    show(f"Machine {action(database, file, by=by).name} is known.")
+    people = signers(by, passphrase_file, second, second_file)
+    show(f"Machine {action(database, file, **people).name} is known.")
 
 
 @machine_app.command("list")
@@ -183,5 +142,4 @@ def register(app: typer.Typer) -> None:
     app.command()(demo)
     operations.register(database_app)
     app.add_typer(database_app, name="database")
-    app.add_typer(staff_app, name="staff")
     app.add_typer(machine_app, name="machine")

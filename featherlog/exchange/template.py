@@ -1,4 +1,4 @@
-"""The commented templates of the two file formats, ready to be copied and filled in."""
+"""The commented templates of the three file formats, ready to be copied and filled in."""
 
 from __future__ import annotations
 
@@ -11,3 +11,6 @@ DESIGN_TEMPLATE = (_TEMPLATES / "design.toml").read_text(encoding="utf-8")
 
 MACHINE_TEMPLATE = (_TEMPLATES / "machine.toml").read_text(encoding="utf-8")
 """A machine file that explains each key; it reads as it is."""
+
+POLICY_TEMPLATE = (_TEMPLATES / "policy.toml").read_text(encoding="utf-8")
+"""A policy file that explains each key; it reads as it is."""

@@ -1,13 +1,17 @@
-"""What the ledger is made of: drafts, entries, their kinds, and the text their hash is taken of."""
+"""What the ledger is made of: drafts, entries, their kinds, hashes and signatures."""
 
 from __future__ import annotations
 
+import json
 from dataclasses import asdict, dataclass
 from enum import StrEnum
 from hashlib import sha256
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import rfc8785
+
+if TYPE_CHECKING:
+    from collections.abc import Callable
 
 FIRST_HASH = "0" * 64
 """What the first entry names as the hash before it."""
@@ -25,6 +29,11 @@ class Kind(StrEnum):
     FRACTION_CONFIRMED = "fraction confirmed"
     FRACTION_RECORDED = "fraction recorded"
     DEPARTURE_EXPLAINED = "departure explained"
+    KEY_REPLACED = "key replaced"
+    STAFF_LEFT = "staff left"
+    ADMINISTRATOR_RESTORED = "administrator restored"
+    SIGNING_FAILED = "signing failed"
+    POLICY_SET = "policy set"
 
 
 @dataclass(frozen=True, slots=True)
@@ -59,6 +68,27 @@ class Entry:
     text: str
     previous_hash: str
     hash: str
+    signatures: str = "[]"
+
+
+@dataclass(frozen=True, slots=True)
+class Signature:
+    """Who signed an entry in which role, with the public half of which key (base64)."""
+
+    who: str
+    role: str
+    key: str
+    signature: str
+
+
+@dataclass(frozen=True, slots=True)
+class Signatory:
+    """A person who is about to sign: ``sign`` gives the signature of a text, base64."""
+
+    who: str
+    role: str
+    key: str
+    sign: Callable[[str], str]
 
 
 def canonical(value: object) -> str:
@@ -77,7 +107,38 @@ def content_hash(design: object, plan: object, machine: object) -> str:
 
 
 def hash_of(entry: Entry) -> str:
-    """Return the hash that ``entry`` should bear: over every field but the hash itself."""
+    """Return the hash that ``entry`` should bear: over every field but hash and signatures."""
     fields = asdict(entry) | {"content": entry.text}
-    del fields["text"], fields["hash"]
+    del fields["text"], fields["hash"], fields["signatures"]
     return fingerprint(fields)
+
+
+def text_to_sign(entry_hash: str) -> str:
+    """Return what a signature is made over: it can be taken for nothing but a ledger entry's."""
+    return f"featherlog ledger entry 1\n{entry_hash}"
+
+
+def sign_all(entry_hash: str, signatories: tuple[Signatory, ...]) -> str:
+    """Return the signatures of everyone who signs, as they are stored: canonical JSON."""
+    text = text_to_sign(entry_hash)
+    return canonical(
+        [
+            {"who": one.who, "role": one.role, "key": one.key, "signature": one.sign(text)}
+            for one in signatories
+        ]
+    )
+
+
+def read_signatures(text: str) -> tuple[Signature, ...] | None:
+    """Return stored signatures; None where the text is not as ``sign_all`` writes it."""
+    try:
+        found = json.loads(text)
+        signatures = tuple(Signature(**one) for one in found)
+    except (ValueError, TypeError):
+        return None
+    return signatures if canonical(found) == text else None
+
+
+def signed_by(entry: Entry) -> tuple[str, ...]:
+    """Return the people whose signatures the entry says it bears; its hash covers them."""
+    return tuple(entry.content.get("signed_by", ()))

@@ -11,9 +11,9 @@ from typing import TYPE_CHECKING
 from sqlalchemy import delete, exc, insert, update
 
 from featherlog.errors import IntegrityError
-from featherlog.store import projecting_delivery, projecting_designs
+from featherlog.store import projecting_delivery, projecting_designs, projecting_staff
 from featherlog.store.entry import Kind, canonical
-from featherlog.store.tables import PROJECTIONS, machine, staff
+from featherlog.store.tables import PROJECTIONS, machine
 
 if TYPE_CHECKING:
     from collections.abc import Callable
@@ -37,6 +37,7 @@ def apply(connection: Connection, entry: Entry) -> None:
         )
     try:
         project(connection, entry)
+        projecting_staff.signed(connection, entry)
     except KeyError as missing:
         raise IntegrityError(
             f"Ledger entry {entry.number} ({entry.kind}) lacks {missing} in its content."
@@ -54,13 +55,6 @@ def empty(connection: Connection) -> None:
         connection.execute(delete(table))
 
 
-def _staff_added(connection: Connection, entry: Entry) -> None:
-    values = {"role": entry.content["role"], "entry": entry.number}
-    known = update(staff).where(staff.c.name == entry.content["name"]).values(values)
-    if connection.execute(known).rowcount == 0:
-        connection.execute(insert(staff).values(name=entry.content["name"], **values))
-
-
 def _machine_added(connection: Connection, entry: Entry) -> None:
     described = entry.content["machine"]
     values = {"content": canonical(described), "entry": entry.number}
@@ -70,7 +64,12 @@ def _machine_added(connection: Connection, entry: Entry) -> None:
 
 
 _PROJECTORS: dict[str, Callable[[Connection, Entry], None]] = {
-    Kind.STAFF_ADDED: _staff_added,
+    Kind.STAFF_ADDED: projecting_staff.added,
+    Kind.KEY_REPLACED: projecting_staff.key_replaced,
+    Kind.STAFF_LEFT: projecting_staff.left,
+    Kind.ADMINISTRATOR_RESTORED: projecting_staff.added,
+    Kind.SIGNING_FAILED: projecting_staff.signing_failed,
+    Kind.POLICY_SET: projecting_staff.policy_set,
     Kind.MACHINE_ADDED: _machine_added,
     Kind.DESIGN_PREPARED: projecting_designs.prepared,
     Kind.DESIGN_CHECKED: projecting_designs.checked,

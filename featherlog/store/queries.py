@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Any, TypeVar
 
-from sqlalchemy import and_, select
+from sqlalchemy import and_, func, select
 
 from featherlog.store import tables
 from featherlog.store.rows import (
@@ -14,7 +14,9 @@ from featherlog.store.rows import (
     DepartureRow,
     MachineRow,
     ObservationRow,
+    PolicyRow,
     RevisionRow,
+    StaffKeyRow,
     StaffRow,
     Treatment,
 )
@@ -32,10 +34,35 @@ def staff(connection: Connection) -> tuple[StaffRow, ...]:
     return _all(connection, StaffRow, select(tables.staff).order_by(tables.staff.c.name))
 
 
-def staff_role(connection: Connection, name: str) -> str | None:
-    """Return the person's role; None for a stranger."""
-    query = select(tables.staff.c.role).where(tables.staff.c.name == name)
-    return connection.execute(query).scalar()
+def person(connection: Connection, name: str) -> StaffRow | None:
+    """Return one person; None for a stranger."""
+    return _first(connection, StaffRow, select(tables.staff).where(tables.staff.c.name == name))
+
+
+def staff_keys(connection: Connection) -> tuple[StaffKeyRow, ...]:
+    """Return every key there ever was, in the order they were made known."""
+    query = select(tables.staff_key).order_by(tables.staff_key.c.from_entry)
+    return _all(connection, StaffKeyRow, query)
+
+
+def present_key(connection: Connection, name: str) -> StaffKeyRow | None:
+    """Return the key a person signs with now; None where there is none."""
+    key = tables.staff_key.c
+    query = select(tables.staff_key).where(key.name == name, key.to_entry.is_(None))
+    return _first(connection, StaffKeyRow, query)
+
+
+def failed_signings(connection: Connection, name: str) -> int:
+    """Return how many wrong passphrases a person's name has had since it last signed."""
+    failed = tables.failed_signing
+    query = select(func.count()).select_from(failed).where(failed.c.name == name)
+    return connection.execute(query).scalar_one()
+
+
+def policy(connection: Connection) -> PolicyRow | None:
+    """Return the policy in force; None until a department sets one."""
+    query = select(tables.policy).order_by(tables.policy.c.version.desc()).limit(1)
+    return _first(connection, PolicyRow, query)
 
 
 def machines(connection: Connection) -> tuple[MachineRow, ...]:

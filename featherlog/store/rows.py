@@ -7,10 +7,42 @@ from dataclasses import dataclass
 
 @dataclass(frozen=True, slots=True)
 class StaffRow:
-    """A person and the role that says what they may sign."""
+    """A person and the role that says what they may sign; ``left_entry`` where they have left."""
 
     name: str
     role: str
+    entry: int
+    left_entry: int | None
+
+
+@dataclass(frozen=True, slots=True)
+class StaffKeyRow:
+    """A person's key, good for the entries from ``from_entry`` to ``to_entry`` (None: until now).
+
+    ``wrapped`` is the key as its owner's passphrase locks it, canonical JSON.
+    """
+
+    public: str
+    name: str
+    wrapped: str
+    from_entry: int
+    to_entry: int | None
+
+
+@dataclass(frozen=True, slots=True)
+class FailedSigningRow:
+    """A wrong passphrase since the person last signed."""
+
+    entry: int
+    name: str
+
+
+@dataclass(frozen=True, slots=True)
+class PolicyRow:
+    """One version of the department's policy, canonical JSON."""
+
+    version: int
+    content: str
     entry: int
 
 

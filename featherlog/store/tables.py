@@ -71,6 +71,7 @@ ledger_entry = Table(
     _text("content"),
     _text("previous_hash"),
     _text("hash"),
+    Column("signatures", Text, nullable=False, server_default="[]"),
     UniqueConstraint("hash"),
     CheckConstraint("number >= 1", name="number"),
     CheckConstraint("kind <> ''", name="kind"),
@@ -91,6 +92,29 @@ staff = Table(
     metadata,
     Column("name", Text, primary_key=True),
     _text("role"),
+    _entry(),
+    Column("left_entry", ForeignKey("ledger_entry.number")),
+)
+
+# A key is good for the entries from the one that made it known to the one that ended it.
+staff_key = Table(
+    "staff_key",
+    metadata,
+    Column("public", Text, primary_key=True),
+    Column("name", Text, ForeignKey("staff.name"), nullable=False, index=True),
+    _text("wrapped"),
+    _entry("from_entry"),
+    Column("to_entry", ForeignKey("ledger_entry.number")),
+)
+
+# Wrong passphrases since the person last signed.
+failed_signing = Table("failed_signing", metadata, _entry(key=True), _text("name"))
+
+policy = Table(
+    "policy",
+    metadata,
+    Column("version", Integer, primary_key=True, autoincrement=False),
+    _text("content"),
     _entry(),
 )
 

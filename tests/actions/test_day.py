@@ -14,6 +14,7 @@ from department import (
     SECOND,
     THERAPIST,
     THIGH,
+    by,
     confirmed,
     moment,
     recorded,
@@ -68,7 +69,7 @@ class TestPageCode:
     def test_it_changes_with_the_departures_that_the_sheet_shows(self, department: Program) -> None:
         treated(department.database, THIGH, "2026-03-02", position="B")
         code = _view(department, THIGH).page_code
-        explain(department.database, THIGH, 1, by=AUTHOR, reason="label misread")
+        explain(department.database, THIGH, 1, by=by(AUTHOR), reason="label misread")
         view = _view(department, THIGH)
         assert (view.page_code != code, view.open_departures) == (True, ())
 

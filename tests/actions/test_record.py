@@ -13,6 +13,7 @@ from department import (
     SECOND,
     THERAPIST,
     THIGH,
+    by,
     confirmed,
     moment,
     recorded,
@@ -101,7 +102,7 @@ def test_treatment_before_approval_is_recorded(department: Program) -> None:
     text = (SCENARIO / "breast.toml").read_text(encoding="utf-8")
     design = department.folder / "early.toml"
     design.write_text(text.replace("FH-2042", "FH-2044"), encoding="utf-8")
-    prepare(department.database, design, by=AUTHOR)
+    prepare(department.database, design, by=by(AUTHOR))
     done = recorded(department.database, "FH-2044", "2026-03-04", position="A")
     assert ("not approved", "for review") in _kinds(done)
     assert today(department.database, "FH-2044").status == "stop"
@@ -136,7 +137,7 @@ def test_a_reason_closes_what_it_was_given_for(department: Program) -> None:
 def test_a_reason_can_follow(department: Program) -> None:
     done = treated(department.database, THIGH, "2026-03-02", position="B")
     assert not done.explained
-    explain(department.database, THIGH, 1, by=PHYSICIAN, reason="label misread")
+    explain(department.database, THIGH, 1, by=by(PHYSICIAN), reason="label misread")
     assert [line.reason for line in list_departures(department.database, THIGH)] == [
         "label misread"
     ]
@@ -157,7 +158,11 @@ def test_the_worst_comes_first_in_the_review(department: Program) -> None:
 def test_a_physicist_may_treat_with_a_therapist(department: Program) -> None:
     with practice_time(moment("2026-03-02")):
         done = record(
-            department.database, THIGH, by=AUTHOR, verified_by=SECOND, delivery=said(position="A")
+            department.database,
+            THIGH,
+            by=by(AUTHOR),
+            verified_by=by(SECOND),
+            delivery=said(position="A"),
         )
     assert done.fraction == 1
     assert review(department.database, THIGH).grid[0].performer == AUTHOR != THERAPIST
@@ -168,10 +173,10 @@ def test_two_fractions_a_day(department: Program) -> None:
     design = department.folder / "twice.toml"
     text = text.replace("fractions_a_day = 1", "fractions_a_day = 2").replace("FH-2042", "FH-2045")
     design.write_text(text, encoding="utf-8")
-    prepare(department.database, design, by=AUTHOR)
-    check(department.database, "FH-2045", by=CHECKER)
+    prepare(department.database, design, by=by(AUTHOR))
+    check(department.database, "FH-2045", by=by(CHECKER))
     with practice_time(moment("2026-03-04")):
-        approve(department.database, "FH-2045", by=PHYSICIAN)
+        approve(department.database, "FH-2045", by=by(PHYSICIAN), verified_by=by(CHECKER))
     dates = [
         treated(department.database, "FH-2045", day).next_date
         for day in ("2026-03-12T08:00:00", "2026-03-12T15:00:00", "2026-03-16T08:00:00")

@@ -14,7 +14,7 @@ from typing import TYPE_CHECKING
 import pytest
 import typer
 from department import BREAST, THIGH, treated
-from program import PAIR, SCENARIO, Program
+from program import PAIR, SCENARIO, Program, signed
 
 from featherlog.cli.main import app
 from featherlog.errors import EXIT_CODES
@@ -38,6 +38,10 @@ READING = [
     ("machine", "list"),
     ("staff", "list"),
     ("database", "status"),
+    ("policy", "show"),
+    ("ledger", "list"),
+    ("ledger", "head"),
+    ("ledger", "verify"),
     ("database", "health"),
     ("solve", str(SCENARIO / "thigh.toml"), "--machine", str(SCENARIO / "alder.toml")),
 ]
@@ -117,12 +121,15 @@ def test_json_is_read_back_and_holds_the_caution(
     done = department.here(monkeypatch, capsys, *words, "--json")
     found = json.loads(done.out)
     assert (done.code, done.err) == (0, "")
-    shows_settings = words[0] in ("today", "review", "dose", "solve") or "show" in words
+    shows_settings = words[0] in ("today", "review", "dose", "solve") or words[:2] == (
+        "course",
+        "show",
+    )
     if shows_settings:
         assert found["caution"].startswith(CAUTION)
         plain = department.here(monkeypatch, capsys, *words).out
         assert CAUTION in " ".join(plain.split())
-    if words[0] in ("dose", "review", "solve") or "show" in words:
+    if words[0] in ("dose", "review", "solve") or words[:2] == ("course", "show"):
         assert found.get("dose", found)["caution"] == f"{CAUTION} {DOSE_CAUTION}"
 
 
@@ -217,7 +224,7 @@ def _start_into(
     department: Program, output: int, *words: str
 ) -> subprocess.CompletedProcess[bytes]:
     return subprocess.run(
-        [sys.executable, "-m", "featherlog", *words],
+        [sys.executable, "-m", "featherlog", *signed(words)],
         check=False,
         stdout=output,
         stderr=subprocess.PIPE,

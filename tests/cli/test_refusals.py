@@ -124,7 +124,8 @@ def test_the_remainder_of_a_broken_fraction_is_locked_to_its_position(refuses: R
 def test_a_design_goes_from_hand_to_hand(refuses: Refuses) -> None:
     """A second revision: only in order, never by its author alone."""
     by = {name: ("--by", name) for name in (AUTHOR, CHECKER, PHYSICIAN)}
-    approve, check = ("course", "approve", THIGH), ("course", "check", THIGH)
+    approve = ("course", "approve", THIGH, "--with", CHECKER)
+    check = ("course", "check", THIGH)
     prepare = ("course", "prepare", str(SCENARIO / "thigh.toml"), *by[AUTHOR])
     assert refuses.run(*prepare).code == 0
     unchecked = "revision 2 of FH-2041 is prepared; only one that is checked can be approved"
@@ -138,6 +139,11 @@ def test_a_design_goes_from_hand_to_hand(refuses: Refuses) -> None:
     refuses(Case(prepare, REFUSED, waits))
     assert refuses.run(*check, *by[CHECKER]).code == 0
     refuses(Case((*approve, *by[AUTHOR]), REFUSED, own.format("approve")))
+    alone = (
+        "two people must sign to approve a design, as the department's policy says; name the "
+        "second with --with"
+    )
+    refuses(Case(("course", "approve", THIGH, *by[PHYSICIAN]), REFUSED, alone))
     refuses(Case(prepare, REFUSED, waits.replace("prepared and", "checked and")))
     assert refuses.run(*approve, *by[PHYSICIAN]).code == 0
 
@@ -204,7 +210,7 @@ def test_in_a_process_of_its_own(practice: Program) -> None:
         (stranger, REFUSED, empty),
         (first, 0, ""),
         (stranger, NOT_FOUND, STRANGER.format("Elm Rook")),
-        (("confirm", "FH-9", *PAIR), NOT_FOUND, STRANGER.format("Ash Plover")),
+        (("confirm", "FH-9", *PAIR), NOT_FOUND, NO_COURSE),
         (("today", "FH-9"), NOT_FOUND, NO_COURSE),
         (
             ("record", "FH-9", *PAIR, "--gap", "x"),

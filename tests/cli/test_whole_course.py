@@ -105,7 +105,7 @@ def _approved(program: Program, life: Life) -> Clinic:
     assert before["status"] == "stop"
     assert before["stop_reasons"] == ["revision 1 of this design is prepared, not approved"]
     program.must("course", "check", life.key, "--by", CHECKER)
-    program.must("course", "approve", life.key, "--by", PHYSICIAN)
+    program.must("course", "approve", life.key, "--by", PHYSICIAN, "--with", CHECKER)
     return Clinic(program, life)
 
 

@@ -26,6 +26,30 @@ def staff(name: str = "Rowan Finch", role: str = "physicist") -> Draft:
     return draft(Kind.STAFF_ADDED, {"name": name, "role": role}, course=None)
 
 
+def key(name: str = "Rowan Finch", letter: str = "A", **more: object) -> Draft:
+    """Return an entry that gives a person a key; the store does not look into keys."""
+    content = {"name": name, "key": {"public": letter * 43 + "="}, "reason": "forgotten"}
+    return draft(Kind.KEY_REPLACED, content | more, course=None)
+
+
+def left(name: str = "Rowan Finch") -> Draft:
+    return draft(Kind.STAFF_LEFT, {"name": name, "reason": "moved away"}, course=None)
+
+
+def restored(name: str = "Hazel Heron", letter: str = "C") -> Draft:
+    content = key(name, letter).content | {"role": "administrator"}
+    return draft(Kind.ADMINISTRATOR_RESTORED, content, course=None)
+
+
+def signing_failed(name: str = "Rowan Finch") -> Draft:
+    return draft(Kind.SIGNING_FAILED, {"name": name, "act": "check a design"}, course=None)
+
+
+def policy(version: int = 1) -> Draft:
+    content = {"version": version, "policy": {"department": "Fernhollow"}}
+    return draft(Kind.POLICY_SET, content, course=None)
+
+
 def machine(**changes: object) -> Draft:
     return draft(Kind.MACHINE_ADDED, {"machine": MACHINE | changes}, course=None)
 
@@ -133,4 +157,10 @@ def whole_story() -> list[Draft]:
         prepared(3, fractions=15),
         approved(3, fraction=2, position="B"),
         recorded(2, next_fraction=None, next_position=None, next_date=None, complete=True),
+        key(),
+        key(letter="B"),
+        left(),
+        restored(),
+        signing_failed(),
+        policy(),
     ]

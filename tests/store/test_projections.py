@@ -64,8 +64,10 @@ def test_a_later_machine_or_role_takes_the_place_of_the_earlier(database_url: st
     )
     with reading(open_engine(database_url)) as connection:
         assert [(row.name, row.entry) for row in queries.staff(connection)] == [("Rowan Finch", 2)]
-        assert queries.staff_role(connection, "Rowan Finch") == "administrator"
-        assert queries.staff_role(connection, "Ash Plover") is None
+        found = queries.person(connection, "Rowan Finch")
+        assert found is not None
+        assert (found.role, found.left_entry) == ("administrator", None)
+        assert queries.person(connection, "Ash Plover") is None
         assert [(row.name, row.entry) for row in queries.machines(connection)] == [("Alder", 4)]
         assert queries.machine_content(connection, "Alder") == '{"couch_deg":10,"name":"Alder"}'
 

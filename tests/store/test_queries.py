@@ -20,6 +20,9 @@ if TYPE_CHECKING:
     ("table", "record"),
     [
         (tables.staff, rows.StaffRow),
+        (tables.staff_key, rows.StaffKeyRow),
+        (tables.failed_signing, rows.FailedSigningRow),
+        (tables.policy, rows.PolicyRow),
         (tables.machine, rows.MachineRow),
         (tables.course, rows.CourseRow),
         (tables.revision, rows.RevisionRow),

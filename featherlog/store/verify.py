@@ -1,0 +1,205 @@
+"""The whole ledger looked at again, and what the projections should be: the first fault is named.
+
+For each entry, in order: its place and hash in the chain, its signatures, who signed it, what it
+follows. Then the projections are made anew in a database of their own in memory, and compared.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from itertools import zip_longest
+from typing import TYPE_CHECKING, Any
+
+from sqlalchemy import Text, create_engine, func, insert, select
+
+from featherlog.errors import IntegrityError
+from featherlog.signing.keys import verify as holds
+from featherlog.store import projection
+from featherlog.store.authority import People
+from featherlog.store.entry import FIRST_HASH, Kind, read_signatures, signed_by, text_to_sign
+from featherlog.store.ledger import chain_fault, entries, row_of
+from featherlog.store.order import Courses
+from featherlog.store.tables import PROJECTIONS, ledger_entry, metadata
+
+if TYPE_CHECKING:
+    from collections.abc import Callable, Iterator
+
+    from sqlalchemy import Connection, Row, Table
+
+    from featherlog.store.entry import Entry, Signature
+
+# Kinds whose projectors read the ledger again: these alone are copied beside the projections.
+_READ_AGAIN = frozenset({Kind.DESIGN_PREPARED})
+_REPORT_EVERY = 1000
+
+
+@dataclass(frozen=True, slots=True)
+class Verified:
+    """What a walk over the whole ledger found; ``fault`` is empty where everything fits.
+
+    ``fault_entry`` is the number of the first entry that does not fit, None where there is none or
+    where entries are missing at the end. ``signatures`` counts those that hold.
+    """
+
+    entries: int
+    signatures: int
+    head: str
+    fault_entry: int | None
+    fault: str
+
+
+@dataclass(frozen=True, slots=True)
+class Head:
+    """A head noted earlier, from a page or an export: a number and how the hash began."""
+
+    number: int
+    hash_start: str
+
+
+def verify(
+    connection: Connection,
+    earlier: Head | None = None,
+    progress: Callable[[int, int], None] = lambda _done, _total: None,
+) -> Verified:
+    """Look at every entry and every projection.
+
+    Args:
+        connection: from ``reading``, so that all of it is seen at one moment.
+        earlier: a head that must be part of this ledger; tells a tail that was cut off.
+        progress: called now and then with the entries done and the entries there are.
+    """
+    scratch = create_engine("sqlite://")
+    metadata.create_all(scratch)
+    with scratch.begin() as anew:
+        walk = _Walk(anew, earlier)
+        total = connection.execute(select(func.count()).select_from(ledger_entry)).scalar_one()
+        for number, entry in enumerate(entries(connection), start=1):
+            fault = walk.fault(entry, number)
+            if fault is not None:
+                return walk.found(number, fault)
+            if number % _REPORT_EVERY == 0:
+                progress(number, total)
+        cut = walk.cut_tail()
+        if cut is not None:
+            return walk.found(None, cut)
+        differs = _projection_fault(connection, anew)
+        return walk.found(*differs) if differs else walk.found(None, "")
+
+
+class _Walk:
+    """What is known after the entries walked over so far."""
+
+    def __init__(self, anew: Connection, earlier: Head | None) -> None:
+        self._anew = anew
+        self._earlier = earlier
+        self._people, self._courses = People(), Courses()
+        self._number, self._hash, self._signatures = 0, FIRST_HASH, 0
+
+    def fault(self, entry: Entry, number: int) -> str | None:
+        """Return what does not fit at this entry, or take it in and return None."""
+        fault = chain_fault(entry, number, self._hash)
+        if fault is None:
+            try:
+                fault = self._content_fault(entry)
+            except (KeyError, TypeError, ValueError, AttributeError) as error:
+                fault = f"its content is not what its kind holds ({type(error).__name__}: {error})"
+            if fault is not None:
+                fault = f"Ledger entry {number} ({entry.kind}, {entry.at}) does not fit: {fault}."
+        if fault is None:
+            self._number, self._hash = entry.number, entry.hash
+        return fault
+
+    def found(self, number: int | None, fault: str) -> Verified:
+        """Return what the walk came to."""
+        head = f"{self._number}:{self._hash}" if self._number else ""
+        return Verified(self._number, self._signatures, head, number, fault)
+
+    def cut_tail(self) -> str | None:
+        """Return what is missing against the earlier head once all entries were seen."""
+        if self._earlier is None or self._earlier.number <= self._number:
+            return None
+        return (
+            f"The ledger ends at entry {self._number}, but the earlier head is of entry "
+            f"{self._earlier.number}: entries were cut off its end."
+        )
+
+    def _content_fault(self, entry: Entry) -> str | None:
+        signatures = read_signatures(entry.signatures)
+        if signatures is None:
+            return "its signatures cannot be read"
+        fault = (
+            self._head_fault(entry)
+            or _signature_fault(entry, signatures)
+            or self._people.fault(entry, signatures)
+            or self._courses.fault(entry)
+        )
+        if fault is None:
+            self._people.see(entry)
+            self._courses.see(entry)
+            self._signatures += len(signatures)
+            fault = self._project(entry)
+        return fault
+
+    def _head_fault(self, entry: Entry) -> str | None:
+        earlier = self._earlier
+        if earlier is None or earlier.number != entry.number:
+            return None
+        if entry.hash.startswith(earlier.hash_start):
+            return None
+        return "its hash is not the earlier head's, so it or an entry before it was written anew"
+
+    def _project(self, entry: Entry) -> str | None:
+        if entry.kind in _READ_AGAIN:
+            self._anew.execute(insert(ledger_entry).values(row_of(entry)))
+        try:
+            projection.apply(self._anew, entry)
+        except IntegrityError as error:
+            return str(error).rstrip(".")
+        return None
+
+
+def _signature_fault(entry: Entry, signatures: tuple[Signature, ...]) -> str | None:
+    if tuple(signature.who for signature in signatures) != signed_by(entry):
+        return "its signatures are not those of the people whom it names"
+    text = text_to_sign(entry.hash)
+    for signature in signatures:
+        if not holds(signature.key, text, signature.signature):
+            return f"the signature of {signature.who} does not hold"
+    return None
+
+
+def _projection_fault(live: Connection, anew: Connection) -> tuple[int, str] | None:
+    """Return the first entry whose projections differ from what the ledger makes of them."""
+    found = [fault for table in PROJECTIONS if (fault := _table_fault(table, live, anew))]
+    return min(found, default=None)
+
+
+def _table_fault(table: Table, live: Connection, anew: Connection) -> tuple[int, str] | None:
+    for is_there, should_be in zip_longest(_rows(live, table), _rows(anew, table)):
+        if is_there is None or should_be is None or tuple(is_there) != tuple(should_be):
+            return _difference(table, is_there, should_be)
+    return None
+
+
+def _difference(
+    table: Table, is_there: Row[Any] | None, should_be: Row[Any] | None
+) -> tuple[int, str]:
+    column = "from_entry" if table.name == "staff_key" else "entry"
+    numbers = [getattr(row, column) for row in (should_be, is_there) if row is not None]
+    number = min(numbers)
+    return number, (
+        f"The table {table.name} is not what the ledger makes of it, first where it tells of entry "
+        f"{number}: it was changed behind the program."
+    )
+
+
+def _rows(connection: Connection, table: Table) -> Iterator[Row[Any]]:
+    # The order of text depends on the server's language; by its bytes it is the same everywhere.
+    byte_order = "C" if connection.dialect.name == "postgresql" else "BINARY"
+    keys = [
+        column.collate(byte_order) if isinstance(column.type, Text) else column
+        for column in table.primary_key
+    ]
+    query = select(table).order_by(*keys)
+    with connection.execute(query, execution_options={"yield_per": _REPORT_EVERY}) as streamed:
+        yield from streamed
