@@ -229,7 +229,7 @@ def spine(
     brain_follows: str | None = None,
     upper_follows: str | None = None,
     lower_follows: str | None = None,
-    offsets_cm: Sequence[float] = (0.0, -1.0, -2.0),
+    offsets_cm: Sequence[float | dict[str, float]] = (0.0, -1.0, -2.0),
     fractions: int = 20,
     order: SequencePattern | None = None,
     borders: tuple[Border, Border] | None = None,
