@@ -16,6 +16,7 @@ from featherlog.junction.design import (
     Border,
     Course,
     CriticalStructure,
+    EarlierCourse,
     EdgesBy,
     Field,
     Junction,
@@ -114,10 +115,13 @@ def beam(
     )
 
 
-def field(name: str, *beams: Beam, follows: str | None = None) -> Field:
+def field(
+    name: str, *beams: Beam, follows: str | None = None, earlier: EarlierCourse | None = None
+) -> Field:
     """Give a field of equally weighted beams, moved by the couch when it follows a junction."""
     weighted = tuple(replace(one, weight=1 / len(beams)) for one in beams)
-    return Field(name, weighted, MovedBy.COUCH if follows else MovedBy.JAWS, follows)
+    moved_by = MovedBy.COUCH if follows else MovedBy.JAWS
+    return Field(name, weighted, moved_by, follows, earlier=earlier)
 
 
 def junction(
