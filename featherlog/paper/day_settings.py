@@ -32,7 +32,7 @@ _HEADS = (
     "Moves",
     "",
 )
-_PARTS = (80, 36, 31, 34, 36, 40, 38, 100, 131, 12)
+_PARTS = (72, 36, 36, 37, 36, 40, 38, 100, 131, 12)
 _NUMBERS = range(1, 6)
 _FIELD_LINE = ParagraphStyle("field", parent=style.BODY, leading=13)
 _NEW_VALUE_PT = 11
@@ -187,7 +187,7 @@ def _angle(now_deg: float, before_deg: float | None) -> list[Any]:
     if before_deg is None or not _turns(now_deg, before_deg):
         return [para(safe(figure(now_deg)), style.VALUE)]
     return [
-        para(safe(f"{figure(before_deg)} →"), style.SMALL_RIGHT),
+        para(safe(f"{figure(before_deg)}→"), style.SMALL_RIGHT),
         para(strong(figure(now_deg)), style.VALUE),
     ]
 

@@ -24,7 +24,7 @@ _BEAM_PARTS = (82, 34, 36, 40, 34, 36, 92, 38, 38, 62, 42)
 
 
 def design(course: Course, width: float) -> list[Flowable]:
-    """Return the prescription, fields with their beams, borders, junctions and positions."""
+    """Return the prescription, fields with their beams, borders, and junctions with offsets."""
     return [
         *section("DESIGN"),
         *([para(safe(f"Note: {course.note}")), space(3)] if course.note else []),
@@ -33,8 +33,6 @@ def design(course: Course, width: float) -> list[Flowable]:
         *_fields(course, width),
         space(5),
         _junctions(course, width),
-        space(5),
-        _positions(course, width),
     ]
 
 
@@ -115,7 +113,7 @@ def _border(border: Border) -> str:
 
 def _junctions(course: Course, width: float) -> Table:
     facts = [
-        dict(_junction(junction, upper.name, lower.name))
+        dict([*_junction(junction, upper.name, lower.name), *_offsets(course, junction)])
         for junction, (upper, lower) in zip(course.junctions, pairwise(course.fields), strict=True)
     ]
     # A line that no junction has anything to say to is left out.
@@ -151,22 +149,19 @@ def _junction(junction: Junction, upper: str, lower: str) -> list[tuple[str, str
     ]
 
 
+def _offsets(course: Course, junction: Junction) -> list[tuple[str, str]]:
+    return [
+        (f"position {position.label}", f"{signed(position.offset_cm[junction.name])} cm from A")
+        for position in course.positions
+    ]
+
+
 def _separation(junction: Junction) -> str:
     if not junction.separation_cm:
         return ""
     kind = "gap" if junction.separation_cm > 0 else "overlap"
     borne = f"borne by {junction.borne_by}" if junction.borne_by else "split evenly"
     return f"{signed(junction.separation_cm)} cm ({kind}), {borne}"
-
-
-def _positions(course: Course, width: float) -> Table:
-    names = [junction.name for junction in course.junctions]
-    rows = [
-        [strong(position.label), *(safe(signed(position.offset_cm[name])) for name in names)]
-        for position in course.positions
-    ]
-    heads = ("Position", *(f"{name}, cm from position A (+ toward the head)" for name in names))
-    return ruled(heads, rows, width, (20, *[50] * len(names)))
 
 
 def _point(point_cm: Point) -> str:

@@ -21,7 +21,7 @@ _GUTTER_PT = 12.0
 
 def junction_setting(setting: JunctionSetting, tolerance_cm: float, width: float) -> Table:
     """Return one junction: facts and skin gaps at the left, the mismatch table at the right."""
-    left, right = shares(width - _GUTTER_PT, 46, 54)
+    left, right = shares(width - _GUTTER_PT, 48, 52)
     facts = [
         para(strong(f"JUNCTION {setting.junction}"), style.LEAD),
         *map(para, _facts(setting)),
@@ -72,7 +72,7 @@ def _gaps(gaps: tuple[SkinGap, ...], tolerance_cm: float, width: float) -> Flowa
         for gap in gaps
     ]
     note = para(safe(f"cm; − is overlap; accept ±{figure(tolerance_cm)} cm"), style.SMALL)
-    table = ruled(heads, rows, width, (50, 38, 44, 42, 40, 48))
+    table = ruled(heads, rows, width, (51, 33, 42, 41, 38, 47))
     return grid([[[table, note]]], [width], padding=(0, 0))
 
 

@@ -205,7 +205,7 @@ def section(title: str, keep_pt: float = 90.0) -> list[Flowable]:
     rule = HRFlowable(
         width="100%", thickness=style.RULE_PT, color=black, spaceBefore=8, spaceAfter=2
     )
-    return [CondPageBreak(keep_pt), rule, para(safe(title), style.LEAD), space(2)]
+    return [CondPageBreak(keep_pt), rule, para(safe(title), style.display(13)), space(2)]
 
 
 def space(points: float) -> Flowable:

@@ -296,7 +296,10 @@ def step_day(shift_day: DayView) -> DayView:
         delivered_mu=34.5,
         console=(*console, ("Y1_cm", 9.6)),
     )
-    leaves = tuple(replace(jaw, edges_by="leaves") for jaw in spinal.beams[0].jaws)
+    leaves = tuple(
+        jaw if jaw.edge == "side" else replace(jaw, edges_by="leaves")
+        for jaw in spinal.beams[0].jaws
+    )
     return replace(
         shift_day,
         step=2,
