@@ -65,7 +65,7 @@ def machine(
         jaw_travel_cm={jaw: Range(-60, 60) for jaw in Jaw} | (travel or {}),
         largest_opening_cm=opening_cm,
         gantry_deg=Range(*gantry_deg),
-        collimator_deg=Range(-90, 90),
+        collimator_deg=Range(-180, 180),
         couch_deg=Range(*couch_deg),
         steps=steps,
         tolerances=Tolerances(jaw_cm=0.1, table_cm=0.2, angle_deg=1.0, meterset_percent=2.0),

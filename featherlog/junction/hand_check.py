@@ -124,7 +124,9 @@ def entry_depth(
     toward = patient_from_beam(course.patient_position, beam.gantry_deg, 0.0, 0.0)[axis, 2]
     facing = round(float(sign * toward), 6)
     if facing == 1:
-        return beam.ssd_cm, setting.depth_below_skin_cm
+        # Below the skin where the SSD was taken, which a table move along a slope raises or lowers.
+        planned_cm = next(one.ssd_cm for one in course.beams if one.name == beam.beam)
+        return beam.ssd_cm, setting.match_depth_cm + planned_cm - beam.ssd_cm
     if facing == -1 and junction.thickness_cm is not None:
         return beam.ssd_cm, junction.thickness_cm - setting.match_depth_cm
     return None
