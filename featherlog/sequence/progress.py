@@ -39,8 +39,9 @@ class DeliveredBeam:
 class FractionState:
     """What one fraction has received; ``parts`` is each beam's delivered part of its meterset.
 
-    ``began_at`` is the position first treated, ``last_position`` each field's latest one, and
-    ``field_positions`` all of each field's positions in the order they were treated.
+    ``began_at`` is the position first treated, ``last_position`` each field's latest one, the field
+    treated last standing last, and ``field_positions`` all of each field's positions in the order
+    they were treated.
     """
 
     number: int
@@ -100,12 +101,15 @@ def _state(
         parts[row.beam] += row.part
     given = [row for row in rows if row.meterset_mu > 0] or rows
     positions: dict[str, dict[str, None]] = {}
+    last: dict[str, str] = {}
     for row in given:
         positions.setdefault(row.field, {})[row.position] = None
+        last.pop(row.field, None)  # so that the field treated last stands last
+        last[row.field] = row.position
     return FractionState(
         number=number,
         began_at=given[0].position,
-        last_position={row.field: row.position for row in given},
+        last_position=last,
         field_positions={name: tuple(labels) for name, labels in positions.items()},
         parts=parts,
         complete=all(part >= 1 - slack(meterset_percent) for part in parts.values()),
