@@ -37,22 +37,26 @@ def match_profiles(
     if not shown:
         return []
     rows = [shown[first : first + _BESIDE] for first in range(0, len(shown), _BESIDE)]
-    every = [(junction, line) for junction in dose.junctions for line in junction.lines]
+    named = [(f"{junction.junction}, {line.place}", line) for junction, line in shown]
     return [
         legend([item.name for item in shown[0][1].curves], width),
         *(_row(row, width, picture_pt) for row in rows),
         space(3),
         KeepTogether(
             [
-                _figures(every if all_depths else shown, width),
+                figures_table(_every(dose) if all_depths else named, width),
                 para(safe(dose.model), style.SMALL),
             ]
         ),
     ]
 
 
-def _figures(shown: Sequence[tuple[JunctionDose, DoseLine]], width: float) -> Table:
-    return figures_table([(f"{j.junction}, {line.place}", line) for j, line in shown], width)
+def _every(dose: DoseView) -> list[tuple[str, DoseLine]]:
+    return [
+        (f"{junction.junction}, {line.place}, {figure(line.depth_cm)} cm", line)
+        for junction in dose.junctions
+        for line in junction.lines
+    ]
 
 
 def _row(shown: Sequence[tuple[JunctionDose, DoseLine]], width: float, height: float) -> Table:

@@ -6,8 +6,6 @@ from dataclasses import replace
 from functools import partial
 from typing import TYPE_CHECKING
 
-from reportlab.platypus import KeepTogether
-
 from featherlog.dose.result import PLANNED, UNFEATHERED
 from featherlog.paper.dose_profiles import match_profiles
 from featherlog.paper.dossier_approval import approval, code_of, warning_box
@@ -15,13 +13,17 @@ from featherlog.paper.dossier_checks import hand_check_table
 from featherlog.paper.dossier_design import design
 from featherlog.paper.dossier_sequence import sequence
 from featherlog.paper.dossier_settings import position_block
+from featherlog.paper.dossier_sides import side_pictures
 from featherlog.paper.layout import Furniture, build_pdf, section, space
 from featherlog.views.common import Heading
 
 if TYPE_CHECKING:
+    from collections.abc import Sequence
+
     from reportlab.platypus import Flowable
 
     from featherlog.paper.style import PageSize
+    from featherlog.views.day import JunctionView
     from featherlog.views.dose import DoseLine, DoseView
     from featherlog.views.solution import SolutionView
 
@@ -30,12 +32,18 @@ _PICTURE_PT = 150.0
 _DESIGNED = (PLANNED, UNFEATHERED)
 
 
-def dossier(view: SolutionView, page_size: PageSize = "A4") -> bytes:
+def dossier(
+    view: SolutionView,
+    page_size: PageSize = "A4",
+    *,
+    side_views: Sequence[JunctionView] = (),
+) -> bytes:
     """Return the approval dossier of a design as a PDF of several pages.
 
     What is signed and what is warned of comes first, then the design, the settings of every
     position, the sequence, the hand check and the dose. A design that was only solved says so where
-    the signatures would stand.
+    the signatures would stand. ``side_views`` are the junctions at position A, to be drawn from the
+    side; without them there is no such drawing.
 
     Raises:
         InputError: A name holds a character that the font cannot print.
@@ -48,7 +56,7 @@ def dossier(view: SolutionView, page_size: PageSize = "A4") -> bytes:
         notes=(view.caution, view.dose.caution),
         marks=(("Content", code_of(view)), ("Printed", view.printed_at)),
     )
-    return build_pdf(furniture, partial(_story, view), page_size)
+    return build_pdf(furniture, partial(_story, view, side_views), page_size)
 
 
 def _heading(view: SolutionView) -> Heading:
@@ -67,18 +75,17 @@ def _heading(view: SolutionView) -> Heading:
     )
 
 
-def _story(view: SolutionView, width: float) -> list[Flowable]:
+def _story(view: SolutionView, side_views: Sequence[JunctionView], width: float) -> list[Flowable]:
     body = [*approval(view, width), space(6), warning_box(view.warnings, width)]
     body += design(view.course, width)
     for position in view.positions:
         body += position_block(view.course, position, width)
     body += sequence(view, width)
     body += hand_check_table(view.hand_checks, width)
-    title = section("DOSE ALONG THE JUNCTIONS, WHOLE COURSE")
+    body += side_pictures(side_views, view.course.patient_position.value, width)
+    body += section("DOSE ALONG THE JUNCTIONS, WHOLE COURSE", keep_pt=_PICTURE_PT + 80)
     dose = _as_designed(view.dose)
-    profiles = match_profiles(dose, width, all_depths=True, picture_pt=_PICTURE_PT)
-    # The pictures stay with their title; the figures may go over.
-    return [*body, KeepTogether([*title, *profiles[:-1]]), *profiles[-1:]]
+    return [*body, *match_profiles(dose, width, all_depths=True, picture_pt=_PICTURE_PT)]
 
 
 def _as_designed(dose: DoseView) -> DoseView:

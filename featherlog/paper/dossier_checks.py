@@ -19,7 +19,7 @@ if TYPE_CHECKING:
     from featherlog.junction.hand_check import HandCheck
 
 _HEADS = ("Pos.", "What", "Numbers", "by formula", "exact", "difference", "")
-_PARTS = (24, 150, 176, 62, 54, 54, 18)
+_PARTS = (22, 164, 186, 52, 48, 50, 16)
 _NUMBERS = range(3, 6)
 _DECIMALS = 4
 

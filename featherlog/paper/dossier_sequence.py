@@ -17,6 +17,7 @@ if TYPE_CHECKING:
 
     from reportlab.platypus import Flowable, Table
 
+    from featherlog.junction.design import Course, SequencePattern
     from featherlog.views.solution import BlockLine, SolutionView
 
 _GUTTER_PT = 12.0
@@ -28,7 +29,8 @@ def sequence(view: SolutionView, width: float) -> list[Flowable]:
     shares = ", ".join(f"{label} {figure(count, least=0)}" for label, count in view.shares)
     shifts = ", ".join(str(number) for number in view.shift_fractions) or "none"
     facts = (
-        ("Pattern:", course.sequence.pattern.value),
+        ("Pattern:", _pattern(course.sequence)),
+        ("Treatment days:", _days(course)),
         ("Shares:", f"{shares} of {course.fractions} fractions"),
         ("Shift days:", f"{len(view.shift_fractions)} (fractions {shifts})"),
     )
@@ -42,6 +44,33 @@ def sequence(view: SolutionView, width: float) -> list[Flowable]:
         title = para(strong("More even with as many shift days:"))
         body += [space(4), KeepTogether([title, _blocks(view.more_even, width)])]
     return body
+
+
+def _pattern(rule: SequencePattern) -> str:
+    facts = [rule.pattern.value]
+    if rule.block_fractions is not None:
+        facts.append(f"{rule.block_fractions} fractions to a block")
+    if rule.block_dose_gy is not None:
+        facts.append(f"at least {figure(rule.block_dose_gy)} Gy to a block")
+    if rule.weights:
+        parts = zip(rule.positions, rule.weights, strict=True)
+        split = ", ".join(f"{label} {figure(weight, 2, 3)}" for label, weight in parts)
+        facts.append(f"every fraction in parts {split}")
+    if rule.restart_each_phase:
+        facts.append("the order begins again with each phase")
+    return "; ".join(facts)
+
+
+def _days(course: Course) -> str:
+    rule = course.sequence
+    weekdays = ", ".join(day.value for day in rule.weekdays)
+    facts = [f"{weekdays} from {rule.start_date.isoformat()}"]
+    if rule.holiday_calendar:
+        facts.append(f"without the public holidays of {rule.holiday_calendar}")
+    if rule.closed_dates:
+        closed = ", ".join(day.isoformat() for day in rule.closed_dates)
+        facts.append(f"closed {closed}")
+    return "; ".join(facts)
 
 
 def _blocks(lines: Sequence[BlockLine], width: float) -> Table:

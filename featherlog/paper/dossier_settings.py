@@ -28,6 +28,7 @@ if TYPE_CHECKING:
 _HEADS = ("Beam", "Gantry°", "Coll.°", "Couch°", "SSD cm", "MU", "X1 cm", "X2 cm", "Y1 cm", "Y2 cm")
 _PARTS = (92, 42, 52, 52, 40, 38, 58, 58, 58, 58)
 _EXACT_DECIMALS = 4
+_LEAVES = "leaf edges belong to the plan: not set by hand"
 
 
 def position_block(course: Course, position: PositionSettings, width: float) -> list[Flowable]:
@@ -70,8 +71,11 @@ def _field_lines(field: FieldSetting) -> list[Flowable]:
 
 
 def _beam(beam: BeamSetting) -> list[Any]:
+    name = [para(strong(beam.beam)), para(safe(beam.energy), style.SMALL)]
+    if _by_leaves(beam):
+        name.append(para(safe(_LEAVES), style.SMALL))
     return [
-        [para(strong(beam.beam)), para(safe(beam.energy), style.SMALL)],
+        name,
         para(safe(figure(beam.gantry_deg)), style.VALUE),
         _pair(beam.collimator_deg, beam.exact_collimator_deg),
         _pair(beam.couch_deg, beam.exact_couch_deg),
@@ -86,10 +90,12 @@ def _jaw(beam: BeamSetting, jaw: Jaw) -> list[Flowable]:
     end = {beam.superior_jaw: "superior", beam.inferior_jaw: "inferior"}.get(jaw)
     if end is None:
         return lines
-    lines.append(para(safe(end), style.SMALL_RIGHT))
-    if beam.edges_by == "leaves":
-        lines.append(para(safe("leaf edge: from the plan"), style.SMALL_RIGHT))
-    return lines
+    by = ", leaves" if _by_leaves(beam) else ""
+    return [*lines, para(safe(f"{end}{by}"), style.SMALL_RIGHT)]
+
+
+def _by_leaves(beam: BeamSetting) -> bool:
+    return beam.edges_by == "leaves"
 
 
 def _pair(as_set: float, exact: float) -> list[Flowable]:

@@ -165,7 +165,7 @@ def _add_foot(drawing: Drawing, scale: _Scale, side: SideView) -> None:
     drawing.add(ink.line((scale.left, 3), (scale.left + bar, 3), width=RULE_PT))
     for x in (scale.left, scale.left + bar):
         drawing.add(ink.line((x, 0.5), (x, 5.5), width=RULE_PT))
-    key = "5 cm   solid: today"
+    key = "5 cm"
     if side.previous_edges:
-        key += ", dashed: position before"
+        key += "   solid: today, dashed: position before"
     drawing.add(ink.label((scale.left + bar + 4, 1), key))

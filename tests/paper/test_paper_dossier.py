@@ -1,6 +1,7 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from datetime import date
 from typing import TYPE_CHECKING, Any
 
 import pytest
@@ -8,6 +9,7 @@ from pdf_runs import font_files, overlapping, page_runs, page_texts, squeezed, w
 from solved_views import HASH, by_leaves, craniospinal, opposed_pair, solved, with_earlier
 
 from featherlog.errors import InputError
+from featherlog.junction.design import Pattern
 from featherlog.paper.dossier import dossier
 from featherlog.paper.style import MARGIN_PT, PAGE_SIZES, SMALLEST_PT
 from featherlog.words import DEMO_NOTICE, figure, meterset, signed
@@ -16,6 +18,7 @@ if TYPE_CHECKING:
     from collections.abc import Iterator
 
     from featherlog.views.common import Heading
+    from featherlog.views.day import DayView
     from featherlog.views.dose import DoseView
     from featherlog.views.solution import SolutionView
 
@@ -126,6 +129,36 @@ def test_the_design_is_stated_as_it_was_asked_for(spine_view: SolutionView) -> N
     assert "Note:Pronelater." in text
 
 
+def test_the_rule_of_the_sequence_and_the_days_are_stated(spine_view: SolutionView) -> None:
+    rule = spine_view.course.sequence
+    text = whole_text(dossier(spine_view))
+    assert "Pattern:blocks;5fractionstoablock" in text
+    assert "Monday,Tuesday,Wednesday,Thursday,Fridayfrom2031-03-03" in text
+    split = replace(
+        rule,
+        pattern=Pattern.SPLIT,
+        block_fractions=None,
+        weights=(0.5, 0.25, 0.25),
+        closed_dates=(date(2031, 3, 14),),
+        holiday_calendar="DE, BW",
+    )
+    course = replace(spine_view.course, sequence=split)
+    text = whole_text(dossier(replace(spine_view, course=course)))
+    assert "split;everyfractioninpartsA0.50,B0.25,C0.25" in text
+    assert "withoutthepublicholidaysofDE,BW;closed2031-03-14" in text
+
+
+def test_junctions_are_drawn_from_the_side_where_they_are_given(
+    spine_view: SolutionView, crowded_day: DayView
+) -> None:
+    data = dossier(spine_view, side_views=crowded_day.junctions)
+    text = whole_text(data)
+    assert text.count("HEAD(gantryend)") == 2
+    assert "JUNCTIONSFROMTHESIDE,POSITIONA" in text
+    assert all(overlapping(runs) == [] for runs in page_runs(data))
+    assert "gantryend" not in whole_text(dossier(spine_view))
+
+
 def test_every_setting_stands_above_its_exact_value(view: SolutionView) -> None:
     text = whole_text(dossier(view))
     assert [fact for fact in settings(view) if fact not in text] == []
@@ -140,7 +173,8 @@ def test_leaf_edges_are_said_to_belong_to_the_plan(
     pair_view: SolutionView, dose_view: DoseView
 ) -> None:
     text = whole_text(dossier(solved(by_leaves(opposed_pair()), dose_view)))
-    assert text.count("leafedge:fromtheplan") == 2 * 2 * 3
+    assert text.count("leafedgesbelongtotheplan:notsetbyhand") == 2 * 3
+    assert text.count("inferior,leaves") == text.count("superior,leaves") == 2 * 3
     assert "leafedge" not in whole_text(dossier(pair_view))
 
 
@@ -185,7 +219,7 @@ def test_a_geometry_without_formulas_says_so(spine_view: SolutionView) -> None:
 
 def test_the_dose_shows_the_design_and_nothing_delivered(spine_view: SolutionView) -> None:
     last = page_texts(dossier(spine_view))[-1]
-    for fact in ("planned", "unfeathered", "J1,skin", "J2,spinalcord", "107%", "95%"):
+    for fact in ("planned", "unfeathered", "J1,skin,0.0cm", "J2,spinalcord,6.5cm", "107%", "95%"):
         assert fact in last
     assert "predicted" not in last
     assert "delivered" not in last
