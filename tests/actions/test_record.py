@@ -180,3 +180,14 @@ def test_two_fractions_a_day(department: Program) -> None:
     treated(department.database, "FH-2045", "2026-03-16T15:00:00")
     with pytest.raises(RefusedError, match=r"^fractions 3 and 4 were delivered today already"):
         confirmed(department.database, "FH-2045", "2026-03-16T18:00:00")
+
+
+def test_sides_that_had_unequal_dose_are_told(department: Program) -> None:
+    without = {"AP lower": 0.0, "PA lower": 0.0}
+    recorded(department.database, THIGH, "2026-03-02", fraction=2, position="B")
+    recorded(
+        department.database, THIGH, "2026-03-02", fraction=3, position="B", metersets_mu=without
+    )
+    recorded(department.database, THIGH, "2026-03-03", fraction=1, position="B")
+    [sides] = review(department.database, THIGH).sides
+    assert (sides.superior_gy, sides.inferior_gy, sides.equal) == (6.0, 4.0, False)
