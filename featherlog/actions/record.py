@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from dataclasses import asdict, dataclass
 from typing import TYPE_CHECKING, Any
 
@@ -39,6 +38,8 @@ if TYPE_CHECKING:
 
 # What may be written between the check and the record of a fraction without undoing the check.
 _LEAVE_CONFIRMED = frozenset({Kind.FRACTION_CONFIRMED, Kind.DEPARTURE_EXPLAINED})
+# No beam of one fraction gives more: beyond it a figure is a slip, and the ledger keeps slips.
+_MOST_MU = 20_000.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -184,8 +185,8 @@ def _beams(
     names = {beam.beam for field in stored.plan.positions[0].treated for beam in field.beams}
     _known("--meterset", delivery.metersets_mu, names, "beam")
     for name, mu in delivery.metersets_mu.items():
-        if not 0 <= mu < math.inf:
-            raise InputError(f"--meterset {name}={mu:g} must be a number of MU, 0 or more")
+        if not 0 <= mu <= _MOST_MU:
+            raise InputError(f"--meterset {name}={mu:g} is outside 0 to {_MOST_MU:g} MU")
     rows = []
     for field in stored.plan.positions[0].treated:
         label = delivery.field_positions.get(field.field, everywhere or "")

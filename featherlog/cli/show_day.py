@@ -62,7 +62,7 @@ def _settings(view: DayView) -> Iterator[str]:
     )
     if view.steps > 1:
         yield f"STEP {view.step} of {view.steps} of this fraction: each at its own position"
-    yield view.shift_words
+    yield f"Due {view.projected_date}. {view.shift_words}"
     if view.part_delivered:
         yield wrapped(
             f"PART DELIVERED: finish fraction {view.fraction} at position {view.position}; the "

@@ -27,7 +27,7 @@ from featherlog.actions.desk import practice_time
 from featherlog.actions.record import record
 from featherlog.actions.review import review
 from featherlog.actions.today import today
-from featherlog.errors import RefusedError
+from featherlog.errors import NotFoundError, RefusedError
 
 if TYPE_CHECKING:
     from program import Program
@@ -180,3 +180,28 @@ def test_two_fractions_a_day(department: Program) -> None:
     treated(department.database, "FH-2045", "2026-03-16T15:00:00")
     with pytest.raises(RefusedError, match=r"^fractions 3 and 4 were delivered today already"):
         confirmed(department.database, "FH-2045", "2026-03-16T18:00:00")
+
+
+def test_sides_that_had_unequal_dose_are_told(department: Program) -> None:
+    without = {"AP lower": 0.0, "PA lower": 0.0}
+    recorded(department.database, THIGH, "2026-03-02", fraction=2, position="B")
+    recorded(
+        department.database, THIGH, "2026-03-02", fraction=3, position="B", metersets_mu=without
+    )
+    recorded(department.database, THIGH, "2026-03-03", fraction=1, position="B")
+    [sides] = review(department.database, THIGH).sides
+    assert (sides.superior_gy, sides.inferior_gy, sides.equal) == (6.0, 4.0, False)
+
+
+def test_a_reason_is_given_once(department: Program) -> None:
+    treated(department.database, THIGH, "2026-03-02", position="B", reason="misread")
+    with pytest.raises(NotFoundError, match="has no open departure 1"):
+        explain(department.database, THIGH, 1, by=PHYSICIAN, reason="another")
+
+
+def test_a_remainder_elsewhere_differs_from_where_the_fraction_began(department: Program) -> None:
+    part = {"AP lower": 0.0, "PA lower": 0.0}
+    treated(department.database, THIGH, "2026-03-02", position="B", metersets_mu=part)
+    done = treated(department.database, THIGH, "2026-03-02", position="A")
+    assert _kinds(done) == [INCOHERENT]
+    assert done.departures[0].detail.startswith("lower thigh at A, upper thigh at B, planned B")
