@@ -74,7 +74,7 @@ def _junction(
     for field, end in zip(fields, ("inferior", "superior"), strict=True):
         if field.field == turned:
             neighbour = fields[1] if field is fields[0] else fields[0]
-            yield from _turned(junction, label, field, neighbour)
+            yield from _turned(junction, label, field, neighbour, end)
         elif not field.earlier_course and not junction.separation_cm:
             for beam in field.beams:
                 jaw = beam.inferior_jaw if end == "inferior" else beam.superior_jaw
@@ -118,7 +118,7 @@ def entry_depth(
 
     None for a turned or oblique beam, and where the skin it enters is not known.
     """
-    if beam.couch_deg or beam.exact_couch_deg:
+    if not _straight(beam):
         return None
     axis, sign = OUTWARD[junction.entrance]
     toward = patient_from_beam(course.patient_position, beam.gantry_deg, 0.0, 0.0)[axis, 2]
@@ -179,16 +179,15 @@ def _overlap(
 
 
 def _turned(
-    junction: Junction, label: str, field: FieldSetting, neighbour: FieldSetting
+    junction: Junction, label: str, field: FieldSetting, neighbour: FieldSetting, end: str
 ) -> Iterator[HandCheck]:
     wanted = junction.matched_beam or neighbour.beams[0].beam
     matched = next(beam for beam in neighbour.beams if beam.beam == wanted)
-    below = field.beams[0].isocentre_cm[2] > neighbour.beams[0].isocentre_cm[2]
-    theirs = matched.superior_jaw if below else matched.inferior_jaw
-    j_theirs = _toward(matched, theirs)
+    theirs = matched.superior_jaw if end == "inferior" else matched.inferior_jaw
+    j_theirs = abs(matched.exact_jaw_cm[theirs])
     for beam in field.beams:
-        own = beam.inferior_jaw if below else beam.superior_jaw
-        j_own = _toward(beam, own)
+        own = beam.inferior_jaw if end == "inferior" else beam.superior_jaw
+        j_own = abs(beam.exact_jaw_cm[own])
         collimator, couch = abs(beam.exact_collimator_deg), abs(beam.exact_couch_deg)
         yield HandCheck(
             label,
@@ -239,7 +238,8 @@ def _same_side(
 
 
 def _straight(beam: BeamSetting) -> bool:
-    return beam.couch_deg == 0 and beam.exact_couch_deg == 0
+    square = beam.exact_collimator_deg % 90 == 0  # a jaw across the axis
+    return square and beam.couch_deg == 0 and beam.exact_couch_deg == 0
 
 
 def _lateral(beam: BeamSetting) -> bool:

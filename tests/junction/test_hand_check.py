@@ -132,6 +132,29 @@ def test_oblique_beams_have_the_textbook_angles_alone_and_they_are_degrees_off()
     assert abs(couch.by_formula - couch.exact) > 2.0
 
 
+@pytest.mark.parametrize("turned", ["UPPER", "LOWER"])
+def test_the_jaws_of_the_textbook_angles_are_those_that_face_the_junction(turned: str) -> None:
+    # Both have passed their axis, so the isocentres stand the other way round.
+    up = 1 if turned == "UPPER" else -1
+    laterals = [beam("lateral", 90, (0, -8, -up * 2.0), ssd_cm=92.0)]
+    spine_beam = [beam("spine", 180, (0, 0, up * 3.0), ssd_cm=100.0)]
+    of = pair(
+        *(laterals, spine_beam)[::up],
+        junction("J", (0, 0, 0), 5.0, turned_field=turned),
+    )
+    (exact,) = checks(of, {COLLIMATOR_EXACT})
+    assert exact.by_formula == pytest.approx(exact.exact, abs=1e-6)
+    for check in checks(of, {COLLIMATOR_RULE, COUCH_RULE}):
+        assert check.by_formula == pytest.approx(check.exact, abs=0.25)
+
+
+def test_no_formula_is_said_to_be_exact_for_a_collimator_that_stands_askew() -> None:
+    spine_beam = [beam("spine", 180, (3, 0, -14), collimator_deg=8.0, ssd_cm=100.0)]
+    lateral = [beam("lateral", 90, (0, -8, 9), ssd_cm=92.0)]
+    between = junction("J", (0, 0, 0), 5.0, turned_field="UPPER")
+    assert checks(pair(lateral, spine_beam, between)) == []
+
+
 def test_ssd_skin_and_isocentre_that_disagree_are_warned_of_once() -> None:
     of = deep_spine()
     _, upper, _ = of.fields

@@ -2,7 +2,8 @@
 
 Two fields of lengths L1 and L2 on the skin, at source-skin distances SSD1 and SSD2, meet at depth
 d when the gap on the skin is ½·L1·d/SSD1 + ½·L2·d/SSD2. Opposed pairs that all meet at d leave, at
-depth z, a three-field overlap of ½(L1 - L2)(z - d)/SSD.
+depth z, a three-field overlap of ½(L1 - L2)(z - d)/SSD. Craniospinal laterals turn the collimator
+by atan(spine jaw/SAD) and the couch by atan(own jaw/SAD).
 """
 
 from __future__ import annotations
@@ -15,6 +16,7 @@ from hypothesis import strategies as st
 from spine_course import beam, junction, machine, pair
 
 from featherlog.junction.design import Beam, Side
+from featherlog.junction.hand_check import COLLIMATOR_RULE, COUCH_RULE, hand_checks
 from featherlog.junction.solve import solve
 
 if TYPE_CHECKING:
@@ -83,3 +85,24 @@ def test_gap_of_two_fields_at_any_distance(
     (skin,) = solve(course, machine())[0].junction("J").skin_gaps
     expected = sum(long / 2 * depth / far for long, far in zip(lengths, ssds, strict=True))
     assert skin.exact_cm == pytest.approx(expected, abs=1e-9)
+
+
+@pytest.mark.parametrize(("spine_cm", "degrees"), [(15.0, 4.3), (36.0, 10.2)])
+def test_collimator_of_laterals_over_a_spine_field(spine_cm: float, degrees: float) -> None:
+    found = by_formula(COLLIMATOR_RULE, spine_cm=spine_cm, lateral_cm=20.0)
+    assert found == pytest.approx(degrees, abs=0.05)
+
+
+def test_couch_of_laterals_of_20_cm() -> None:
+    found = by_formula(COUCH_RULE, spine_cm=15.0, lateral_cm=20.0)
+    assert found == pytest.approx(5.7, abs=0.05)
+
+
+def by_formula(rule: str, *, spine_cm: float, lateral_cm: float) -> float:
+    """Return a textbook angle for fields of those lengths, isocentres level with the match point."""
+    lateral = beam("lateral", 90, (0, 0, lateral_cm / 2))
+    spine = beam("spine", 180, (0, 0, -spine_cm / 2))
+    between = junction("J", (0, 0, 0), 0.0, turned_field="UPPER")
+    course = pair([lateral], [spine], between)
+    found = {check.formula: check for check in hand_checks(course, solve(course, machine()))}
+    return found[rule].by_formula
