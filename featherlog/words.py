@@ -23,6 +23,13 @@ STOP_AND_CALL = "STOP. Do not treat. Call the physicist."
 THIS_FRACTION_ONLY = "Valid for this fraction only."
 RELATIVE_ONLY = "relative only: no reference reading of the table yet"
 
+MEANING = {
+    "prepared": "I prepared this design",
+    "checked": "I checked this design independently",
+    "approved": "I approve this design for treatment",
+}
+"""What a signature on a design stands for, by its act."""
+
 PHYSICIST = "physicist"
 THERAPIST = "therapist"
 PHYSICIAN = "physician"

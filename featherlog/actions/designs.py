@@ -59,7 +59,7 @@ def prepare(database: str | None, file: Path, *, by: str) -> tuple[str, int, Pla
             course=course.key,
             who=by,
             role=role,
-            meaning="I prepared this design",
+            meaning=words.MEANING["prepared"],
         )
     return course.key, number, plan
 
@@ -99,7 +99,7 @@ def check(database: str | None, key: str, *, by: str) -> RevisionRow:
             course=key,
             who=by,
             role=role,
-            meaning="I checked this design independently",
+            meaning=words.MEANING["checked"],
         )
     return revision
 
@@ -132,7 +132,7 @@ def approve(database: str | None, key: str, *, by: str) -> str:
             course=key,
             who=by,
             role=role,
-            meaning="I approve this design for treatment",
+            meaning=words.MEANING["approved"],
         )
     return code
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
+from featherlog.actions.day_view import junction_views
 from featherlog.actions.review import review
 from featherlog.actions.solution import stored_solution
 from featherlog.actions.today import today
@@ -29,7 +30,8 @@ def dossier_pages(
 ) -> tuple[SolutionView, bytes]:
     """Return the latest revision's solution and its approval dossier (PDF)."""
     view = stored_solution(database, key)
-    return view, dossier(view, page_size)
+    sides = junction_views(view.course, view.positions[0], None)
+    return view, dossier(view, page_size, side_views=sides)
 
 
 def review_page(

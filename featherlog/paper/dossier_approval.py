@@ -8,6 +8,7 @@ from featherlog.paper import style
 from featherlog.paper.fonts import join, safe, strong
 from featherlog.paper.layout import space
 from featherlog.paper.style import display, grid, para, shares
+from featherlog.words import MEANING
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -18,11 +19,6 @@ if TYPE_CHECKING:
 
 _CODE = 16
 _GROUP = 4
-_MEANINGS = {
-    "prepared": "I prepared this design",
-    "checked": "I checked this design independently",
-    "approved": "I approve this design for treatment",
-}
 _SIGN_PT = 24.0
 _BOX = ("BOX", (0, 0), (-1, -1), style.HEAVY_PT, "black")
 
@@ -67,7 +63,7 @@ def _signatures(signatures: Sequence[Signature], width: float) -> Table:
 
 
 def _signature(signature: Signature) -> list[Any]:
-    meaning = para(safe(_MEANINGS.get(signature.act, "")))
+    meaning = para(safe(MEANING.get(signature.act, "")))
     if not signature.name:
         return [para(strong(signature.act)), para(strong("open")), "", meaning, space(_SIGN_PT)]
     return [
