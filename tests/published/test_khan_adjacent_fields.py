@@ -8,6 +8,7 @@ by atan(spine jaw/SAD) and the couch by atan(own jaw/SAD).
 
 from __future__ import annotations
 
+from pathlib import Path
 from typing import TYPE_CHECKING
 
 import pytest
@@ -15,13 +16,22 @@ from hypothesis import given
 from hypothesis import strategies as st
 from spine_course import beam, junction, machine, pair
 
+from featherlog.exchange.design_file import read_design
+from featherlog.exchange.machine_file import read_machine
 from featherlog.junction.design import Beam, Side
-from featherlog.junction.hand_check import COLLIMATOR_RULE, COUCH_RULE, hand_checks
+from featherlog.junction.hand_check import (
+    COLLIMATOR_RULE,
+    COUCH_RULE,
+    GAP_RULE,
+    OVERLAP_RULE,
+    hand_checks,
+)
 from featherlog.junction.solve import solve
 
 if TYPE_CHECKING:
     from featherlog.junction.plan import JunctionSetting
 
+FIXTURES = Path(__file__).parents[2] / "fixtures"
 SAD = 100.0
 length = st.floats(4, 40)
 ssd = st.floats(70, 130)
@@ -58,6 +68,18 @@ def test_mantle_and_para_aortic_fields() -> None:
     assert [skin.side for skin in found.skin_gaps] == ["anterior", "posterior"]
     assert found.three_field_overlap_cm == pytest.approx(0.375, abs=1e-5)
     assert found.gap_without_overlap_cm == pytest.approx(2.625, abs=1e-5)
+
+
+def test_the_shipped_design_of_that_case_gives_its_numbers_by_hand_and_by_planes() -> None:
+    on = read_machine(FIXTURES / "standard_100cm.toml")
+    course = read_design(FIXTURES / "mantle_para_aortic.toml", on)
+    settings = solve(course, on)
+    found = {check.formula: check for check in hand_checks(course, settings)}
+    expected = {GAP_RULE: 2.25, OVERLAP_RULE: 0.375}
+    for rule, figure in expected.items():
+        assert found[rule].by_formula == pytest.approx(figure)
+        assert found[rule].exact == pytest.approx(figure)
+    assert settings[0].junction("upper abdomen").gap_without_overlap_cm == pytest.approx(2.625)
 
 
 @given(length, length, st.floats(5, 12), st.floats(0, 12))
@@ -99,7 +121,7 @@ def test_couch_of_laterals_of_20_cm() -> None:
 
 
 def by_formula(rule: str, *, spine_cm: float, lateral_cm: float) -> float:
-    """Return a textbook angle for fields of those lengths, isocentres level with the match point."""
+    """Return a textbook angle for fields of those lengths, the match point at isocentre level."""
     lateral = beam("lateral", 90, (0, 0, lateral_cm / 2))
     spine = beam("spine", 180, (0, 0, -spine_cm / 2))
     between = junction("J", (0, 0, 0), 0.0, turned_field="UPPER")
