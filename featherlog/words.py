@@ -134,3 +134,9 @@ def jaw_move(jaw: str, change_cm: float, end: str | None) -> str:
     if end is None:
         return what
     return f"{what}, {toward(outward if end == 'superior' else -outward)}"
+
+
+def console_value(name: str, value: float) -> str:
+    """Return a value as the machine's own console shows it: ``gantry_deg`` becomes gantry 180.0°."""
+    what, _, unit = name.rpartition("_")
+    return f"{what} {figure(value)}{'°' if unit == 'deg' else ' cm'}"

@@ -68,6 +68,9 @@ class Recorded:
     entry: int
     fraction: int
     positions: tuple[tuple[str, str], ...]
+    step: int
+    steps: int
+    step_complete: bool
     complete: bool
     departures: tuple[Departure, ...]
     explained: bool
@@ -143,6 +146,9 @@ def record(
         entry=entry.number,
         fraction=number,
         positions=tuple(dict.fromkeys((beam.field, beam.position) for beam in beams)),
+        step=due.step,
+        steps=due.steps,
+        step_complete=not (after.next_fraction == number and after.step == due.step),
         complete=states[number].complete,
         departures=departures,
         explained=bool(reason),

@@ -123,7 +123,7 @@ def _beam(beam: BeamView) -> Iterator[str]:
         )
     yield due
     if beam.console:
-        shown = "  ".join(f"{name} {words.figure(value)}" for name, value in beam.console)
+        shown = "  ".join(words.console_value(name, value) for name, value in beam.console)
         yield wrapped(f"on the console: {shown}", "    ")
     yield from (f"    {_jaw(jaw)}" for jaw in beam.jaws)
 

@@ -204,4 +204,4 @@ def test_a_remainder_elsewhere_differs_from_where_the_fraction_began(department:
     treated(department.database, THIGH, "2026-03-02", position="B", metersets_mu=part)
     done = treated(department.database, THIGH, "2026-03-02", position="A")
     assert _kinds(done) == [INCOHERENT]
-    assert done.departures[0].detail.startswith("lower thigh at A, upper thigh at B, planned B")
+    assert done.departures[0].detail.startswith("upper thigh at B, lower thigh at A, planned B")
