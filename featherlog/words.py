@@ -137,6 +137,6 @@ def jaw_move(jaw: str, change_cm: float, end: str | None) -> str:
 
 
 def console_value(name: str, value: float) -> str:
-    """Return a value as the machine's own console shows it: ``gantry_deg`` becomes gantry 180.0°."""
+    """Return a value as the machine's own console shows it: ``gantry_deg``, gantry 180.0°."""
     what, _, unit = name.rpartition("_")
     return f"{what} {figure(value)}{'°' if unit == 'deg' else ' cm'}"
