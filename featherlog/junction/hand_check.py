@@ -81,8 +81,10 @@ def _junction(
                 entry = entry_depth(course, junction, setting, beam)
                 yield from _jaw(junction, label, beam, setting, entry=entry, jaw=jaw)
     if turned is None and not junction.separation_cm:
-        yield from _gaps(label, setting, fields)
-        yield from _overlap(junction, label, setting, fields)
+        pair = _square_pair(course, junction, fields)
+        if pair is not None:
+            yield from _gaps(junction, label, setting, pair)
+            yield from _overlap(junction, label, setting, pair)
 
 
 def _jaw(
@@ -118,11 +120,7 @@ def entry_depth(
 
     None for a turned or oblique beam, and where the skin it enters is not known.
     """
-    if not _straight(beam):
-        return None
-    axis, sign = OUTWARD[junction.entrance]
-    toward = patient_from_beam(course.patient_position, beam.gantry_deg, 0.0, 0.0)[axis, 2]
-    facing = round(float(sign * toward), 6)
+    facing = _facing(course, junction, beam)
     if facing == 1:
         # Below the skin where the SSD was taken, which a table move along a slope raises or lowers.
         planned_cm = next(one.ssd_cm for one in course.beams if one.name == beam.beam)
@@ -132,14 +130,34 @@ def entry_depth(
     return None
 
 
+def _facing(course: Course, junction: Junction, beam: BeamSetting) -> int:
+    """Return 1 for a straight beam square to the entrance skin, -1 to the opposite one, else 0."""
+    if not _straight(beam):
+        return 0
+    axis, sign = OUTWARD[junction.entrance]
+    toward = patient_from_beam(course.patient_position, beam.gantry_deg, 0.0, 0.0)[axis, 2]
+    return int(round(float(sign * toward), 6))
+
+
+def _square_pair(
+    course: Course, junction: Junction, fields: tuple[FieldSetting, FieldSetting]
+) -> tuple[BeamSetting, BeamSetting] | None:
+    """Return a beam of each field that enter the entrance skin squarely; None where none do."""
+    upper, lower = (
+        next((beam for beam in field.beams if _facing(course, junction, beam) == 1), None)
+        for field in fields
+    )
+    return None if upper is None or lower is None else (upper, lower)
+
+
 def _gaps(
-    label: str, setting: JunctionSetting, fields: tuple[FieldSetting, FieldSetting]
+    junction: Junction,
+    label: str,
+    setting: JunctionSetting,
+    pair: tuple[BeamSetting, BeamSetting],
 ) -> Iterator[HandCheck]:
-    pair = _same_side(fields)
-    if pair is None or not setting.skin_gaps:
-        return
     upper, lower = pair
-    gap = setting.skin_gaps[0]
+    gap = next(gap for gap in setting.skin_gaps if gap.side == junction.entrance.value)
     j1, j2 = _toward(upper, upper.inferior_jaw), _toward(lower, lower.superior_jaw)
     depth = setting.match_depth_cm
     yield HandCheck(
@@ -158,10 +176,9 @@ def _overlap(
     junction: Junction,
     label: str,
     setting: JunctionSetting,
-    fields: tuple[FieldSetting, FieldSetting],
+    pair: tuple[BeamSetting, BeamSetting],
 ) -> Iterator[HandCheck]:
-    pair = _same_side(fields)
-    if pair is None or setting.three_field_overlap_cm is None or junction.critical is None:
+    if setting.three_field_overlap_cm is None or junction.critical is None:
         return
     upper, lower = pair
     j1, j2 = _toward(upper, upper.inferior_jaw), _toward(lower, lower.superior_jaw)
@@ -226,15 +243,6 @@ def _toward(beam: BeamSetting, jaw: Jaw) -> float:
     """Return a jaw's distance from the axis (cm), positive on its own side, before rounding."""
     value = beam.exact_jaw_cm[jaw]
     return value if jaw in (Jaw.X2, Jaw.Y2) else -value
-
-
-def _same_side(
-    fields: tuple[FieldSetting, FieldSetting],
-) -> tuple[BeamSetting, BeamSetting] | None:
-    """Return the first beams of both fields where they stand at one gantry angle, unturned."""
-    upper, lower = fields[0].beams[0], fields[1].beams[0]
-    same = upper.gantry_deg == lower.gantry_deg and _straight(upper) and _straight(lower)
-    return (upper, lower) if same else None
 
 
 def _straight(beam: BeamSetting) -> bool:

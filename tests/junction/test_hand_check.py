@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 import pytest
 from spine_course import FFS, HFP, HFS, beam, junction, machine, pair, spine
 
-from featherlog.junction.design import Side
+from featherlog.junction.design import Side, Technique
 from featherlog.junction.hand_check import (
     COLLIMATOR_EXACT,
     COLLIMATOR_RULE,
@@ -153,6 +153,28 @@ def test_no_formula_is_said_to_be_exact_for_a_collimator_that_stands_askew() -> 
     lateral = [beam("lateral", 90, (0, -8, 9), ssd_cm=92.0)]
     between = junction("J", (0, 0, 0), 5.0, turned_field="UPPER")
     assert checks(pair(lateral, spine_beam, between)) == []
+
+
+def test_the_gap_rule_takes_the_beams_that_enter_the_entrance_skin() -> None:
+    fields = (
+        [
+            beam(f"{name} front", 0, (0, -8, z), ssd_cm=92.0),
+            beam(f"{name} back", 180, (0, -8, z), ssd_cm=92.0),
+        ]
+        for name, z in (("u", 12), ("l", -15))
+    )
+    (gap,) = checks(pair(*fields, junction("J", (0, 0, 0), 5.0, thickness_cm=16.0)), {GAP_RULE})
+    assert gap.subject == "gap on the posterior skin at J"
+    assert gap.by_formula == pytest.approx(gap.exact, abs=1e-6)
+
+
+@pytest.mark.parametrize("gantry", [0.0, 150.0])
+def test_the_gap_rule_is_not_offered_where_no_beam_enters_squarely(gantry: float) -> None:
+    fields = ([beam(name, gantry, (0, -8, z), ssd_cm=92.0)] for name, z in (("u", 12), ("l", -15)))
+    between = junction(
+        "J", (0, 0, 0), 5.0, thickness_cm=16.0, technique=Technique.HALF_BEAM, critical_depth_cm=8.0
+    )
+    assert checks(pair(*fields, between), {GAP_RULE, OVERLAP_RULE}) == []
 
 
 def test_ssd_skin_and_isocentre_that_disagree_are_warned_of_once() -> None:

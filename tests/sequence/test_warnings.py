@@ -132,6 +132,14 @@ def test_held_angles_that_leave_more_than_a_jaw_may_be_off() -> None:
     assert not [sentence for sentence in recomputed if "angles" in sentence]
 
 
+def test_the_collimator_of_a_field_that_is_not_turned_belongs_to_the_course() -> None:
+    both = (
+        [beam("u", 180, (0, -4, 10), collimator_deg=90, ssd_cm=96.0)],
+        [beam("l", 180, (0, -4, -10), ssd_cm=96.0)],
+    )
+    assert said(pair(*both, BETWEEN, offsets_cm=(0.0, -1.0))) == ()
+
+
 def test_a_planned_separation_is_no_residual() -> None:
     planned = replace(BETWEEN, separation_cm=0.4, borne_by="LOWER")
     assert not [sentence for sentence in said(two_fields(planned)) if "tolerance" in sentence]
