@@ -76,7 +76,7 @@ def test_a_split_fraction_shifts_within_itself() -> None:
 def test_blocks_and_the_fractions_that_shift() -> None:
     assert blocks("AABBBA") == (Block(1, 2, "A"), Block(3, 5, "B"), Block(6, 6, "A"))
     assert shift_fractions(_fractions("A", "A", "B", "B", "B", "A")) == (3, 6)
-    assert shift_fractions("AAA") == ()
+    assert shift_fractions(_fractions("A", "A", "A")) == ()
 
 
 @pytest.mark.parametrize(
