@@ -237,8 +237,11 @@ def _departures(
     stored: Stored, due: Progress, state: FractionState, beams: tuple[DeliveredBeam, ...]
 ) -> tuple[Departure, ...]:
     """Return how position and meterset differ, seen over the whole of a step once begun."""
-    begun = stored.states.get(state.number) if due.part_delivered else None
-    where = {**(begun.last_position if begun else {}), **beams_by_field(beams)}
+    begun = stored.states.get(state.number)
+    here = {row.field for row in stored.deliveries if row.beam in due.begun_beams}
+    earlier = begun.last_position if begun else {}
+    where = {field: place for field, place in earlier.items() if field in here}
+    where |= beams_by_field(beams)
     parts = {beam: part / due.expected for beam, part in state.parts.items()}
     mu = {beam.beam: beam.planned_mu * due.expected for beam in beams}
     return (

@@ -64,6 +64,7 @@ class Progress:
     fraction that is split over positions, from 1. ``position`` is where the step is to be treated:
     its planned position, or where it began when ``part_delivered``. ``due`` is each beam's part of
     its meterset still to be given in this step, ``expected`` its part once the step is complete.
+    ``begun_beams`` have had some of their meterset in this step.
     """
 
     complete: int
@@ -74,6 +75,7 @@ class Progress:
     part_delivered: bool = False
     due: Mapping[str, float] = field(default_factory=dict)
     expected: float = 1.0
+    begun_beams: frozenset[str] = frozenset()
 
 
 def fraction_states(
@@ -141,12 +143,22 @@ def due_in(
     names = [beam.beam for field in plan.positions[0].treated for beam in field.beams]
     parts = state.parts if state else dict.fromkeys(names, 0.0)
     ends = list(accumulate(step.weight for step in fraction.steps))
+    least = min(parts.values())
     step = next(
-        (number for number, end in enumerate(ends) if min(parts.values()) < end - allowed),
+        (
+            index
+            for index, (end, one) in enumerate(zip(ends, fraction.steps, strict=True))
+            if least < end - allowed * one.weight
+        ),
         len(ends) - 1,
     )
     before = ends[step - 1] if step else 0.0
-    begun = state is not None and any(part > before + allowed for part in parts.values())
+    here = {
+        name
+        for name, part in parts.items()
+        if part > before + allowed * fraction.steps[step].weight
+    }
+    begun = state is not None and bool(here)
     place = state.stood_at(len(ends)) if state and begun else fraction.steps[step].position
     return Progress(
         complete=0,
@@ -157,6 +169,7 @@ def due_in(
         part_delivered=begun,
         due={name: max(0.0, ends[step] - part) for name, part in parts.items()},
         expected=ends[step],
+        begun_beams=frozenset(here),
     )
 
 
