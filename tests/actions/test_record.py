@@ -205,3 +205,39 @@ def test_a_remainder_elsewhere_differs_from_where_the_fraction_began(department:
     done = treated(department.database, THIGH, "2026-03-02", position="A")
     assert _kinds(done) == [INCOHERENT]
     assert done.departures[0].detail.startswith("upper thigh at B, lower thigh at A, planned B")
+
+
+def _split(department: Program) -> None:
+    """Prepare a thigh course whose every fraction is split over its three positions."""
+    text = (SCENARIO / "thigh.toml").read_text(encoding="utf-8")
+    file = department.folder / "split.toml"
+    file.write_text(
+        text.replace("FH-2041", "FH-2046")
+        .replace('pattern = "blocks"', 'pattern = "split"')
+        .replace("block_fractions = 5", "weights = [1.0, 1.0, 1.0]"),
+        encoding="utf-8",
+    )
+    with practice_time(moment("2026-02-28")):
+        prepare(department.database, file, by=AUTHOR)
+        check(department.database, "FH-2046", by=CHECKER)
+        approve(department.database, "FH-2046", by=PHYSICIAN)
+
+
+def test_a_split_fraction_is_treated_step_by_step_at_its_positions(department: Program) -> None:
+    _split(department)
+    done = [treated(department.database, "FH-2046", "2026-03-02") for _ in range(3)]
+    assert [record.positions[0][1] for record in done] == ["A", "B", "C"]
+    assert [record.complete for record in done] == [False, False, True]
+    assert all(record.departures == () and record.step_complete for record in done)
+    assert (done[-1].next_fraction, done[-1].next_position) == (2, "A")
+
+
+def test_a_broken_step_is_judged_by_that_step_alone(department: Program) -> None:
+    _split(department)
+    treated(department.database, "FH-2046", "2026-03-02")
+    short = {"AP lower": 0.0, "PA lower": 0.0}
+    broken = treated(department.database, "FH-2046", "2026-03-02", metersets_mu=short)
+    assert {kind for kind, _ in _kinds(broken)} == {"meterset short"}
+    view = today(department.database, "FH-2046")
+    assert (view.step, view.position, view.part_delivered) == (2, "B", True)
+    assert treated(department.database, "FH-2046", "2026-03-02").departures == ()
