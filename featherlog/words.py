@@ -23,6 +23,13 @@ STOP_AND_CALL = "STOP. Do not treat. Call the physicist."
 THIS_FRACTION_ONLY = "Valid for this fraction only."
 RELATIVE_ONLY = "relative only: no reference reading of the table yet"
 
+MEANING = {
+    "prepared": "I prepared this design",
+    "checked": "I checked this design independently",
+    "approved": "I approve this design for treatment",
+}
+"""What a signature on a design stands for, by its act."""
+
 PHYSICIST = "physicist"
 THERAPIST = "therapist"
 PHYSICIAN = "physician"
@@ -127,3 +134,9 @@ def jaw_move(jaw: str, change_cm: float, end: str | None) -> str:
     if end is None:
         return what
     return f"{what}, {toward(outward if end == 'superior' else -outward)}"
+
+
+def console_value(name: str, value: float) -> str:
+    """Return a value as the machine's own console shows it: ``gantry_deg``, gantry 180.0°."""
+    what, _, unit = name.rpartition("_")
+    return f"{what} {figure(value)}{'°' if unit == 'deg' else ' cm'}"

@@ -16,6 +16,7 @@ from featherlog.junction.design import (
     Border,
     Course,
     CriticalStructure,
+    EarlierCourse,
     EdgesBy,
     Field,
     Junction,
@@ -64,7 +65,7 @@ def machine(
         jaw_travel_cm={jaw: Range(-60, 60) for jaw in Jaw} | (travel or {}),
         largest_opening_cm=opening_cm,
         gantry_deg=Range(*gantry_deg),
-        collimator_deg=Range(-90, 90),
+        collimator_deg=Range(-180, 180),
         couch_deg=Range(*couch_deg),
         steps=steps,
         tolerances=Tolerances(jaw_cm=0.1, table_cm=0.2, angle_deg=1.0, meterset_percent=2.0),
@@ -114,10 +115,13 @@ def beam(
     )
 
 
-def field(name: str, *beams: Beam, follows: str | None = None) -> Field:
+def field(
+    name: str, *beams: Beam, follows: str | None = None, earlier: EarlierCourse | None = None
+) -> Field:
     """Give a field of equally weighted beams, moved by the couch when it follows a junction."""
     weighted = tuple(replace(one, weight=1 / len(beams)) for one in beams)
-    return Field(name, weighted, MovedBy.COUCH if follows else MovedBy.JAWS, follows)
+    moved_by = MovedBy.COUCH if follows else MovedBy.JAWS
+    return Field(name, weighted, moved_by, follows, earlier=earlier)
 
 
 def junction(
@@ -229,7 +233,7 @@ def spine(
     brain_follows: str | None = None,
     upper_follows: str | None = None,
     lower_follows: str | None = None,
-    offsets_cm: Sequence[float] = (0.0, -1.0, -2.0),
+    offsets_cm: Sequence[float | dict[str, float]] = (0.0, -1.0, -2.0),
     fractions: int = 20,
     order: SequencePattern | None = None,
     borders: tuple[Border, Border] | None = None,

@@ -20,6 +20,9 @@ if TYPE_CHECKING:
     from featherlog.actions.desk import Desk, Signer
     from featherlog.views.day import DayView
 
+# Wider than any field: a figure beyond it is a slip, and the ledger keeps slips.
+_WIDEST_CM = 40.0
+
 
 @dataclass(frozen=True, slots=True)
 class ReadBack:
@@ -69,7 +72,8 @@ def confirm(
 def measured(stored: Stored, gaps_cm: Mapping[str, float]) -> dict[tuple[str, str], float]:
     """Return measured gaps by (junction, skin side), each name checked against the design.
 
-    A bare junction name means its entrance skin. Raises InputError for a name that is not there.
+    A bare junction name means its entrance skin. Raises InputError for a name that is not there
+    or given twice and for a gap wider than any field.
     """
     sides = {junction.name: junction.entrance.value for junction in stored.course.junctions}
     known = {
@@ -84,6 +88,12 @@ def measured(stored: Stored, gaps_cm: Mapping[str, float]) -> dict[tuple[str, st
         if place not in known:
             allowed = ", ".join(f"{junction}:{skin}" for junction, skin in sorted(known))
             raise InputError(f"--gap {text!r} names no gap of this course; allowed: {allowed}")
+        if not abs(gap) <= _WIDEST_CM:
+            raise InputError(
+                f"--gap {text}={gap:g} is outside {-_WIDEST_CM:g} to {_WIDEST_CM:g} cm"
+            )
+        if place in found:
+            raise InputError(f"--gap gives the {place[1]} gap of {name!r} twice")
         found[place] = gap
     return found
 

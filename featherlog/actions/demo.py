@@ -15,7 +15,7 @@ from featherlog.actions.desk import Signer, practice_time
 from featherlog.actions.dose import dose, write_pictures
 from featherlog.actions.files import write_private
 from featherlog.actions.machines import add_machine
-from featherlog.actions.papers import review_page, sheet
+from featherlog.actions.papers import dossier_pages, review_page, sheet
 from featherlog.actions.record import Delivery, record
 from featherlog.actions.staff import add_staff
 from featherlog.actions.today import due_list, today
@@ -155,6 +155,10 @@ def _papers(folder: Path, database: str) -> Iterator[Path]:
         file = folder / f"{course}-fraction-{view.fraction}.pdf"
         write_private(file, pdf)
         yield file
+    _, pdf = dossier_pages(database, SPINE)
+    file = folder / f"{SPINE}-dossier.pdf"
+    write_private(file, pdf)
+    yield file
     _, pdf = review_page(database, BREAST)
     file = folder / f"{BREAST}-review.pdf"
     write_private(file, pdf)

@@ -59,7 +59,7 @@ def prepare(
                 "content_hash": content_hash(*parts),
             },
             course=course.key,
-            meaning="I prepared this design",
+            meaning=words.MEANING["prepared"],
         )
     return course.key, number, plan
 
@@ -95,7 +95,7 @@ def check(
             Kind.DESIGN_CHECKED,
             {"revision": revision.number},
             course=key,
-            meaning="I checked this design independently",
+            meaning=words.MEANING["checked"],
         )
     return revision
 
@@ -124,7 +124,7 @@ def approve(
                 "next_date": next(treatment_days(sequence, first)).isoformat(),
             },
             course=key,
-            meaning="I approve this design for treatment",
+            meaning=words.MEANING["approved"],
         )
     return code
 

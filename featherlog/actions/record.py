@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from dataclasses import asdict, dataclass
 from typing import TYPE_CHECKING, Any
 
@@ -41,6 +40,8 @@ if TYPE_CHECKING:
 
 # What may be written between the check and the record of a fraction without undoing the check.
 _LEAVE_CONFIRMED = frozenset({Kind.FRACTION_CONFIRMED, Kind.DEPARTURE_EXPLAINED})
+# No beam of one fraction gives more: beyond it a figure is a slip, and the ledger keeps slips.
+_MOST_MU = 20_000.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -69,6 +70,9 @@ class Recorded:
     entry: int
     fraction: int
     positions: tuple[tuple[str, str], ...]
+    step: int
+    steps: int
+    step_complete: bool
     complete: bool
     departures: tuple[Departure, ...]
     explained: bool
@@ -141,6 +145,9 @@ def record(
         entry=entry.number,
         fraction=number,
         positions=tuple(dict.fromkeys((beam.field, beam.position) for beam in beams)),
+        step=due.step,
+        steps=due.steps,
+        step_complete=not (after.next_fraction == number and after.step == due.step),
         complete=states[number].complete,
         departures=departures,
         explained=bool(reason),
@@ -183,8 +190,8 @@ def _beams(
     names = {beam.beam for field in stored.plan.positions[0].treated for beam in field.beams}
     _known("--meterset", delivery.metersets_mu, names, "beam")
     for name, mu in delivery.metersets_mu.items():
-        if not 0 <= mu < math.inf:
-            raise InputError(f"--meterset {name}={mu:g} must be a number of MU, 0 or more")
+        if not 0 <= mu <= _MOST_MU:
+            raise InputError(f"--meterset {name}={mu:g} is outside 0 to {_MOST_MU:g} MU")
     rows = []
     for field in stored.plan.positions[0].treated:
         label = delivery.field_positions.get(field.field, everywhere or "")
@@ -229,8 +236,11 @@ def _departures(
     stored: Stored, due: Progress, state: FractionState, beams: tuple[DeliveredBeam, ...]
 ) -> tuple[Departure, ...]:
     """Return how position and meterset differ, seen over the whole of a step once begun."""
-    begun = stored.states.get(state.number) if due.part_delivered else None
-    where = {**(begun.last_position if begun else {}), **beams_by_field(beams)}
+    begun = stored.states.get(state.number)
+    here = {row.field for row in stored.deliveries if row.beam in due.begun_beams}
+    earlier = begun.last_position if begun else {}
+    where = {field: place for field, place in earlier.items() if field in here}
+    where |= beams_by_field(beams)
     parts = {beam: part / due.expected for beam, part in state.parts.items()}
     mu = {beam.beam: beam.planned_mu * due.expected for beam in beams}
     return (

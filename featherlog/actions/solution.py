@@ -87,7 +87,7 @@ def _solution(
         blocks=_block_lines(blocks(positions), dates),
         shares=tuple(weighted_shares(plan.fractions).items()),
         more_even=_block_lines(evener_blocks(positions) or (), dates),
-        shift_fractions=shift_fractions(positions),
+        shift_fractions=shift_fractions(plan.fractions),
         warnings=plan.warnings,
         hand_checks=hand_checks(course, plan.positions),
         dose=design_dose(course, plan, machine, depths_cm=depths_cm),

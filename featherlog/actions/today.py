@@ -140,8 +140,7 @@ def next_shift(stored: Stored, today: date) -> NextShift | None:
     Its date is projected from the date of the fraction due, or from today where that has passed.
     """
     due, on = stored.progress.next_fraction, stored.row.next_date
-    positions = [fraction.position for fraction in stored.plan.fractions]
-    later = [number for number in shift_fractions(positions) if due and number > due]
+    later = [n for n in shift_fractions(stored.plan.fractions) if due and n > due]
     if not later or due is None or on is None:
         return None
     number = later[0]
@@ -151,7 +150,7 @@ def next_shift(stored: Stored, today: date) -> NextShift | None:
         stored.course.fractions_a_day,
         max(date.fromisoformat(on), today),
     )
-    return NextShift(number, positions[number - 1], dates[-1].isoformat())
+    return NextShift(number, stored.plan.fraction(number).position, dates[-1].isoformat())
 
 
 def _is_due(row: CourseRow, on: date) -> bool:

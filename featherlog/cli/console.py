@@ -184,7 +184,7 @@ def record(
 
 def _recorded_text(result: Recorded) -> str:
     where = ", ".join(f"{field} at {place}" for field, place in result.positions)
-    state = "complete" if result.complete else "NOT COMPLETE: the remainder is still to be given"
+    state = _state(result)
     lines = [
         wrapped(f"Recorded fraction {result.fraction} ({where}), {state}. Entry {result.entry}.")
     ]
@@ -199,6 +199,14 @@ def _recorded_text(result: Recorded) -> str:
         f"projected {result.next_date}."
     )
     return "\n".join(lines)
+
+
+def _state(result: Recorded) -> str:
+    if result.complete:
+        return "complete"
+    if result.step_complete:
+        return f"step {result.step} of {result.steps} complete, the next step is still to be given"
+    return "NOT COMPLETE: the remainder is still to be given"
 
 
 def departures(course: CourseKey, json: Json = False, database: Database = None) -> None:

@@ -48,7 +48,7 @@ def run() -> None:
     """Run the command line; failures become one sentence and an exit code."""
     write_any_terminal()
     try:
-        app()
+        app(prog_name="featherlog")
     except FeatherlogError as error:
         remark("\n".join(f"featherlog: {line}" for line in str(error).splitlines()))
         sys.exit(error.exit_code)

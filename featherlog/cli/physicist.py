@@ -15,6 +15,8 @@ from featherlog.cli.options import (
     Database,
     Depths,
     Json,
+    Output,
+    PaperSize,
     Second,
     SecondFile,
 )
@@ -177,6 +179,27 @@ def show_course(
 
     view = stored_solution(database, course, depths_cm=tuple(depth or ()))
     show_json(view) if json else show(solution_text(view))
+
+
+@course_app.command()
+def dossier(
+    course: CourseKey,
+    output: Output = None,
+    page_size: PaperSize = "A4",
+    database: Database = None,
+) -> None:
+    """Write the approval dossier of the latest revision as PDF.
+
+    \b
+    Example: featherlog course dossier FH-2043 --output dossier.pdf
+    """
+    from featherlog.actions.files import write_private
+    from featherlog.actions.papers import dossier_pages
+
+    view, pdf = dossier_pages(database, course, page_size=page_size)
+    file = output or Path(f"{course}-dossier.pdf")
+    write_private(file, pdf)
+    show(f"{file}: content {view.content_hash[:16]}")
 
 
 @course_app.command("list")

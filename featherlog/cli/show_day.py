@@ -62,7 +62,7 @@ def _settings(view: DayView) -> Iterator[str]:
     )
     if view.steps > 1:
         yield f"STEP {view.step} of {view.steps} of this fraction: each at its own position"
-    yield view.shift_words
+    yield f"Due {view.projected_date}. {view.shift_words}"
     if view.part_delivered:
         yield wrapped(
             f"PART DELIVERED: finish fraction {view.fraction} at position {view.position}; the "
@@ -123,7 +123,7 @@ def _beam(beam: BeamView) -> Iterator[str]:
         )
     yield due
     if beam.console:
-        shown = "  ".join(f"{name} {words.figure(value)}" for name, value in beam.console)
+        shown = "  ".join(words.console_value(name, value) for name, value in beam.console)
         yield wrapped(f"on the console: {shown}", "    ")
     yield from (f"    {_jaw(jaw)}" for jaw in beam.jaws)
 

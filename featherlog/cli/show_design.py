@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from featherlog import words
-from featherlog.cli.output import rule, table, wrapped
+from featherlog.cli.output import WIDTH, rule, table, wrapped
 from featherlog.cli.show_day import heading_lines
 from featherlog.cli.show_dose import dose_lines
 
@@ -63,10 +63,8 @@ def _signatures(view: SolutionView) -> Iterator[str]:
 
 def _position(position: PositionSettings) -> Iterator[str]:
     yield f"POSITION {position.label}"
-    rows = [_beam_row(beam) for field in position.treated for beam in field.beams]
-    heads = ("beam", "X1", "X2", "Y1", "Y2", "sup/inf", "coll", "couch", "SSD", "MU")
     yield "Jaws and SSD in cm, angles in degrees (IEC 61217); sup/inf name the end jaws"
-    yield table(heads, rows, numeric="X1|X2|Y1|Y2|coll|couch|SSD|MU")
+    yield _beams(position)
     yield from _turned_beams(position)
     for field in position.fields:
         if field.earlier_course:
@@ -77,6 +75,18 @@ def _position(position: PositionSettings) -> Iterator[str]:
         yield from _border(border)
     for junction in position.junctions:
         yield from _junction(junction)
+
+
+def _beams(position: PositionSettings) -> str:
+    heads = ("beam", "X1", "X2", "Y1", "Y2", "sup/inf", "coll", "couch", "SSD", "MU")
+    rows = [_beam_row(beam) for field in position.treated for beam in field.beams]
+    lines = table(heads, rows, numeric="X1|X2|Y1|Y2|coll|couch|SSD|MU")
+    if max(map(len, lines.splitlines())) <= WIDTH:
+        return lines
+    # Long names stand on lines of their own, or the columns would not fit the screen.
+    names, values = [row[0] for row in rows], [("   ", *row[1:]) for row in rows]
+    head, *below = table(("", *heads[1:]), values, numeric="|".join(heads[1:])).splitlines()
+    return "\n".join([head, *(f"{name}\n{line}" for name, line in zip(names, below, strict=True))])
 
 
 def _beam_row(beam: BeamSetting) -> tuple[str, ...]:

@@ -15,7 +15,7 @@ if TYPE_CHECKING:
 DEMO_MACHINE = "alder.toml"
 DEMO_DESIGNS = ("thigh.toml", "breast.toml")
 DEMO_SPINE = {"supine": "spine.toml", "prone": "spine_prone.toml"}
-"""One more design, by how the patient lies; only one of the two is the course."""
+"""One more course, designed for either way the patient may lie."""
 
 
 def demo_text(name: str) -> str:

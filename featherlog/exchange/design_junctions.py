@@ -23,6 +23,7 @@ if TYPE_CHECKING:
 _MATCH_DEPTH_CM = replace(DEPTH_CM, allowed=f"{DEPTH_CM.allowed} (or skin_gap_cm in its place)")
 _OFFSET_CM = number("cm", -20, 20)
 _ONE_OFFSET_CM = replace(_OFFSET_CM, allowed=f"{_OFFSET_CM.allowed} (or a table by junction name)")
+_TURNED_FIELD = replace(text(), allowed="the name of one of the junction's two fields, in quotes")
 _SEPARATION_CM = number("cm", -5, 5)
 _METERSET_MU = number("MU", 0, 10_000, low_open=True)
 
@@ -81,7 +82,7 @@ def _turn(table: Table, technique: Technique) -> tuple[str | None, str | None, A
     if not rotated:
         return None, None, Angles.RECOMPUTED
     return (
-        table.take("turned_field", text()),
+        table.take("turned_field", _TURNED_FIELD),
         table.take_or("matched_beam", text(), None),
         table.take_or("angles", choice(Angles), Angles.RECOMPUTED),
     )
@@ -110,7 +111,8 @@ def _depth_or_gap(table: Table, technique: Technique) -> tuple[float | None, flo
         table.fault("skin_gap_cm", "is given beside match_depth_cm, but only one of them may be")
     elif gap:
         return None, table.take("skin_gap_cm", number("cm", 0, 10))
-    return table.take("match_depth_cm", _MATCH_DEPTH_CM), None
+    kind = _MATCH_DEPTH_CM if technique is Technique.SKIN_GAP else DEPTH_CM
+    return table.take("match_depth_cm", kind), None
 
 
 def _critical(table: Table) -> CriticalStructure | None:

@@ -60,20 +60,19 @@ def _touching(course: Course) -> Iterator[str]:
 
 
 def _left_as_it_was(course: Course) -> Iterator[Fault]:
-    earlier = {field.name for field in course.fields if field.earlier is not None}
     for place, junction in enumerate(course.junctions):
-        if junction.turned_field in earlier:
-            sentence = f"is {quoted(junction.turned_field or '')}, but must be the other field"
-            yield (
-                ("junction", place, "turned_field"),
-                f"{sentence}: a field of an earlier course is never turned",
-            )
-        if junction.borne_by in earlier:
-            sentence = f"is {quoted(junction.borne_by or '')}, but must be the other field"
-            yield (
-                ("junction", place, "borne_by"),
-                f"{sentence}: a field of an earlier course stays",
-            )
+        beside = course.fields[place : place + 2]
+        earlier = [field.name for field in beside if field.earlier is not None]
+        for key, name, verb in (
+            ("turned_field", junction.turned_field, "is never turned"),
+            ("borne_by", junction.borne_by, "stays"),
+        ):
+            if name is not None and name in earlier:
+                sentence = f"is {quoted(name)}, but must be the other field"
+                yield (
+                    ("junction", place, key),
+                    f"{sentence}: a field of an earlier course {verb}",
+                )
 
 
 EARLIER_RULES = (

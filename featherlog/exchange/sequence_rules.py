@@ -26,14 +26,16 @@ def _offset_names(course: Course) -> Iterator[Fault]:
 
 
 def _metersets(course: Course) -> Iterator[Fault]:
-    names = [beam.name for field in course.fields if not field.earlier for beam in field.beams]
-    earlier = {beam.name for field in course.fields if field.earlier for beam in field.beams}
+    treated = [beam.name for field in course.fields if not field.earlier for beam in field.beams]
+    earlier = [beam.name for beam in course.beams if beam.name not in treated]
+    if not treated:
+        return  # another rule says so
     for place, position in enumerate(course.positions):
         path = ("position", place, "meterset_mu")
-        given = [name for name in position.meterset_mu if name not in earlier - set(names)]
-        yield from _same_names(path, given, names, "beam")
-        for name in position.meterset_mu:
-            if name not in given:
+        given = [name for name in position.meterset_mu if name not in earlier]
+        yield from _same_names(path, given, treated, "beam")
+        for name in earlier:
+            if name in position.meterset_mu:
                 yield (
                     (*path, name),
                     "is given, but a beam of an earlier course is not treated again",

@@ -12,7 +12,7 @@ if TYPE_CHECKING:
 
 def shown_angle(scale: AngleScale, iec_deg: float) -> float:
     """Return the angle (degrees) a console shows for an IEC 61217 angle."""
-    turned = round(scale.sense * (iec_deg - scale.zero_deg), 9) % 360.0
+    turned = round(scale.sense * (iec_deg - scale.zero_deg), 6) % 360.0  # noise just below 0 is 0
     if scale.form is AngleForm.SIGNED and turned > 180.0:  # noqa: PLR2004 - half a turn
         return turned - 360.0
     return turned

@@ -74,15 +74,17 @@ def _junction(
     for field, end in zip(fields, ("inferior", "superior"), strict=True):
         if field.field == turned:
             neighbour = fields[1] if field is fields[0] else fields[0]
-            yield from _turned(junction, label, field, neighbour)
+            yield from _turned(junction, label, field, neighbour, end)
         elif not field.earlier_course and not junction.separation_cm:
             for beam in field.beams:
                 jaw = beam.inferior_jaw if end == "inferior" else beam.superior_jaw
                 entry = entry_depth(course, junction, setting, beam)
                 yield from _jaw(junction, label, beam, setting, entry=entry, jaw=jaw)
     if turned is None and not junction.separation_cm:
-        yield from _gaps(label, setting, fields)
-        yield from _overlap(junction, label, setting, fields)
+        pair = _square_pair(course, junction, fields)
+        if pair is not None:
+            yield from _gaps(junction, label, setting, pair)
+            yield from _overlap(junction, label, setting, pair)
 
 
 def _jaw(
@@ -118,26 +120,44 @@ def entry_depth(
 
     None for a turned or oblique beam, and where the skin it enters is not known.
     """
-    if beam.couch_deg or beam.exact_couch_deg:
-        return None
-    axis, sign = OUTWARD[junction.entrance]
-    toward = patient_from_beam(course.patient_position, beam.gantry_deg, 0.0, 0.0)[axis, 2]
-    facing = round(float(sign * toward), 6)
+    facing = _facing(course, junction, beam)
     if facing == 1:
-        return beam.ssd_cm, setting.depth_below_skin_cm
+        # Below the skin where the SSD was taken, which a table move along a slope raises or lowers.
+        planned_cm = next(one.ssd_cm for one in course.beams if one.name == beam.beam)
+        return beam.ssd_cm, setting.match_depth_cm + planned_cm - beam.ssd_cm
     if facing == -1 and junction.thickness_cm is not None:
         return beam.ssd_cm, junction.thickness_cm - setting.match_depth_cm
     return None
 
 
+def _facing(course: Course, junction: Junction, beam: BeamSetting) -> int:
+    """Return 1 for a straight beam square to the entrance skin, -1 to the opposite one, else 0."""
+    if not _straight(beam):
+        return 0
+    axis, sign = OUTWARD[junction.entrance]
+    toward = patient_from_beam(course.patient_position, beam.gantry_deg, 0.0, 0.0)[axis, 2]
+    return int(round(float(sign * toward), 6))
+
+
+def _square_pair(
+    course: Course, junction: Junction, fields: tuple[FieldSetting, FieldSetting]
+) -> tuple[BeamSetting, BeamSetting] | None:
+    """Return a beam of each field that enter the entrance skin squarely; None where none do."""
+    upper, lower = (
+        next((beam for beam in field.beams if _facing(course, junction, beam) == 1), None)
+        for field in fields
+    )
+    return None if upper is None or lower is None else (upper, lower)
+
+
 def _gaps(
-    label: str, setting: JunctionSetting, fields: tuple[FieldSetting, FieldSetting]
+    junction: Junction,
+    label: str,
+    setting: JunctionSetting,
+    pair: tuple[BeamSetting, BeamSetting],
 ) -> Iterator[HandCheck]:
-    pair = _same_side(fields)
-    if pair is None or not setting.skin_gaps:
-        return
     upper, lower = pair
-    gap = setting.skin_gaps[0]
+    gap = next(gap for gap in setting.skin_gaps if gap.side == junction.entrance.value)
     j1, j2 = _toward(upper, upper.inferior_jaw), _toward(lower, lower.superior_jaw)
     depth = setting.match_depth_cm
     yield HandCheck(
@@ -156,10 +176,9 @@ def _overlap(
     junction: Junction,
     label: str,
     setting: JunctionSetting,
-    fields: tuple[FieldSetting, FieldSetting],
+    pair: tuple[BeamSetting, BeamSetting],
 ) -> Iterator[HandCheck]:
-    pair = _same_side(fields)
-    if pair is None or setting.three_field_overlap_cm is None or junction.critical is None:
+    if setting.three_field_overlap_cm is None or junction.critical is None:
         return
     upper, lower = pair
     j1, j2 = _toward(upper, upper.inferior_jaw), _toward(lower, lower.superior_jaw)
@@ -177,16 +196,15 @@ def _overlap(
 
 
 def _turned(
-    junction: Junction, label: str, field: FieldSetting, neighbour: FieldSetting
+    junction: Junction, label: str, field: FieldSetting, neighbour: FieldSetting, end: str
 ) -> Iterator[HandCheck]:
     wanted = junction.matched_beam or neighbour.beams[0].beam
     matched = next(beam for beam in neighbour.beams if beam.beam == wanted)
-    below = field.beams[0].isocentre_cm[2] > neighbour.beams[0].isocentre_cm[2]
-    theirs = matched.superior_jaw if below else matched.inferior_jaw
-    j_theirs = _toward(matched, theirs)
+    theirs = matched.superior_jaw if end == "inferior" else matched.inferior_jaw
+    j_theirs = abs(matched.exact_jaw_cm[theirs])
     for beam in field.beams:
-        own = beam.inferior_jaw if below else beam.superior_jaw
-        j_own = _toward(beam, own)
+        own = beam.inferior_jaw if end == "inferior" else beam.superior_jaw
+        j_own = abs(beam.exact_jaw_cm[own])
         collimator, couch = abs(beam.exact_collimator_deg), abs(beam.exact_couch_deg)
         yield HandCheck(
             label,
@@ -227,17 +245,9 @@ def _toward(beam: BeamSetting, jaw: Jaw) -> float:
     return value if jaw in (Jaw.X2, Jaw.Y2) else -value
 
 
-def _same_side(
-    fields: tuple[FieldSetting, FieldSetting],
-) -> tuple[BeamSetting, BeamSetting] | None:
-    """Return the first beams of both fields where they stand at one gantry angle, unturned."""
-    upper, lower = fields[0].beams[0], fields[1].beams[0]
-    same = upper.gantry_deg == lower.gantry_deg and _straight(upper) and _straight(lower)
-    return (upper, lower) if same else None
-
-
 def _straight(beam: BeamSetting) -> bool:
-    return beam.couch_deg == 0 and beam.exact_couch_deg == 0
+    square = beam.exact_collimator_deg % 90 == 0  # a jaw across the axis
+    return square and beam.couch_deg == 0 and beam.exact_couch_deg == 0
 
 
 def _lateral(beam: BeamSetting) -> bool:

@@ -5,12 +5,9 @@ from __future__ import annotations
 from functools import partial
 from typing import TYPE_CHECKING, Any
 
-from reportlab.platypus import KeepTogether
-
 from featherlog.paper import style
 from featherlog.paper.departures import departure_line
-from featherlog.paper.dose_figures import figures_table
-from featherlog.paper.dose_picture import legend, line_drawing
+from featherlog.paper.dose_profiles import match_profiles
 from featherlog.paper.fonts import join, safe, strong
 from featherlog.paper.layout import SIGNED, Furniture, build_pdf, lines_to_fill, space
 from featherlog.paper.review_grid import fraction_grid, is_delivered
@@ -23,12 +20,9 @@ if TYPE_CHECKING:
     from reportlab.platypus import Flowable, Table
 
     from featherlog.paper.style import PageSize
-    from featherlog.views.dose import DoseLine, JunctionDose
     from featherlog.views.review import ReviewView, ShareLine, SidesLine
 
 _GUTTER_PT = 12.0
-_PICTURE_PT = 126.0
-_BESIDE = 2
 
 
 def course_review(view: ReviewView, page_size: PageSize = "A4") -> bytes:
@@ -55,7 +49,7 @@ def _story(view: ReviewView, width: float) -> list[Flowable]:
         space(6),
         *fraction_grid(view, width),
         space(4),
-        *_profiles(view, width),
+        *match_profiles(view.dose, width),
         space(4),
         _sign_off(width),
     ]
@@ -118,7 +112,9 @@ def _share_table(lines: Sequence[ShareLine], width: float) -> Table:
     rows: list[list[Any]] = [[para(safe(head), style.SMALL) for head in heads]]
     for line in lines:
         counts = (line.planned, line.planned_so_far, line.delivered)
-        rows.append([para(strong(line.position)), *(para(safe(str(count))) for count in counts)])
+        rows.append(
+            [para(strong(line.position)), *(para(safe(figure(count, least=0))) for count in counts)]
+        )
     return _ruled(rows, shares(width, 4, 4, 4, 4))
 
 
@@ -144,44 +140,6 @@ def _side(field: str, dose_gy: float) -> Flowable:
 def _ruled(rows: list[list[Any]], widths: list[float]) -> Table:
     rule = ("LINEABOVE", (0, 1), (-1, -1), style.HAIR_PT, "black")
     return grid(rows, widths, rule, padding=(2, 1))
-
-
-def _profiles(view: ReviewView, width: float) -> list[Flowable]:
-    """Return a profile for each junction at its match depth, two to a row, and their figures."""
-    shown = [(junction, _match_line(junction)) for junction in view.dose.junctions]
-    if not shown:
-        return []
-    rows = [shown[first : first + _BESIDE] for first in range(0, len(shown), _BESIDE)]
-    return [
-        legend([item.name for item in shown[0][1].curves], width),
-        *(_profile_row(row, width) for row in rows),
-        space(3),
-        KeepTogether([_figures(shown, width), para(safe(view.dose.model), style.SMALL)]),
-    ]
-
-
-def _figures(shown: Sequence[tuple[JunctionDose, DoseLine]], width: float) -> Table:
-    return figures_table([(f"{j.junction}, {line.place}", line) for j, line in shown], width)
-
-
-def _profile_row(shown: Sequence[tuple[JunctionDose, DoseLine]], width: float) -> Table:
-    column = width / len(shown)
-    cells = [_profile(junction, line, column - _GUTTER_PT) for junction, line in shown]
-    return grid([cells], [column] * len(shown), padding=(0, 0))
-
-
-def _profile(junction: JunctionDose, line: DoseLine, width: float) -> list[Flowable]:
-    reference = f"levels in percent of {figure(junction.reference_dose_gy)} Gy"
-    what = f"{figure(line.depth_cm)} cm deep, {reference}"
-    return [
-        para(strong(f"JUNCTION {junction.junction}, {line.place}")),
-        para(safe(what), style.SMALL),
-        line_drawing(junction, line, width=width, height=_PICTURE_PT, with_legend=False),
-    ]
-
-
-def _match_line(junction: JunctionDose) -> DoseLine:
-    return next((line for line in junction.lines if "match" in line.place), junction.lines[0])
 
 
 def _sign_off(width: float) -> Table:

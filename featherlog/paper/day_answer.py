@@ -72,6 +72,7 @@ def _fraction(view: DayView) -> list[Flowable]:
     lines: list[Flowable] = [
         para(safe("FRACTION"), style.SMALL),
         para(safe(f"{view.fraction} of {view.fractions}"), display(20)),
+        *_step(view),
         para(safe(f"{view.phase} · {figure(view.dose_gy, least=1, most=3)} Gy")),
         para(safe(f"due {view.projected_date}")),
         space(3),
@@ -87,16 +88,30 @@ def _fraction(view: DayView) -> list[Flowable]:
     ]
 
 
+def _step(view: DayView) -> list[Flowable]:
+    if view.steps == 1:
+        return []
+    return [
+        para(safe(f"STEP {view.step} of {view.steps}"), display(14)),
+        para(safe("each step is set and treated at its own position"), style.SMALL),
+    ]
+
+
 def locked_banner(view: DayView, width: float) -> Table:
     """Return the warning of a fraction that was begun and not finished."""
     words = para(strong(f"PART-DELIVERED FRACTION: POSITION LOCKED AT {view.position}"), style.LEAD)
     rule = para(
         safe(
-            f"Fraction {view.fraction} must be finished at position {view.position}. "
+            f"{_what(view).capitalize()} must be finished at position {view.position}. "
             "Deliver only the remaining MU of each beam; a beam with 0 MU remaining is not treated."
         )
     )
     return grid([[[words, rule]]], [width], _BOX, padding=(6, 4))
+
+
+def _what(view: DayView) -> str:
+    whole = f"fraction {view.fraction}"
+    return whole if view.steps == 1 else f"step {view.step} of {whole}"
 
 
 def stop_page(view: DayView, width: float) -> list[Flowable]:

@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Any
 from reportlab.lib.styles import ParagraphStyle
 
 from featherlog.paper import style
-from featherlog.paper.fonts import Markup, join, safe, strong
+from featherlog.paper.fonts import ITALIC, Markup, join, safe, strong
 from featherlog.paper.style import grid, para, shares
 from featherlog.words import STILL_CM, figure, meterset
 
@@ -32,18 +32,23 @@ _HEADS = (
     "Moves",
     "",
 )
-_PARTS = (80, 36, 31, 34, 36, 40, 38, 100, 131, 12)
+_PARTS = (72, 36, 36, 37, 36, 40, 38, 100, 131, 12)
 _NUMBERS = range(1, 6)
 _FIELD_LINE = ParagraphStyle("field", parent=style.BODY, leading=13)
 _NEW_VALUE_PT = 11
 _SPACE = "\N{NO-BREAK SPACE}" * 2
 _JAW_LINE = ParagraphStyle("jaw", parent=style.BODY, leading=12)
+# Set in from the IEC values above it, so that a console's own scale is never read as one of them.
+_CONSOLE = ParagraphStyle("console", parent=style.SMALL, fontName=ITALIC, leftIndent=14)
 _EDGE_COLUMN = 6
 _EDGES = ("superior", "inferior")
+_TURNED = (2, 3)
+_BY_LEAVES = "leaf edge, from the plan: not set by hand"
+_CONSOLE_UNITS = {"deg": "°", "cm": " cm"}
 
 
 def settings_table(view: DayView, width: float, padding: float) -> Table:
-    """Return one table of all fields; changed jaws are bold and framed.
+    """Return one table of all fields; changed jaws and angles are bold and framed.
 
     ``padding`` is the room above and below each line, in points.
     """
@@ -51,14 +56,14 @@ def settings_table(view: DayView, width: float, padding: float) -> Table:
     commands: list[tuple[Any, ...]] = [("RIGHTPADDING", (5, 0), (5, -1), 6)]
     for field in view.fields:
         commands += _field_rules(len(rows))
-        rows.append([_field_line(field, first=view.shift == "first")] + [""] * (len(_HEADS) - 1))
+        rows.append([_field_line(field, _last(view))] + [""] * (len(_HEADS) - 1))
         for beam in field.beams:
             first = len(rows)
-            rows += _beam_rows(beam, part=view.part_delivered)
-            commands += _beam_rules(first, len(rows) - 1)
-            commands += [
-                _changed_frame(first + i) for i, jaws in enumerate(_lines(beam)) if _changed(jaws)
-            ]
+            rows += _beam_rows(beam, part=view.part_delivered, split=view.steps > 1)
+            commands += _beam_rules(beam, first, len(rows) - 1)
+            if beam.console:
+                commands.append(("SPAN", (0, len(rows)), (-1, len(rows))))
+                rows.append([_console_line(beam)] + [""] * (len(_HEADS) - 1))
     return grid(rows, shares(width, *_PARTS), *commands, padding=(2, padding), repeat_rows=1)
 
 
@@ -78,25 +83,54 @@ def _field_rules(row: int) -> list[tuple[Any, ...]]:
     ]
 
 
-def _beam_rules(first: int, last: int) -> list[tuple[Any, ...]]:
+def _beam_rules(beam: BeamView, first: int, last: int) -> list[tuple[Any, ...]]:
     spans = [("SPAN", (column, first), (column, last)) for column in range(_EDGE_COLUMN)]
-    return [*spans, ("LINEABOVE", (0, first), (-1, first), style.HAIR_PT, "black")]
+    turned = [
+        _changed_frame((column, first), (column, last))
+        for column, (now, before) in zip(_TURNED, _angles(beam), strict=True)
+        if _turns(now, before)
+    ]
+    moved = [
+        _changed_frame((_EDGE_COLUMN, first + i), (-1, first + i))
+        for i, jaws in enumerate(_lines(beam))
+        if _changed(jaws)
+    ]
+    line = ("LINEABOVE", (0, first), (-1, first), style.HAIR_PT, "black")
+    return [*spans, line, *turned, *moved]
 
 
-def _changed_frame(row: int) -> tuple[Any, ...]:
-    return ("BOX", (_EDGE_COLUMN, row), (-1, row), style.RULE_PT, "black")
+def _changed_frame(start: tuple[int, int], end: tuple[int, int]) -> tuple[Any, ...]:
+    return ("BOX", start, end, style.RULE_PT, "black")
 
 
-def _field_line(field: FieldView, *, first: bool) -> list[Any]:
+def _angles(beam: BeamView) -> tuple[tuple[float, float | None], ...]:
+    return (
+        (beam.collimator_deg, beam.previous_collimator_deg),
+        (beam.couch_deg, beam.previous_couch_deg),
+    )
+
+
+def _turns(now_deg: float, before_deg: float | None) -> bool:
+    return before_deg is not None and figure(now_deg) != figure(before_deg)
+
+
+def _last(view: DayView) -> str:
+    """Return what the table last stood at: nothing yet, the last fraction or its last step."""
+    if view.shift == "first":
+        return ""
+    return "the last fraction" if view.step == 1 else "the last step"
+
+
+def _field_line(field: FieldView, last: str) -> list[Any]:
     name = Markup(f'<font size="11">{strong(field.field)}</font>')
     facts = [name, safe(f"moved by {field.moved_by}")]
-    if not first and not field.since_last.words:
-        facts.append(safe("TABLE stays as in the last fraction"))
+    if last and not field.since_last.words:
+        facts.append(safe(f"TABLE stays as in {last}"))
     before = field.from_field_before.words if field.from_field_before else ()
     return [
         para(join("  ·  ", facts), _FIELD_LINE),
         *(_table_line("from the field before", words) for words in before),
-        *(_table_line("since the last fraction", words) for words in field.since_last.words),
+        *(_table_line(f"since {last}", words) for words in field.since_last.words),
     ]
 
 
@@ -124,15 +158,23 @@ def _line_key(jaw: JawView) -> tuple[str, bool, str]:
 
 def _changed(jaws: tuple[JawView, ...]) -> bool:
     return any(
-        jaw.previous_cm is not None and abs(jaw.cm - jaw.previous_cm) >= STILL_CM for jaw in jaws
+        not _by_leaves(jaw)
+        and jaw.previous_cm is not None
+        and abs(jaw.cm - jaw.previous_cm) >= STILL_CM
+        for jaw in jaws
     )
 
 
-def _beam_rows(beam: BeamView, *, part: bool) -> list[list[Any]]:
-    angles = (beam.gantry_deg, beam.collimator_deg, beam.couch_deg, beam.ssd_cm)
+def _by_leaves(jaw: JawView) -> bool:
+    return jaw.edges_by == "leaves"
+
+
+def _beam_rows(beam: BeamView, *, part: bool, split: bool) -> list[list[Any]]:
     left: list[Any] = [
-        _beam_name(beam, part=part),
-        *(para(safe(figure(value)), style.VALUE) for value in angles),
+        _beam_name(beam, part=part, split=split),
+        para(safe(figure(beam.gantry_deg)), style.VALUE),
+        *(_angle(now, before) for now, before in _angles(beam)),
+        para(safe(figure(beam.ssd_cm)), style.VALUE),
         para(strong(meterset(beam.to_deliver_mu)), style.VALUE),
     ]
     blank = [""] * _EDGE_COLUMN
@@ -141,9 +183,18 @@ def _beam_rows(beam: BeamView, *, part: bool) -> list[list[Any]]:
     ]
 
 
-def _beam_name(beam: BeamView, *, part: bool) -> list[Any]:
+def _angle(now_deg: float, before_deg: float | None) -> list[Any]:
+    if before_deg is None or not _turns(now_deg, before_deg):
+        return [para(safe(figure(now_deg)), style.VALUE)]
+    return [
+        para(safe(f"{figure(before_deg)}→"), style.SMALL_RIGHT),
+        para(strong(figure(now_deg)), style.VALUE),
+    ]
+
+
+def _beam_name(beam: BeamView, *, part: bool, split: bool) -> list[Any]:
     lines = [para(strong(beam.beam)), para(safe(beam.energy), style.SMALL)]
-    if part:
+    if part or split:
         given = f"{meterset(beam.delivered_mu)} of {meterset(beam.planned_mu)} given"
         lines.append(para(safe(given), style.SMALL))
     if part and meterset(beam.to_deliver_mu) == "0":
@@ -151,12 +202,23 @@ def _beam_name(beam: BeamView, *, part: bool) -> list[Any]:
     return lines
 
 
+def _console_line(beam: BeamView) -> Any:  # noqa: ANN401 - a reportlab flowable
+    shown = ", ".join(_on_console(name, value) for name, value in beam.console)
+    return para(safe(f"console: {shown}"), _CONSOLE)
+
+
+def _on_console(name: str, value: float) -> str:
+    what, _, unit = name.rpartition("_")
+    return f"{what}{_SPACE[0]}{figure(value)}{_CONSOLE_UNITS[unit]}"
+
+
 def _jaw_cells(jaws: tuple[JawView, ...]) -> list[Any]:
+    leaves = _by_leaves(jaws[0])
     return [
         para(safe(jaws[0].edge), style.SMALL),
         para(join(" · ", [_jaw(jaw) for jaw in jaws]), _JAW_LINE),
-        para(safe(jaws[0].words), style.SMALL),
-        para(safe(TICK)),
+        para(safe(_BY_LEAVES if leaves else jaws[0].words), style.SMALL),
+        "" if leaves else para(safe(TICK)),
     ]
 
 

@@ -29,18 +29,19 @@ def figures_table(lines: Sequence[tuple[str, DoseLine]], width: float) -> Table:
     Each row names the dose that its percents are of.
     """
     rows: list[list[Any]] = [[para(safe(head), style.SMALL) for head in _HEADS]]
+    spans: list[tuple[Any, ...]] = []
     for place, line in lines:
         kept = [(item.name, item.figures) for item in line.curves if item.figures is not None]
-        named = [_figure_cells(name, figures) for name, figures in kept]
-        firsts = [place, *[""] * (len(named) - 1)]
-        rows += [
-            [para(safe(first), style.SMALL), *cells]
-            for first, cells in zip(firsts, named, strict=False)
-        ]
+        if kept:
+            spans.append(("SPAN", (0, len(rows)), (0, len(rows) + len(kept) - 1)))
+        for number, (name, figures) in enumerate(kept):
+            first = para(safe("" if number else place), style.SMALL)
+            rows.append([first, *_figure_cells(name, figures)])
     return grid(
         rows,
         shares(width, *_PARTS),
         ("VALIGN", (0, 0), (-1, -1), "TOP"),
+        *spans,
         ("LINEBELOW", (0, 0), (-1, 0), style.HAIR_PT, "black"),
         padding=(2, 0.8),
         repeat_rows=1,

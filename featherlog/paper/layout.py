@@ -7,7 +7,16 @@ from dataclasses import dataclass
 from io import BytesIO
 from typing import TYPE_CHECKING
 
-from reportlab.platypus import BaseDocTemplate, Frame, PageTemplate, Spacer, Table
+from reportlab.lib.colors import black
+from reportlab.platypus import (
+    BaseDocTemplate,
+    CondPageBreak,
+    Frame,
+    HRFlowable,
+    PageTemplate,
+    Spacer,
+    Table,
+)
 
 from featherlog.paper import style
 from featherlog.paper.fonts import REGULAR, Markup, join, register, safe, strong
@@ -160,7 +169,7 @@ def _names(furniture: Furniture, width: float) -> Table:
             [para(identifiers), course],
             [line, ""],
         ],
-        shares(width, 3, 1),
+        shares(width, 5, 2),
         ("SPAN", (0, 2), (1, 2)),
         padding=(0, 1),
     )
@@ -189,6 +198,14 @@ def _distinct(notes: tuple[str, ...]) -> list[str]:
     # Views carry their own cautions, which may share sentences; each is printed once.
     sentences = re.split(r"(?<=\.)\s+", " ".join(notes))
     return list(dict.fromkeys(sentences))
+
+
+def section(title: str, keep_pt: float = 90.0) -> list[Flowable]:
+    """Return the title of a section; with less room than ``keep_pt`` it begins a new page."""
+    rule = HRFlowable(
+        width="100%", thickness=style.RULE_PT, color=black, spaceBefore=8, spaceAfter=2
+    )
+    return [CondPageBreak(keep_pt), rule, para(safe(title), style.display(13)), space(2)]
 
 
 def space(points: float) -> Flowable:

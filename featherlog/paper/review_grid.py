@@ -34,7 +34,7 @@ def fraction_grid(view: ReviewView, width: float) -> list[Flowable]:
     for first in range(0, len(view.grid), _ACROSS):
         body += [_strip(view.grid[first : first + _ACROSS], width), space(4)]
     key = f"Black: not as planned. Empty: not yet. Verified: {_YES} by a second person, {_NO} not."
-    return [*body, para(safe(key), style.SMALL), _people(view.grid)]
+    return [*body, para(safe(f"{key}{_splits(view.grid)}"), style.SMALL), _people(view.grid)]
 
 
 def is_delivered(row: GridRow) -> bool:
@@ -52,7 +52,7 @@ def departs(row: GridRow, cell: GridCell) -> bool:
 def _strip(rows: tuple[GridRow, ...], width: float) -> Table:
     lines: list[list[Any]] = [
         _line("Fraction", (strong(str(row.fraction)) for row in rows)),
-        _line("planned", (safe(row.planned_position) for row in rows)),
+        _line("planned", (safe(_short(row.planned_position)) for row in rows)),
     ]
     commands: list[tuple[Any, ...]] = [
         ("INNERGRID", (1, 0), (-1, -1), style.HAIR_PT, "black"),
@@ -83,11 +83,23 @@ def _line(name: str, marks: Iterable[Markup]) -> list[Any]:
 def _cell(row: GridRow, cell: GridCell) -> list[Paragraph]:
     if not is_delivered(row):
         return []
-    look = _BLACK_CELL if departs(row, cell) else _CELL
-    texts = [cell.delivered_position or _NO]
+    black = departs(row, cell)
+    look = _BLACK_CELL if black else _CELL
+    place = cell.delivered_position or _NO
+    # A departure is spelled out, one position to a line: a cell is too narrow for more.
+    texts = place.replace("+", "+ ").split(" ") if black else [_short(place)]
     if cell.delivered_percent < _WHOLE_PERCENT:
         texts.append(f"{cell.delivered_percent:.0f}%")
     return [para(safe(text), look) for text in texts]
+
+
+def _short(position: str) -> str:
+    return "split" if "+" in position else position
+
+
+def _splits(rows: tuple[GridRow, ...]) -> str:
+    found = dict.fromkeys(row.planned_position for row in rows if "+" in row.planned_position)
+    return f" Split: a fraction over positions {', '.join(found)}." if found else ""
 
 
 def _verified(row: GridRow) -> Markup:

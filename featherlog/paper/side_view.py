@@ -48,7 +48,7 @@ def side_drawing(
     """Return the side view of one junction as a vector drawing of the given size in points.
 
     The entrance skin is at the top, whichever way the patient lies; edges of today are solid,
-    those of the fraction before dashed, and the fields lightly tinted.
+    those of the position before dashed, and the fields lightly tinted.
 
     Raises:
         InputError: A name holds a character that the font cannot print.
@@ -165,7 +165,7 @@ def _add_foot(drawing: Drawing, scale: _Scale, side: SideView) -> None:
     drawing.add(ink.line((scale.left, 3), (scale.left + bar, 3), width=RULE_PT))
     for x in (scale.left, scale.left + bar):
         drawing.add(ink.line((x, 0.5), (x, 5.5), width=RULE_PT))
-    key = "5 cm   solid: today"
+    key = "5 cm"
     if side.previous_edges:
-        key += ", dashed: fraction before"
+        key += "   solid: today, dashed: position before"
     drawing.add(ink.label((scale.left + bar + 4, 1), key))

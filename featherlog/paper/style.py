@@ -11,7 +11,7 @@ from reportlab.lib.styles import ParagraphStyle
 from reportlab.lib.units import mm
 from reportlab.platypus import Paragraph, Table, TableStyle
 
-from featherlog.paper.fonts import BOLD, REGULAR, Markup
+from featherlog.paper.fonts import BOLD, REGULAR, Markup, safe, strong
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -94,6 +94,66 @@ def grid(
         style=TableStyle([*base, *commands]),
         repeatRows=repeat_rows,
     )
+
+
+def ruled(
+    heads: Sequence[str],
+    rows: Sequence[Sequence[Markup]],
+    width: float,
+    parts: Sequence[float],
+    *,
+    numbers_from: int | None = None,
+    strong_heads: bool = False,
+    body: ParagraphStyle = BODY,
+) -> Table:
+    """Return a plain table of text under small heads, with a hair rule above every row.
+
+    Columns from ``numbers_from`` on are set to the right. The heads repeat on a further page.
+    """
+    first_right = len(heads) if numbers_from is None else numbers_from
+    head = [
+        para(strong(text) if strong_heads else safe(text), SMALL_RIGHT if right else SMALL)
+        for text, right in ((text, column >= first_right) for column, text in enumerate(heads))
+    ]
+    lines = [
+        [
+            para(text, SMALL_RIGHT if column >= first_right else body)
+            for column, text in enumerate(row)
+        ]
+        for row in rows
+    ]
+    rule = ("LINEABOVE", (0, 1), (-1, -1), HAIR_PT, "black")
+    return grid([head, *lines], shares(width, *parts), rule, padding=(2, 0.6), repeat_rows=1)
+
+
+def grouped(
+    heads: Sequence[str],
+    groups: Sequence[tuple[Any, Sequence[Sequence[Any]]]],
+    width: float,
+    parts: Sequence[float],
+    *,
+    numbers: range = range(0),
+) -> Table:
+    """Return a table whose rows stand in groups, each below a line across all columns.
+
+    ``groups`` are (line, rows) of flowables; ``numbers`` are the columns set to the right. A line
+    is never parted from the first row of its group, and the heads repeat on a further page.
+    """
+    rows: list[list[Any]] = [
+        [para(safe(t), SMALL_RIGHT if c in numbers else SMALL) for c, t in enumerate(heads)]
+    ]
+    commands: list[tuple[Any, ...]] = [("VALIGN", (0, 0), (-1, -1), "TOP")]
+    for line, members in groups:
+        at, end = len(rows), len(rows) + len(members)
+        rows += [[line, *[""] * (len(heads) - 1)], *map(list, members)]
+        commands += [
+            ("SPAN", (0, at), (-1, at)),
+            ("LINEABOVE", (0, at), (-1, at), RULE_PT, "black"),
+            ("NOSPLIT", (0, at), (-1, min(at + 1, end))),
+        ]
+        if members:
+            commands.append(("LINEABOVE", (0, at + 1), (-1, end), HAIR_PT, "black"))
+    return grid(rows, shares(width, *parts), *commands, padding=(2, 1.2), repeat_rows=1)
 
 
 def shares(width: float, *parts: float) -> list[float]:

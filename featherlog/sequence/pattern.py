@@ -72,9 +72,18 @@ def blocks(positions: Sequence[str]) -> tuple[Block, ...]:
     return tuple(found)
 
 
-def shift_fractions(positions: Sequence[str]) -> tuple[int, ...]:
-    """Return the fractions whose position differs from the one before (the shift days)."""
-    return tuple(block.first for block in blocks(positions)[1:])
+def shift_fractions(fractions: Sequence[PlannedFraction]) -> tuple[int, ...]:
+    """Return the numbers of the fractions on which a position changes (the shift days).
+
+    It changes against the fraction before, or within a fraction that is split over positions.
+    """
+    before = fractions[0].steps[0].position
+    found = []
+    for fraction in fractions:
+        if any(step.position != before for step in fraction.steps):
+            found.append(fraction.number)
+        before = fraction.steps[-1].position
+    return tuple(found)
 
 
 def shares(positions: Sequence[str]) -> dict[str, int]:

@@ -39,8 +39,9 @@ class DeliveredBeam:
 class FractionState:
     """What one fraction has received; ``parts`` is each beam's delivered part of its meterset.
 
-    ``began_at`` is the position first treated, ``last_position`` each field's latest one, and
-    ``field_positions`` all of each field's positions in the order they were treated.
+    ``began_at`` is the position first treated, ``last_position`` each field's latest one, the field
+    treated last standing last, and ``field_positions`` all of each field's positions in the order
+    they were treated.
     """
 
     number: int
@@ -63,6 +64,7 @@ class Progress:
     fraction that is split over positions, from 1. ``position`` is where the step is to be treated:
     its planned position, or where it began when ``part_delivered``. ``due`` is each beam's part of
     its meterset still to be given in this step, ``expected`` its part once the step is complete.
+    ``begun_beams`` have had some of their meterset in this step.
     """
 
     complete: int
@@ -73,6 +75,7 @@ class Progress:
     part_delivered: bool = False
     due: Mapping[str, float] = field(default_factory=dict)
     expected: float = 1.0
+    begun_beams: frozenset[str] = frozenset()
 
 
 def fraction_states(
@@ -100,12 +103,15 @@ def _state(
         parts[row.beam] += row.part
     given = [row for row in rows if row.meterset_mu > 0] or rows
     positions: dict[str, dict[str, None]] = {}
+    last: dict[str, str] = {}
     for row in given:
         positions.setdefault(row.field, {})[row.position] = None
+        last.pop(row.field, None)  # so that the field treated last stands last
+        last[row.field] = row.position
     return FractionState(
         number=number,
         began_at=given[0].position,
-        last_position={row.field: row.position for row in given},
+        last_position=last,
         field_positions={name: tuple(labels) for name, labels in positions.items()},
         parts=parts,
         complete=all(part >= 1 - slack(meterset_percent) for part in parts.values()),
@@ -137,12 +143,22 @@ def due_in(
     names = [beam.beam for field in plan.positions[0].treated for beam in field.beams]
     parts = state.parts if state else dict.fromkeys(names, 0.0)
     ends = list(accumulate(step.weight for step in fraction.steps))
+    least = min(parts.values())
     step = next(
-        (number for number, end in enumerate(ends) if min(parts.values()) < end - allowed),
+        (
+            index
+            for index, (end, one) in enumerate(zip(ends, fraction.steps, strict=True))
+            if least < end - allowed * one.weight
+        ),
         len(ends) - 1,
     )
     before = ends[step - 1] if step else 0.0
-    begun = state is not None and any(part > before + allowed for part in parts.values())
+    here = {
+        name
+        for name, part in parts.items()
+        if part > before + allowed * fraction.steps[step].weight
+    }
+    begun = state is not None and bool(here)
     place = state.stood_at(len(ends)) if state and begun else fraction.steps[step].position
     return Progress(
         complete=0,
@@ -153,6 +169,7 @@ def due_in(
         part_delivered=begun,
         due={name: max(0.0, ends[step] - part) for name, part in parts.items()},
         expected=ends[step],
+        begun_beams=frozenset(here),
     )
 
 

@@ -32,7 +32,7 @@ def warnings(
         found += _gap_against_step(course, junction, settings)
         found += _step_against_penumbra(course, machine, junction, settings)
         found += _residual(machine, junction, settings)
-    found += _same_settings(settings)
+    found += _same_settings(course, settings)
     found += _ssd_against_skin(course, settings[0])
     return tuple(found)
 
@@ -131,7 +131,9 @@ def _residual(
             )
 
 
-def _same_settings(settings: Sequence[PositionSettings]) -> Iterator[str]:
+def _same_settings(course: Course, settings: Sequence[PositionSettings]) -> Iterator[str]:
+    turned = {junction.turned_field for junction in course.junctions}
+    names = {beam.name for field in course.fields if field.name in turned for beam in field.beams}
     for one, other in combinations(settings, 2):
         pairs = [
             (first, second)
@@ -145,7 +147,7 @@ def _same_settings(settings: Sequence[PositionSettings]) -> Iterator[str]:
         angles = [
             a.beam
             for a, b in pairs
-            if a.exact_collimator_deg and _turn(a) == _turn(b) and a.exact_jaw_cm != b.exact_jaw_cm
+            if a.beam in names and _turn(a) == _turn(b) and a.exact_jaw_cm != b.exact_jaw_cm
         ]
         if angles:
             yield f"{where} angles for {', '.join(angles)}: angles belong to a position"

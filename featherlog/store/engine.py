@@ -114,6 +114,10 @@ def writing(engine: Engine) -> Iterator[Connection]:
     with _transaction(engine, {_BEGIN: _WRITE}) as connection:
         check_schema(connection)
         if _is_postgresql(engine):
+            # As long as on SQLite; without it a writer would wait without end.
+            connection.exec_driver_sql(
+                f"SET LOCAL lock_timeout = {max(1, int(BUSY_SECONDS * 1000))}"
+            )
             # Readers pass this lock, other writers wait: the last number stays the last.
             connection.exec_driver_sql("LOCK TABLE ledger_entry IN EXCLUSIVE MODE")
         yield connection
@@ -141,6 +145,10 @@ def _transaction(engine: Engine, options: dict[str, Any]) -> Iterator[Connection
             yield connection
     except DBAPIError as error:
         raise StoreError(_sentence(engine.url, error)) from error
+    except UnicodeDecodeError as error:
+        raise StoreError(
+            f"The database {masked(engine.url)} is damaged: it holds text that is not UTF-8."
+        ) from error
 
 
 def _sqlite(url: URL) -> Engine:

@@ -11,7 +11,14 @@ from typing import TYPE_CHECKING
 from sqlalchemy import select
 
 from featherlog.errors import FeatherlogError
-from featherlog.store import comparing, health_file, health_postgresql, health_sqlite, ledger
+from featherlog.store import (
+    comparing,
+    health_file,
+    health_postgresql,
+    health_sqlite,
+    ledger,
+    queries,
+)
 from featherlog.store.engine import open_engine, reading, sqlite_file
 from featherlog.store.schema import REVISIONS
 from featherlog.store.tables import ledger_entry, metadata
@@ -44,6 +51,7 @@ def examine(url: str, now: datetime) -> Iterator[HealthLine]:
     file = sqlite_file(url)
     own = health_sqlite.CHECKS if file is not None else health_postgresql.CHECKS
     common: tuple[tuple[str, Check], ...] = (
+        ("purpose", _purpose),
         ("schema", _schema),
         ("ledger", _ledger),
         ("projections", _projections),
@@ -55,8 +63,20 @@ def examine(url: str, now: datetime) -> Iterator[HealthLine]:
                 yield check(connection)
         except FeatherlogError as error:
             yield HealthLine(name, FAIL, str(error), _RESTORE)
+        except Exception as error:  # noqa: BLE001 - damaged rows fail in any way; the rest is to speak
+            found = f"cannot be read: damaged ({type(error).__name__})"
+            yield HealthLine(name, FAIL, found, _RESTORE)
     if file is not None:
         yield from health_file.examine(file)
+
+
+def _purpose(connection: Connection) -> HealthLine:
+    told = queries.properties(connection)
+    if told not in ({"demo": "yes"}, {"demo": "no"}):
+        found = "whether the database is for practice is no longer known"
+        return HealthLine("purpose", FAIL, found, _RESTORE)
+    found = "for practice only" if told["demo"] == "yes" else "for treatment"
+    return HealthLine("purpose", OK, found)
 
 
 def _schema(connection: Connection) -> HealthLine:

@@ -39,7 +39,7 @@ def recorded(connection: Connection, entry: Entry) -> None:
         part_delivered=after["part_delivered"],
         fractions_complete=after["fractions_complete"],
         open_departures=_open_departures(connection, entry),
-        state="complete" if after["complete"] else "approved",
+        **({"state": "complete"} if after["complete"] else {}),
     )
 
 

@@ -127,6 +127,8 @@ class TestShift:
             "fraction 8 was begun and not finished",
             "fields upper thigh and lower thigh have had 6.00 and 5.00 fractions",
         )
+        [line] = [line for line in _due(department, "2026-03-04") if line.course == THIGH]
+        assert line.attention.startswith("STOP: see this course; ")
 
 
 class TestDueList:

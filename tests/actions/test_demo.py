@@ -12,6 +12,7 @@ from program import SCENARIO
 from featherlog.actions.database import status
 from featherlog.actions.demo import build_demo
 from featherlog.actions.solution import solve_files, stored_solution
+from featherlog.actions.today import today
 from featherlog.cli.show_demo import demo_text
 from featherlog.errors import RefusedError
 
@@ -51,6 +52,7 @@ def test_its_files_are_its_owners(demo: Demo) -> None:
     assert [file.name for file in demo.files] == [
         "FH-2041-fraction-6.pdf",
         "FH-2043-fraction-6.pdf",
+        "FH-2043-dossier.pdf",
         "FH-2042-review.pdf",
         "FH-2041-dose.svg",
     ]
@@ -58,13 +60,20 @@ def test_its_files_are_its_owners(demo: Demo) -> None:
     assert modes == {0o600}
 
 
-@pytest.mark.parametrize(("key", "file"), [("FH-2041", "thigh.toml"), ("FH-2042", "breast.toml")])
+@pytest.mark.parametrize(
+    ("key", "file"),
+    [("FH-2041", "thigh.toml"), ("FH-2042", "breast.toml"), ("FH-2043", "spine.toml")],
+)
 def test_a_stored_design_is_what_its_file_is_solved_to(demo: Demo, key: str, file: str) -> None:
     stored = stored_solution(str(demo.database), key)
     solved = solve_files(SCENARIO / file, SCENARIO / "alder.toml")
-    # Who it was approved by, and when, only the stored one can say.
-    names = ("heading", "content_hash", "signatures", "returned_reason", "printed_at")
-    assert replace(stored, **{name: getattr(solved, name) for name in names}) == solved
+    about = ("heading", "content_hash", "signatures", "returned_reason", "printed_at")
+    assert replace(solved, **{name: getattr(stored, name) for name in about}) == stored
+
+
+def test_the_craniospinal_patient_can_lie_prone(tmp_path: Path) -> None:
+    view = today(str(build_demo(tmp_path, prone=True).database), "FH-2043")
+    assert view.heading.patient_position == "HFP"
 
 
 def test_a_stopped_run_leaves_nothing_half_built(

@@ -28,7 +28,7 @@ from featherlog.actions.desk import practice_time
 from featherlog.actions.record import record
 from featherlog.actions.review import review
 from featherlog.actions.today import today
-from featherlog.errors import RefusedError
+from featherlog.errors import NotFoundError, RefusedError
 
 if TYPE_CHECKING:
     from program import Program
@@ -185,3 +185,64 @@ def test_two_fractions_a_day(department: Program) -> None:
     treated(department.database, "FH-2045", "2026-03-16T15:00:00")
     with pytest.raises(RefusedError, match=r"^fractions 3 and 4 were delivered today already"):
         confirmed(department.database, "FH-2045", "2026-03-16T18:00:00")
+
+
+def test_sides_that_had_unequal_dose_are_told(department: Program) -> None:
+    without = {"AP lower": 0.0, "PA lower": 0.0}
+    recorded(department.database, THIGH, "2026-03-02", fraction=2, position="B")
+    recorded(
+        department.database, THIGH, "2026-03-02", fraction=3, position="B", metersets_mu=without
+    )
+    recorded(department.database, THIGH, "2026-03-03", fraction=1, position="B")
+    [sides] = review(department.database, THIGH).sides
+    assert (sides.superior_gy, sides.inferior_gy, sides.equal) == (6.0, 4.0, False)
+
+
+def test_a_reason_is_given_once(department: Program) -> None:
+    treated(department.database, THIGH, "2026-03-02", position="B", reason="misread")
+    with pytest.raises(NotFoundError, match="has no open departure 1"):
+        explain(department.database, THIGH, 1, by=PHYSICIAN, reason="another")
+
+
+def test_a_remainder_elsewhere_differs_from_where_the_fraction_began(department: Program) -> None:
+    part = {"AP lower": 0.0, "PA lower": 0.0}
+    treated(department.database, THIGH, "2026-03-02", position="B", metersets_mu=part)
+    done = treated(department.database, THIGH, "2026-03-02", position="A")
+    assert _kinds(done) == [INCOHERENT]
+    assert done.departures[0].detail.startswith("upper thigh at B, lower thigh at A, planned B")
+
+
+def _split(department: Program) -> None:
+    """Prepare a thigh course whose every fraction is split over its three positions."""
+    text = (SCENARIO / "thigh.toml").read_text(encoding="utf-8")
+    file = department.folder / "split.toml"
+    file.write_text(
+        text.replace("FH-2041", "FH-2046")
+        .replace('pattern = "blocks"', 'pattern = "split"')
+        .replace("block_fractions = 5", "weights = [1.0, 1.0, 1.0]"),
+        encoding="utf-8",
+    )
+    with practice_time(moment("2026-02-28")):
+        prepare(department.database, file, by=AUTHOR)
+        check(department.database, "FH-2046", by=CHECKER)
+        approve(department.database, "FH-2046", by=PHYSICIAN)
+
+
+def test_a_split_fraction_is_treated_step_by_step_at_its_positions(department: Program) -> None:
+    _split(department)
+    done = [treated(department.database, "FH-2046", "2026-03-02") for _ in range(3)]
+    assert [record.positions[0][1] for record in done] == ["A", "B", "C"]
+    assert [record.complete for record in done] == [False, False, True]
+    assert all(record.departures == () and record.step_complete for record in done)
+    assert (done[-1].next_fraction, done[-1].next_position) == (2, "A")
+
+
+def test_a_broken_step_is_judged_by_that_step_alone(department: Program) -> None:
+    _split(department)
+    treated(department.database, "FH-2046", "2026-03-02")
+    short = {"AP lower": 0.0, "PA lower": 0.0}
+    broken = treated(department.database, "FH-2046", "2026-03-02", metersets_mu=short)
+    assert {kind for kind, _ in _kinds(broken)} == {"meterset short"}
+    view = today(department.database, "FH-2046")
+    assert (view.step, view.position, view.part_delivered) == (2, "B", True)
+    assert treated(department.database, "FH-2046", "2026-03-02").departures == ()

@@ -154,7 +154,8 @@ def test_help_loads_nothing_heavy(words: tuple[str, ...], department: Program) -
 
 
 def test_completion_loads_nothing_heavy(department: Program) -> None:
-    asked = {"_PYTHON_M_FEATHERLOG_COMPLETE": "complete_bash", "COMP_WORDS": "featherlog t"}
+    asked = {"_FEATHERLOG_COMPLETE": "complete_bash", "COMP_WORDS": "featherlog t"}
+    assert "today" in department.start(**asked, COMP_CWORD="1").out.split()
     modules = _modules(department, **asked, COMP_CWORD="1")
     assert "featherlog" in modules
     assert modules.isdisjoint(HEAVY)

@@ -1,16 +1,24 @@
 from __future__ import annotations
 
+from dataclasses import replace
+from typing import TYPE_CHECKING
+
 import pytest
 from small_plans import beam, half_beam_plan, plan, position
 
 from featherlog.dose.amounts import (
     completed_dose_gy,
     delivered_amounts,
+    earlier_amounts,
     planned_amounts,
     predicted_amounts,
     unfeathered_amounts,
 )
+from featherlog.junction.plan import FractionStep
 from featherlog.sequence.progress import DeliveredBeam
+
+if TYPE_CHECKING:
+    from featherlog.junction.plan import Plan
 
 
 def whole(fraction: int, beam_name: str, label: str) -> DeliveredBeam:
@@ -105,3 +113,78 @@ def test_a_fraction_counts_once_every_beam_has_its_meterset_within_tolerance(
 
 def test_a_fraction_beyond_the_prescribed_number_is_not_prescribed_dose() -> None:
     assert completed_dose_gy(half_beam_plan("A", 1.8), both(2, "A"), 2.0) == 0.0
+
+
+def split_plan() -> Plan:
+    """Two fractions of 2 Gy, a quarter at A and three quarters at B."""
+    steps = (FractionStep("A", 0.25), FractionStep("B", 0.75))
+    whole_plan = half_beam_plan("AB", 2.0)
+    fractions = tuple(replace(fraction, steps=steps) for fraction in whole_plan.fractions)
+    return replace(whole_plan, fractions=fractions)
+
+
+def test_split_fractions_give_each_position_its_part() -> None:
+    amounts = planned_amounts(split_plan())
+    for name in ("UPPER", "LOWER"):
+        assert (amounts["A", name], amounts["B", name]) == pytest.approx((1.0, 3.0))
+
+
+@pytest.mark.parametrize(
+    ("given", "a_gy", "b_gy"),
+    [
+        ([], 1.0, 3.0),
+        # The rest of a broken step is still to come where it was planned.
+        ([part(1, "UPPER", "A", 10)], 1.0, 3.0),
+        ([part(1, "UPPER", "A", 25), part(1, "UPPER", "B", 30)], 1.0, 3.0),
+        # What went to another position stays there: half of the fraction at A.
+        ([part(1, "UPPER", "A", 50)], 1.5, 2.5),
+    ],
+)
+def test_a_split_fractions_remainder_is_given_step_by_step(
+    given: list[DeliveredBeam], a_gy: float, b_gy: float
+) -> None:
+    amounts = predicted_amounts(split_plan(), given)
+    assert (amounts["A", "UPPER"], amounts["B", "UPPER"]) == pytest.approx((a_gy, b_gy))
+    assert (amounts["A", "LOWER"], amounts["B", "LOWER"]) == pytest.approx((1.0, 3.0))
+
+
+def test_a_split_fraction_is_complete_by_the_sum_of_its_steps() -> None:
+    steps = [
+        part(1, name, label, percent)
+        for name in ("UPPER", "LOWER")
+        for label, percent in (("A", 25), ("B", 75))
+    ]
+    assert completed_dose_gy(split_plan(), steps, 2.0) == pytest.approx(2.0)
+    assert completed_dose_gy(split_plan(), steps[:-1], 2.0) == 0.0
+
+
+def with_fields(of: Plan, **changes: object) -> Plan:
+    """Return the plan with the first field's values changed at every position."""
+    return replace(
+        of,
+        positions=tuple(
+            replace(each, fields=(replace(each.fields[0], **changes), *each.fields[1:]))
+            for each in of.positions
+        ),
+    )
+
+
+def test_a_field_with_its_own_dose_gets_that_in_every_fraction() -> None:
+    own = with_fields(half_beam_plan("AAB", 2.0), dose_per_fraction_gy=1.5)
+    assert planned_amounts(own) == pytest.approx(
+        {("A", "UPPER"): 3.0, ("A", "LOWER"): 4.0, ("B", "UPPER"): 1.5, ("B", "LOWER"): 2.0}
+    )
+    assert delivered_amounts(own, [part(1, "UPPER", "A", 50)]) == pytest.approx(
+        {("A", "UPPER"): 0.75}
+    )
+    split = with_fields(split_plan(), dose_per_fraction_gy=1.0)
+    assert planned_amounts(split)["B", "UPPER"] == pytest.approx(1.5)
+
+
+def test_an_earlier_courses_dose_is_whole_from_the_first_and_never_given_again() -> None:
+    of = with_fields(half_beam_plan("AB", 2.0), earlier_course="2029", earlier_dose_gy=30.0)
+    assert earlier_amounts(of) == {("A", "UPPER"): 30.0}
+    for amounts in (planned_amounts(of), predicted_amounts(of, []), unfeathered_amounts(of)):
+        assert {name for _, name in amounts} == {"LOWER"}
+    # A fraction of this course is complete without it.
+    assert completed_dose_gy(of, [whole(1, "LOWER", "A")], 2.0) == pytest.approx(2.0)

@@ -14,6 +14,7 @@ from featherlog.exchange.machine_file import parse_machine
 
 _HERE = Path(__file__).parent
 DESIGN = (_HERE / "good_design.toml").read_text(encoding="utf-8")
+TURNED = (_HERE / "good_turned_design.toml").read_text(encoding="utf-8")
 MACHINE_TEXT = (_HERE / "good_machine.toml").read_text(encoding="utf-8")
 MACHINE = parse_machine(MACHINE_TEXT, "machine.toml")
 
@@ -35,6 +36,25 @@ def test_a_bad_design_is_refused_in_these_words(
 ) -> None:
     assert written in DESIGN
     assert _design_faults(DESIGN.replace(written, instead, 1)) == faults
+
+
+@pytest.mark.parametrize(("written", "instead", "faults"), _cases("turned_design_faults.toml"))
+def test_a_bad_design_with_a_turned_field_is_refused_in_these_words(
+    written: str, instead: str, faults: list[str]
+) -> None:
+    assert written in TURNED
+    assert _design_faults(TURNED.replace(written, instead, 1)) == faults
+
+
+def test_a_design_of_earlier_fields_alone_is_refused() -> None:
+    lines = TURNED.splitlines(keepends=True)
+    [earlier] = [line for line in lines if line.startswith("earlier_course")]
+    jaws = 'moved_by = "jaws"\n'
+    everywhere = TURNED.replace(earlier, "").replace(jaws, jaws + earlier)
+    assert (
+        "design.toml line 21: field has only fields of earlier courses, but one must be treated in "
+        "this one"
+    ) in _design_faults(everywhere)
 
 
 @pytest.mark.parametrize(("written", "instead", "faults"), _cases("machine_faults.toml"))

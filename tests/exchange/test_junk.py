@@ -18,6 +18,7 @@ from featherlog.exchange.toml_lines import key_lines
 
 _HERE = Path(__file__).parent
 DESIGN = (_HERE / "good_design.toml").read_text(encoding="utf-8")
+TURNED = (_HERE / "good_turned_design.toml").read_text(encoding="utf-8")
 MACHINE_TEXT = (_HERE / "good_machine.toml").read_text(encoding="utf-8")
 MACHINE = read_machine(_HERE / "good_machine.toml")
 
@@ -45,7 +46,9 @@ _PLAIN = (
     | st.just(10**400)
     | st.floats()
     | st.text(st.characters(exclude_categories=["Cs"]), max_size=8)
-    | st.sampled_from(["A", "AP upper", "thigh", "blocks", "couch", "half-beam", "6 MV"])
+    | st.sampled_from(
+        ["A", "AP upper", "thigh", "blocks", "couch", "half-beam", "6 MV", "rotated", "split", "DE"]
+    )
     | st.dates()
     | st.datetimes()
     | st.times()
@@ -103,6 +106,11 @@ def test_junk_in_a_design_is_read_or_refused(line: int, junk: Any) -> None:
     assert _read_or_refused(_design, _with_junk(DESIGN, line, junk))
 
 
+@given(line=st.sampled_from(_value_lines(TURNED)), junk=JUNK)
+def test_junk_in_a_design_with_a_turned_field_is_read_or_refused(line: int, junk: Any) -> None:
+    assert _read_or_refused(_design, _with_junk(TURNED, line, junk))
+
+
 @given(line=st.sampled_from(_value_lines(MACHINE_TEXT)), junk=JUNK)
 def test_junk_in_a_machine_is_read_or_refused(line: int, junk: Any) -> None:
     assert _read_or_refused(_machine, _with_junk(MACHINE_TEXT, line, junk))
@@ -118,7 +126,7 @@ def test_a_torn_design_is_read_or_refused(start: int, length: int, between: str)
     assert _read_or_refused(_design, torn)
 
 
-@pytest.mark.parametrize("text", [DESIGN, MACHINE_TEXT])
+@pytest.mark.parametrize("text", [DESIGN, TURNED, MACHINE_TEXT])
 def test_every_key_is_found_on_its_own_line(text: str) -> None:
     lines = text.splitlines()
     for path, line in key_lines(text).items():

@@ -51,10 +51,10 @@ def move(lateral: float = 0.0, longitudinal: float = 0.0, vertical: float = 0.0)
 def jaws(superior: float, inferior: float, was_inferior: float | None) -> tuple[JawView, ...]:
     words = "" if was_inferior is None else jaw_move("Y1", inferior - was_inferior, "inferior")
     return (
-        JawView("Y2", "superior", superior, None if was_inferior is None else superior, ""),
-        JawView("Y1", "inferior", inferior, was_inferior, words),
-        JawView("X1", "side", -9.0, None if was_inferior is None else -9.0, ""),
-        JawView("X2", "side", 9.5, None if was_inferior is None else 9.5, ""),
+        JawView("Y2", "superior", "jaws", superior, None if was_inferior is None else superior, ""),
+        JawView("Y1", "inferior", "jaws", inferior, was_inferior, words),
+        JawView("X1", "side", "jaws", -9.0, None if was_inferior is None else -9.0, ""),
+        JawView("X2", "side", "jaws", 9.5, None if was_inferior is None else 9.5, ""),
     )
 
 
@@ -67,11 +67,14 @@ def beam(
         gantry_deg=gantry,
         collimator_deg=collimator,
         couch_deg=0.0,
+        previous_collimator_deg=None if was is None else collimator,
+        previous_couch_deg=None if was is None else 0.0,
         ssd_cm=91.5,
         planned_mu=103.5,
         delivered_mu=0.0,
         to_deliver_mu=103.5,
         jaws=jaws(10.8, inferior, was),
+        console=(),
     )
 
 
@@ -143,6 +146,8 @@ def shift_day(heading: Heading) -> DayView:
         stop_reasons=(),
         fraction=6,
         fractions=20,
+        step=1,
+        steps=1,
         phase="Phase 1",
         dose_gy=1.8,
         projected_date="2031-03-10",
@@ -200,7 +205,12 @@ def first_day(no_shift_day: DayView) -> DayView:
         replace(
             f,
             beams=tuple(
-                replace(b, jaws=tuple(replace(j, previous_cm=None) for j in b.jaws))
+                replace(
+                    b,
+                    previous_collimator_deg=None,
+                    previous_couch_deg=None,
+                    jaws=tuple(replace(j, previous_cm=None) for j in b.jaws),
+                )
                 for b in f.beams
             ),
         )
@@ -267,6 +277,36 @@ def crowded_day(shift_day: DayView) -> DayView:
         junctions=(
             junction("J1", "Cranial", "Upper spine", -1.0),
             junction("J2", "Upper spine", "Lower spine and sacrum", -1.0),
+        ),
+    )
+
+
+@pytest.fixture
+def step_day(shift_day: DayView) -> DayView:
+    """The second step of a split fraction: turned laterals, leaf edges, a console's own scale."""
+    cranial, spinal = shift_day.fields
+    console = (("gantry_deg", 180.0), ("collimator_deg", 183.5), ("couch_deg", 186.0))
+    lateral = replace(
+        cranial.beams[0],
+        collimator_deg=-7.1,
+        previous_collimator_deg=-7.6,
+        couch_deg=5.5,
+        previous_couch_deg=5.0,
+        to_deliver_mu=34.5,
+        delivered_mu=34.5,
+        console=(*console, ("Y1_cm", 9.6)),
+    )
+    leaves = tuple(
+        jaw if jaw.edge == "side" else replace(jaw, edges_by="leaves")
+        for jaw in spinal.beams[0].jaws
+    )
+    return replace(
+        shift_day,
+        step=2,
+        steps=3,
+        fields=(
+            replace(cranial, beams=(lateral, replace(cranial.beams[1], console=console))),
+            replace(spinal, beams=(replace(spinal.beams[0], jaws=leaves), spinal.beams[1])),
         ),
     )
 

@@ -8,7 +8,7 @@ from pdf_runs import font_files, overlapping, page_runs, page_texts, squeezed, w
 from featherlog.paper.course_review import course_review
 from featherlog.paper.review_grid import departs
 from featherlog.paper.style import MARGIN_PT, PAGE_SIZES, SMALLEST_PT
-from featherlog.views.review import GridCell, GridRow
+from featherlog.views.review import GridCell, GridRow, ShareLine
 from featherlog.words import DEMO_NOTICE, RECORD_CAUTION
 
 if TYPE_CHECKING:
@@ -117,3 +117,27 @@ def test_a_sentence_that_two_cautions_share_is_printed_once(review: ReviewView) 
     text = whole_text(course_review(replace(review, dose=dose)))
     assert text.count(squeezed(review.caution)) == 1
     assert text.count(squeezed(review.dose.caution)) == 1
+
+
+def test_counts_are_whole_numbers_or_parts_of_two_decimals(review: ReviewView) -> None:
+    shares = (ShareLine("A", 10.0, 5.0, 4.6667), *review.shares[1:])
+    assert "A1054.67" in whole_text(course_review(replace(review, shares=shares)))
+
+
+def test_positions_of_a_split_fraction_stay_inside_their_cells(review: ReviewView) -> None:
+    def split(row: GridRow) -> GridRow:
+        cells = tuple(
+            replace(cell, delivered_position=cell.delivered_position and "A+B+C")
+            for cell in row.cells
+        )
+        return replace(row, planned_position="A+B+C", cells=cells)
+
+    rows = [split(row) for row in review.grid]
+    left = replace(rows[6].cells[1], delivered_position="A+B", delivered_percent=66.7)
+    rows[6] = replace(rows[6], cells=(rows[6].cells[0], left))
+    data = course_review(replace(review, grid=tuple(rows)))
+    text = whole_text(data)
+    assert "planned" + "split" * 20 in text
+    assert "Upperspine" + "split" * 6 + "A+B67%" in text
+    assert "Split:afractionoverpositionsA+B+C." in text
+    assert all(overlapping(runs) == [] for runs in page_runs(data))

@@ -25,10 +25,18 @@ if TYPE_CHECKING:
 
     from featherlog.views.day import DayView, GapView
 
-DAYS = ("shift_day", "no_shift_day", "first_day", "part_day", "stop_day", "crowded_day")
+DAYS = (
+    "shift_day",
+    "no_shift_day",
+    "first_day",
+    "part_day",
+    "step_day",
+    "stop_day",
+    "crowded_day",
+)
 READY_DAYS = ("shift_day", "no_shift_day", "part_day", "crowded_day")
 # Codes that decide what is printed; they are not printed themselves.
-CODES = {"status", "shift", "stop_reasons"}
+CODES = {"status", "shift", "stop_reasons", "edges_by"}
 
 
 @pytest.fixture(params=DAYS)
@@ -218,3 +226,37 @@ def test_edges_come_before_side_jaws_whatever_their_order_in_the_view(shift_day:
     view = replace(shift_day, fields=(replace(field, beams=(beam,)),))
     text = whole_text(shift_sheet(view))
     assert text.index("superiorY2") < text.index("inferiorY1") < text.index("sideX2")
+
+
+def test_a_step_of_a_split_fraction_is_named_beside_the_fraction(step_day: DayView) -> None:
+    text = whole_text(shift_sheet(step_day))
+    assert "6of20STEP2of3" in text
+    assert "34.5of103.5given" in text
+    assert "sincethelaststep" in text
+    locked = whole_text(shift_sheet(replace(step_day, part_delivered=True)))
+    assert "Step2offraction6mustbefinishedatpositionB." in locked
+
+
+def test_a_fraction_of_one_step_names_no_step(shift_day: DayView) -> None:
+    assert "STEP" not in whole_text(shift_sheet(shift_day))
+
+
+def test_a_changed_angle_shows_its_old_value(step_day: DayView) -> None:
+    text = whole_text(shift_sheet(step_day))
+    assert "−7.6→−7.1" in text
+    assert "5.0→5.5" in text
+    assert text.count("7.1→") == 0  # the other lateral does not turn
+
+
+def test_the_scale_of_the_console_stands_apart_and_replaces_nothing(step_day: DayView) -> None:
+    text = whole_text(shift_sheet(step_day))
+    assert "console:gantry180.0°,collimator183.5°,couch186.0°,Y19.6cm" in text
+    assert "270.0" in text
+    assert text.count("console:") == 2
+
+
+def test_a_leaf_edge_is_not_offered_to_be_set(step_day: DayView, shift_day: DayView) -> None:
+    with_leaves, with_jaws = (whole_text(shift_sheet(day)) for day in (step_day, shift_day))
+    assert "leafedge,fromtheplan:notsetbyhand" in with_leaves
+    assert with_jaws.count("−15.1→−16.0") == 2
+    assert with_leaves.count("−15.1→−16.0") == 1

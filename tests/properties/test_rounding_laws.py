@@ -82,6 +82,35 @@ def test_no_other_way_of_rounding_the_inferior_field_changes_the_mismatch_less(
     assert abs(found.rounding_cm) == pytest.approx(least, abs=1e-9)
 
 
+@given(courses, steps)
+def test_rounding_moves_no_neighbours_edge_by_more_than_half_a_step(
+    of: tuple[Aims, Aims, float, bool], by: Steps
+) -> None:
+    position_b = rounded(of, by)
+    place = next(p for p in position_b.junction("J").mismatches if p.place == "match depth")
+    for one in position_b.fields[0].beams:
+        jaw = one.inferior_jaw
+        half = abs(moved(one, jaw, one.exact_jaw_cm[jaw] + by.jaw_cm / 2, place))
+        assert abs(moved(one, jaw, one.jaw_cm[jaw], place)) <= half + 1e-9
+
+
+@given(st.floats(8, 20), st.floats(8, 20), st.floats(-12, 2), offset, steps)
+def test_rounding_changes_the_match_of_two_beams_by_no_more_than_half_a_step(
+    upper: float, lower: float, y_cm: float, offset_cm: float, by: Steps
+) -> None:
+    course = pair(
+        [beam("u", 180, (0, y_cm, upper))],
+        [beam("l", 180, (0, y_cm, -lower))],
+        junction("J", (0, 0, 0), 5.0, critical_depth_cm=8.0),
+        offsets_cm=(0.0, offset_cm),
+    )
+    found = solve(course, machine(steps=by))[1].junction("J")
+    # A jaw's step is seen from the source at the match point, 5 cm below the back.
+    half = by.jaw_cm / 2 * (100 + y_cm + 5) / 100
+    at_match = [place for place in found.mismatches if place.place == "match depth"]
+    assert all(abs(place.rounded_cm) <= half + 1e-9 for place in at_match)
+
+
 def around(jaw_cm: float, step: float) -> list[float]:
     """Give the four settable positions nearest to a jaw."""
     below = floor(jaw_cm / step)

@@ -2,11 +2,13 @@
 
 Two fields of lengths L1 and L2 on the skin, at source-skin distances SSD1 and SSD2, meet at depth
 d when the gap on the skin is ½·L1·d/SSD1 + ½·L2·d/SSD2. Opposed pairs that all meet at d leave, at
-depth z, a three-field overlap of ½(L1 - L2)(z - d)/SSD.
+depth z, a three-field overlap of ½(L1 - L2)(z - d)/SSD. Craniospinal laterals turn the collimator
+by atan(spine jaw/SAD) and the couch by atan(own jaw/SAD).
 """
 
 from __future__ import annotations
 
+from pathlib import Path
 from typing import TYPE_CHECKING
 
 import pytest
@@ -14,12 +16,22 @@ from hypothesis import given
 from hypothesis import strategies as st
 from spine_course import beam, junction, machine, pair
 
+from featherlog.exchange.design_file import read_design
+from featherlog.exchange.machine_file import read_machine
 from featherlog.junction.design import Beam, Side
+from featherlog.junction.hand_check import (
+    COLLIMATOR_RULE,
+    COUCH_RULE,
+    GAP_RULE,
+    OVERLAP_RULE,
+    hand_checks,
+)
 from featherlog.junction.solve import solve
 
 if TYPE_CHECKING:
     from featherlog.junction.plan import JunctionSetting
 
+FIXTURES = Path(__file__).parents[2] / "fixtures"
 SAD = 100.0
 length = st.floats(4, 40)
 ssd = st.floats(70, 130)
@@ -58,6 +70,18 @@ def test_mantle_and_para_aortic_fields() -> None:
     assert found.gap_without_overlap_cm == pytest.approx(2.625, abs=1e-5)
 
 
+def test_the_shipped_design_of_that_case_gives_its_numbers_by_hand_and_by_planes() -> None:
+    on = read_machine(FIXTURES / "standard_100cm.toml")
+    course = read_design(FIXTURES / "mantle_para_aortic.toml", on)
+    settings = solve(course, on)
+    found = {check.formula: check for check in hand_checks(course, settings)}
+    expected = {GAP_RULE: 2.25, OVERLAP_RULE: 0.375}
+    for rule, figure in expected.items():
+        assert found[rule].by_formula == pytest.approx(figure)
+        assert found[rule].exact == pytest.approx(figure)
+    assert settings[0].junction("upper abdomen").gap_without_overlap_cm == pytest.approx(2.625)
+
+
 @given(length, length, st.floats(5, 12), st.floats(0, 12))
 def test_three_field_overlap(upper: float, lower: float, depth: float, beyond: float) -> None:
     found = matched_pairs(upper, lower, depth, depth + beyond)
@@ -83,3 +107,24 @@ def test_gap_of_two_fields_at_any_distance(
     (skin,) = solve(course, machine())[0].junction("J").skin_gaps
     expected = sum(long / 2 * depth / far for long, far in zip(lengths, ssds, strict=True))
     assert skin.exact_cm == pytest.approx(expected, abs=1e-9)
+
+
+@pytest.mark.parametrize(("spine_cm", "degrees"), [(15.0, 4.3), (36.0, 10.2)])
+def test_collimator_of_laterals_over_a_spine_field(spine_cm: float, degrees: float) -> None:
+    found = by_formula(COLLIMATOR_RULE, spine_cm=spine_cm, lateral_cm=20.0)
+    assert found == pytest.approx(degrees, abs=0.05)
+
+
+def test_couch_of_laterals_of_20_cm() -> None:
+    found = by_formula(COUCH_RULE, spine_cm=15.0, lateral_cm=20.0)
+    assert found == pytest.approx(5.7, abs=0.05)
+
+
+def by_formula(rule: str, *, spine_cm: float, lateral_cm: float) -> float:
+    """Return a textbook angle for fields of those lengths, the match point at isocentre level."""
+    lateral = beam("lateral", 90, (0, 0, lateral_cm / 2))
+    spine = beam("spine", 180, (0, 0, -spine_cm / 2))
+    between = junction("J", (0, 0, 0), 0.0, turned_field="UPPER")
+    course = pair([lateral], [spine], between)
+    found = {check.formula: check for check in hand_checks(course, solve(course, machine()))}
+    return found[rule].by_formula

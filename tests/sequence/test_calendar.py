@@ -1,3 +1,4 @@
+from dataclasses import replace
 from datetime import date
 
 import pytest
@@ -26,6 +27,13 @@ def test_a_treatment_day_is_a_chosen_weekday_that_is_not_closed() -> None:
 def test_dates_skip_weekends_and_closures() -> None:
     order = sequence(closed_dates=(NEXT_MONDAY,))
     assert project_dates(order, 3, 1, FRIDAY) == (FRIDAY, NEXT_TUESDAY, date(2031, 3, 12))
+
+
+def test_public_holidays_are_no_treatment_days() -> None:
+    order = replace(sequence(closed_dates=(TUESDAY,)), holidays=(MONDAY, NEXT_MONDAY))
+    assert not is_treatment_day(order, MONDAY)
+    assert project_dates(order, 4, 1, MONDAY)[-2:] == (FRIDAY, NEXT_TUESDAY)
+    assert next_date(order, 1, FRIDAY, 1) == NEXT_TUESDAY
 
 
 def test_the_first_date_waits_for_a_treatment_day() -> None:

@@ -7,7 +7,7 @@ import pytest
 from spine_course import sequence, spine
 
 from featherlog.junction.design import Pattern, Phase
-from featherlog.junction.plan import FractionStep
+from featherlog.junction.plan import FractionStep, PlannedFraction
 from featherlog.sequence.pattern import (
     Block,
     assign,
@@ -62,10 +62,21 @@ def test_shares_of_three_positions(
     assert counted == dict(zip("ABC", expected, strict=True))
 
 
+def _fractions(*steps: str) -> list[PlannedFraction]:
+    return [
+        PlannedFraction(n, "one", 2.0, tuple(FractionStep(label, 1 / len(each)) for label in each))
+        for n, each in enumerate(steps, start=1)
+    ]
+
+
+def test_a_split_fraction_shifts_within_itself() -> None:
+    assert shift_fractions(_fractions("A", "A", "AB", "B", "BA")) == (3, 5)
+
+
 def test_blocks_and_the_fractions_that_shift() -> None:
     assert blocks("AABBBA") == (Block(1, 2, "A"), Block(3, 5, "B"), Block(6, 6, "A"))
-    assert shift_fractions("AABBBA") == (3, 6)
-    assert shift_fractions("AAA") == ()
+    assert shift_fractions(_fractions("A", "A", "B", "B", "B", "A")) == (3, 6)
+    assert shift_fractions(_fractions("A", "A", "A")) == ()
 
 
 @pytest.mark.parametrize(

@@ -5,9 +5,9 @@ from __future__ import annotations
 from dataclasses import replace
 from typing import TYPE_CHECKING
 
-from spine_course import beam, junction, machine, pair, reach
+from spine_course import beam, junction, machine, pair, reach, sequence, spine
 
-from featherlog.junction.design import Technique
+from featherlog.junction.design import Angles, Pattern, Technique
 from featherlog.sequence.planning import plan_course
 
 if TYPE_CHECKING:
@@ -116,3 +116,53 @@ def test_the_same_meterset_with_different_jaws() -> None:
     assert found == (
         "positions A and B have different jaws but the same MU for u: MU belong to a position"
     )
+
+
+def test_held_angles_that_leave_more_than_a_jaw_may_be_off() -> None:
+    held_angles = spine(angles=Angles.HELD, offsets_cm=(0.0, -3.0), fractions=6)
+    found = [sentence for sentence in said(held_angles) if "J1, position B" in sentence]
+    assert len(found) == 1
+    # 0.1 cm for each cm at 10 cm to a side, so 0.3 × 3 / 10; less than that in depth.
+    assert "of 0.23 cm with held angles at" in found[0]
+    assert (
+        "positions A and B have different jaws but the same angles for left lateral, "
+        "right lateral: angles belong to a position"
+    ) in said(held_angles)
+    recomputed = said(spine(offsets_cm=(0.0, -3.0), fractions=6))
+    assert not [sentence for sentence in recomputed if "angles" in sentence]
+
+
+def test_the_collimator_of_a_field_that_is_not_turned_belongs_to_the_course() -> None:
+    both = (
+        [beam("u", 180, (0, -4, 10), collimator_deg=90, ssd_cm=96.0)],
+        [beam("l", 180, (0, -4, -10), ssd_cm=96.0)],
+    )
+    assert said(pair(*both, BETWEEN, offsets_cm=(0.0, -1.0))) == ()
+
+
+def test_a_planned_separation_is_no_residual() -> None:
+    planned = replace(BETWEEN, separation_cm=0.4, borne_by="LOWER")
+    assert not [sentence for sentence in said(two_fields(planned)) if "tolerance" in sentence]
+
+
+def test_what_is_left_beside_a_planned_separation_is_named_as_such() -> None:
+    half = junction(
+        "J",
+        (0, 0, 0),
+        4.0,
+        technique=Technique.HALF_BEAM,
+        lateral_limits_cm=(0, 0),
+        separation_cm=0.4,
+        borne_by="LOWER",
+    )
+    opposed = [beam("u", 0, (0, -4, 0))], [beam("l", 180, (0, -4, 0), ssd_cm=96.0)]
+    found = said(pair(*opposed, half, offsets_cm=(0.0, 2.0)))
+    assert any("cm beyond the planned separation at entrance skin" in each for each in found)
+
+
+def test_shares_of_split_fractions_are_counted_in_parts() -> None:
+    even = replace(sequence(Pattern.SPLIT, "AB", None), weights=(1.0, 1.0))
+    of = two_fields(BETWEEN, 0.0, -1.0)
+    assert said(replace(of, sequence=even)) == ()
+    uneven = replace(even, weights=(1.0, 3.0))
+    assert said(replace(of, sequence=uneven)) == ("shares are uneven: A 5, B 15 of 20 fractions",)
