@@ -6,6 +6,7 @@ from typing import TYPE_CHECKING
 
 import msgspec
 
+from featherlog import words
 from featherlog.actions.machines import machine_named
 from featherlog.actions.signing import signing_desk
 from featherlog.actions.stored import load_latest
