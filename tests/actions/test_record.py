@@ -201,7 +201,7 @@ def test_sides_that_had_unequal_dose_are_told(department: Program) -> None:
 def test_a_reason_is_given_once(department: Program) -> None:
     treated(department.database, THIGH, "2026-03-02", position="B", reason="misread")
     with pytest.raises(NotFoundError, match="has no open departure 1"):
-        explain(department.database, THIGH, 1, by=PHYSICIAN, reason="another")
+        explain(department.database, THIGH, 1, by=by(PHYSICIAN), reason="another")
 
 
 def test_a_remainder_elsewhere_differs_from_where_the_fraction_began(department: Program) -> None:
@@ -223,9 +223,9 @@ def _split(department: Program) -> None:
         encoding="utf-8",
     )
     with practice_time(moment("2026-02-28")):
-        prepare(department.database, file, by=AUTHOR)
-        check(department.database, "FH-2046", by=CHECKER)
-        approve(department.database, "FH-2046", by=PHYSICIAN)
+        prepare(department.database, file, by=by(AUTHOR))
+        check(department.database, "FH-2046", by=by(CHECKER))
+        approve(department.database, "FH-2046", by=by(PHYSICIAN), verified_by=by(CHECKER))
 
 
 def test_a_split_fraction_is_treated_step_by_step_at_its_positions(department: Program) -> None:
