@@ -24,6 +24,17 @@ class Act(StrEnum):
     CONFIRM = "confirm a fraction"
     RECORD = "record a fraction"
     EXPLAIN = "explain a departure"
+    CORRECT = "correct a record"
+    NOTE = "note an event"
+    PAUSE = "pause a course"
+    RELEASE = "release a pause"
+    END = "end a course"
+    CHANGE_MACHINE = "change the machine"
+    READ_TABLE = "read the table"
+    ATTEND = "attest physics presence"
+    CHECK_POSITION = "check a new position"
+    DECIDE = "decide on a departure"
+    REVIEW = "sign a review"
 
 
 _TREATING = (THERAPIST, PHYSICIST, PHYSICIAN)
@@ -42,13 +53,31 @@ MAY: dict[Act, tuple[str, ...]] = {
     Act.CONFIRM: _TREATING,
     Act.RECORD: _TREATING,
     Act.EXPLAIN: _TREATING,
+    Act.CORRECT: _TREATING,
+    Act.NOTE: _TREATING,
+    Act.PAUSE: _TREATING,
+    Act.RELEASE: (PHYSICIST, PHYSICIAN),
+    Act.END: (PHYSICIAN,),
+    Act.CHANGE_MACHINE: (PHYSICIST,),
+    Act.READ_TABLE: _TREATING,
+    Act.ATTEND: (PHYSICIST,),
+    Act.CHECK_POSITION: (PHYSICIST,),
+    Act.DECIDE: (PHYSICIST, PHYSICIAN),
+    Act.REVIEW: _TREATING,
 }
 """The roles that may do each act. Everyone may replace their own key while they can open it."""
 
-ALWAYS_TWO = (Act.CONFIRM, Act.RECORD, Act.RESTORE_ADMINISTRATOR)
+ALWAYS_TWO = (
+    Act.CONFIRM,
+    Act.RECORD,
+    Act.CORRECT,
+    Act.READ_TABLE,
+    Act.RESTORE_ADMINISTRATOR,
+)
 """Acts that no policy leaves to one person."""
 
-POLICY_MAY_ASK_TWO = tuple(act for act in Act if act is not Act.RESTORE_ADMINISTRATOR)
+STAFF_ACTS = (Act.ADD_STAFF, Act.REPLACE_KEY, Act.REMOVE_STAFF, Act.RESTORE_ADMINISTRATOR)
+"""Acts whose signers no policy decides about: each has a rule of its own."""
 
 
 class ReadBackItem(StrEnum):

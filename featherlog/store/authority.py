@@ -110,8 +110,10 @@ class People:
     def _number_faults(self, act: Act, signatures: tuple[Signature, ...]) -> Iterator[str]:
         if len({signature.who for signature in signatures}) < len(signatures):
             yield "one person signed twice"
-        if len(signatures) < 1 + needs_two(self.policy, act):
-            yield f"two people must sign to {act}"
+        needed = 1 + needs_two(self.policy, act)
+        if len(signatures) < needed:
+            people = "two people" if needed > 1 else f"one person who is {' or '.join(MAY[act])}"
+            yield f"{people} must sign to {act}"
 
     def _new_key_faults(self, entry: Entry, signatures: tuple[Signature, ...]) -> Iterator[str]:
         """The new key signs last, which shows that its owner can open it."""

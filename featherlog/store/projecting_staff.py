@@ -56,8 +56,8 @@ def signing_failed(connection: Connection, entry: Entry) -> None:
 
 def signed(connection: Connection, entry: Entry) -> None:
     """Forget the wrong passphrases of everyone who signed."""
-    for name in signed_by(entry):
-        connection.execute(delete(failed_signing).where(failed_signing.c.name == name))
+    if names := signed_by(entry):
+        connection.execute(delete(failed_signing).where(failed_signing.c.name.in_(names)))
 
 
 def policy_set(connection: Connection, entry: Entry) -> None:
