@@ -26,7 +26,12 @@ def recorded(connection: Connection, entry: Entry) -> None:
     """Note what was delivered, what differed, and where the course stands after it."""
     content, after = entry.content, entry.content["after"]
     fraction = {"fraction": content["fraction"]}
-    people = {"performer": content["performer"], "verifier": content["verifier"], "at": entry.at}
+    people = {
+        "performer": content["performer"],
+        "verifier": content["verifier"],
+        "at": content.get("treated_at", entry.at),
+        "late": content.get("late", False),
+    }
     _add(connection, entry, delivery, [fraction | people | beam for beam in content["beams"]])
     _add(connection, entry, observation, [fraction | gap for gap in content["gaps"]])
     _add_departures(connection, entry)
@@ -38,7 +43,7 @@ def recorded(connection: Connection, entry: Entry) -> None:
         next_date=after["next_date"],
         part_delivered=after["part_delivered"],
         fractions_complete=after["fractions_complete"],
-        open_departures=_open_departures(connection, entry),
+        open_departures=open_departures(connection, entry),
         **({"state": "complete"} if after["complete"] else {}),
     )
 
@@ -53,7 +58,7 @@ def explained(connection: Connection, entry: Entry) -> None:
         "explained_entry": entry.number,
     }
     change_one(connection, entry, departure, which, values)
-    change_course(connection, entry, open_departures=_open_departures(connection, entry))
+    change_course(connection, entry, open_departures=open_departures(connection, entry))
 
 
 def _add(connection: Connection, entry: Entry, table: Table, rows: list[dict[str, Any]]) -> None:
@@ -78,7 +83,8 @@ def _add_departures(connection: Connection, entry: Entry) -> None:
     _add(connection, entry, departure, rows)
 
 
-def _open_departures(connection: Connection, entry: Entry) -> int:
+def open_departures(connection: Connection, entry: Entry) -> int:
+    """Return how many departures of the entry's course nobody has explained or decided."""
     query = (
         select(func.count())
         .where(departure.c.course == entry.course)

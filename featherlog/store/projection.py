@@ -11,7 +11,12 @@ from typing import TYPE_CHECKING
 from sqlalchemy import delete, exc, insert, update
 
 from featherlog.errors import IntegrityError
-from featherlog.store import projecting_delivery, projecting_designs, projecting_staff
+from featherlog.store import (
+    projecting_delivery,
+    projecting_designs,
+    projecting_life,
+    projecting_staff,
+)
 from featherlog.store.entry import Kind, canonical
 from featherlog.store.tables import PROJECTIONS, machine
 
@@ -78,4 +83,19 @@ _PROJECTORS: dict[str, Callable[[Connection, Entry], None]] = {
     Kind.FRACTION_CONFIRMED: projecting_delivery.confirmed,
     Kind.FRACTION_RECORDED: projecting_delivery.recorded,
     Kind.DEPARTURE_EXPLAINED: projecting_delivery.explained,
+    Kind.DEPARTURE_DECIDED: projecting_life.decided,
+    Kind.RECORD_CORRECTED: projecting_life.corrected,
+    Kind.FRACTION_MISSED: projecting_life.missed,
+    Kind.COURSE_PAUSED: projecting_life.paused,
+    Kind.COURSE_RELEASED: projecting_life.released,
+    Kind.COURSE_ENDED: projecting_life.ended,
+    Kind.MACHINE_CHANGED: projecting_life.machine_changed,
+    Kind.TABLE_READ: projecting_life.changed,
+    Kind.MARKS_REDRAWN: projecting_life.changed,
+    Kind.IMAGER_OUT: projecting_life.changed,
+    Kind.IMAGER_BACK: projecting_life.changed,
+    Kind.IMAGE_SHIFT: projecting_life.noted,
+    Kind.PHYSICS_PRESENT: projecting_life.noted,
+    Kind.POSITION_CHECKED: projecting_life.noted,
+    Kind.REVIEW_SIGNED: projecting_life.noted,
 }

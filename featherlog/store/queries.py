@@ -12,6 +12,7 @@ from featherlog.store.rows import (
     CourseRow,
     DeliveryRow,
     DepartureRow,
+    EventRow,
     MachineRow,
     ObservationRow,
     PolicyRow,
@@ -138,6 +139,12 @@ def confirmations(connection: Connection, key: str, fraction: int) -> tuple[Conf
         confirmation.course == key, confirmation.fraction == fraction
     )
     return _all(connection, ConfirmationRow, query.order_by(confirmation.entry))
+
+
+def events(connection: Connection, key: str) -> tuple[EventRow, ...]:
+    """Return what else happened in the course, in the order it was recorded."""
+    query = select(tables.event).where(tables.event.c.course == key)
+    return _all(connection, EventRow, query.order_by(tables.event.c.entry))
 
 
 def departures(connection: Connection, key: str) -> tuple[DepartureRow, ...]:

@@ -80,6 +80,8 @@ class CourseRow:
     open_departures: int
     state_hash: str
     entry: int
+    paused_reason: str | None
+    ended_reason: str | None
 
 
 @dataclass(frozen=True, slots=True)
@@ -130,6 +132,7 @@ class DeliveryRow:
     performer: str
     verifier: str
     at: str
+    late: bool
 
 
 @dataclass(frozen=True, slots=True)
@@ -172,3 +175,18 @@ class DepartureRow:
     status: str
     entry: int
     explained_entry: int | None
+    decision: str | None
+    decided_entry: int | None
+
+
+@dataclass(frozen=True, slots=True)
+class EventRow:
+    """Something else that happened in a course; ``content`` is canonical JSON."""
+
+    entry: int
+    course: str
+    fraction: int | None
+    kind: str
+    who: str
+    at: str
+    content: str

@@ -12,7 +12,7 @@ from featherlog.errors import StoreError
 if TYPE_CHECKING:
     from sqlalchemy import Connection
 
-REVISIONS = ("0001", "0002")
+REVISIONS = ("0001", "0002", "0003")
 """Every schema revision, oldest first; the last is the one this program works with."""
 
 _FOREIGN = (

@@ -18,6 +18,7 @@ from sqlalchemy import (
     Table,
     Text,
     UniqueConstraint,
+    false,
 )
 
 metadata = MetaData(
@@ -145,6 +146,8 @@ course = Table(
     _integer("open_departures"),
     _text("state_hash"),
     _entry(),
+    Column("paused_reason", Text),
+    Column("ended_reason", Text),
     _one_of("state", "prepared", "checked", "approved", "returned", "complete"),
     CheckConstraint("fractions >= 1", name="fractions"),
     CheckConstraint("fractions_complete >= 0", name="fractions_complete"),
@@ -188,6 +191,7 @@ delivery = Table(
     _text("performer"),
     _text("verifier"),
     _text("at"),
+    Column("late", Boolean, nullable=False, server_default=false()),
     CheckConstraint("fraction >= 1", name="fraction"),
     CheckConstraint("meterset_mu >= 0", name="meterset_mu"),
 )
@@ -229,7 +233,21 @@ departure = Table(
     _text("status"),
     _entry(),
     Column("explained_entry", ForeignKey("ledger_entry.number")),
-    _one_of("status", "open", "explained"),
+    Column("decision", Text),
+    Column("decided_entry", ForeignKey("ledger_entry.number")),
+    _one_of("status", "open", "explained", "decided", "corrected"),
+)
+
+event = Table(
+    "event",
+    metadata,
+    _entry(key=True),
+    _course(index=True),
+    Column("fraction", Integer),
+    _text("kind"),
+    _text("who"),
+    _text("at"),
+    _text("content"),
 )
 
 PROJECTIONS: tuple[Table, ...] = tuple(
