@@ -113,8 +113,9 @@ class Policy:
     """What a department decided, in force until the next version.
 
     ``time_zone`` is an IANA name; empty means the computer's own. ``two_people`` are the acts that
-    take two signatures. ``minimum_interval_hours`` lies between two fractions on one day.
-    ``read_back_on_shift_days`` must be typed before the beam when the position changed.
+    take two signatures beside those that always do. ``minimum_interval_hours`` lies between two
+    fractions on one day. ``read_back_on_shift_days`` must be typed before the beam when the
+    position changed.
     """
 
     department: str
@@ -133,7 +134,7 @@ DEFAULT_POLICY = Policy(
     department="",
     time_zone="",
     contacts=Contacts(physicist="", physician=""),
-    two_people=(Act.CONFIRM, Act.RECORD, Act.APPROVE),
+    two_people=(Act.APPROVE,),
     minimum_interval_hours=6.0,
     read_back_on_shift_days=(ReadBackItem.POSITION,),
     reporting_thresholds=ReportingThresholds(None, None, None),

@@ -9,7 +9,6 @@ from featherlog.exchange.kinds import Kind, choice, flag, number, several, text
 from featherlog.exchange.toml_fields import Fault, Reading, Table
 from featherlog.exchange.toml_text import read_text
 from featherlog.policy import (
-    ALWAYS_TWO,
     STAFF_ACTS,
     Act,
     Contacts,
@@ -91,10 +90,8 @@ _TIME_ZONE = Kind('the IANA name of a time zone, like "Europe/Berlin"', _known_z
 
 
 def _rules(policy: Policy) -> Iterator[Fault]:
-    for act in Act:
-        if act in STAFF_ACTS and act in policy.two_people:
+    for act in policy.two_people:
+        if act in STAFF_ACTS:
             yield ("two_people",), f'has "{act}", which has a rule of its own'
-        elif act in ALWAYS_TWO and act not in STAFF_ACTS and act not in policy.two_people:
-            yield ("two_people",), f'lacks "{act}", which always needs two people'
     if ReadBackItem.POSITION not in policy.read_back_on_shift_days:
         yield ("read_back_on_shift_days",), 'lacks "position", which is always read back'

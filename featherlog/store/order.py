@@ -22,8 +22,11 @@ _WAITING = ("prepared", "checked")
 class _Course:
     states: dict[int, str] = field(default_factory=dict)
     authors: dict[int, str] = field(default_factory=dict)
-    departures: int = 0
-    explained: set[int] = field(default_factory=set)
+    records: set[int] = field(default_factory=set)
+    departures: dict[int, str] = field(default_factory=dict)
+    found_by: dict[int, list[int]] = field(default_factory=dict)
+    paused: bool = False
+    ended: bool = False
 
 
 @dataclass(slots=True)
@@ -94,6 +97,8 @@ def _author_faults(course: _Course, entry: Entry, what: str) -> Iterator[str]:
 def _confirmed_faults(course: _Course, _entry: Entry) -> Iterator[str]:
     if "approved" not in course.states.values():
         yield "no revision of the course is approved"
+    if course.paused or course.ended:
+        yield f"the course {'is paused' if course.paused else 'has ended'}"
 
 
 def _recorded_faults(course: _Course, _entry: Entry) -> Iterator[str]:
@@ -101,10 +106,28 @@ def _recorded_faults(course: _Course, _entry: Entry) -> Iterator[str]:
         yield "there is no design of the course"
 
 
+def _corrected_faults(course: _Course, entry: Entry) -> Iterator[str]:
+    if entry.content["corrects"] not in course.records:
+        yield f"entry {entry.content['corrects']} is not a record that stands"
+
+
 def _explained_faults(course: _Course, entry: Entry) -> Iterator[str]:
+    yield from _departure_faults(course, entry, "open")
+
+
+def _decided_faults(course: _Course, entry: Entry) -> Iterator[str]:
+    yield from _departure_faults(course, entry, "open", "explained")
+
+
+def _departure_faults(course: _Course, entry: Entry, *allowed: str) -> Iterator[str]:
     number = entry.content["departure"]
-    if not 1 <= number <= course.departures or number in course.explained:
-        yield f"departure {number} is not open"
+    if course.departures.get(number) not in allowed:
+        yield f"departure {number} is not {' or '.join(allowed)}"
+
+
+def _released_faults(course: _Course, _entry: Entry) -> Iterator[str]:
+    if not course.paused:
+        yield "the course is not paused"
 
 
 def _see_prepared(course: _Course, entry: Entry) -> None:
@@ -129,14 +152,39 @@ def _see_returned(course: _Course, entry: Entry) -> None:
 
 
 def _see_recorded(course: _Course, entry: Entry) -> None:
+    course.records.add(entry.number)
     for found in entry.content["departures"]:
-        course.departures += 1
-        if found["reason"]:
-            course.explained.add(course.departures)
+        number = len(course.departures) + 1
+        course.departures[number] = "explained" if found["reason"] else "open"
+        course.found_by.setdefault(entry.number, []).append(number)
+
+
+def _see_corrected(course: _Course, entry: Entry) -> None:
+    replaced = entry.content["corrects"]
+    course.records.remove(replaced)
+    for number in course.found_by.get(replaced, ()):
+        course.departures[number] = "corrected"
+    _see_recorded(course, entry)
 
 
 def _see_explained(course: _Course, entry: Entry) -> None:
-    course.explained.add(entry.content["departure"])
+    course.departures[entry.content["departure"]] = "explained"
+
+
+def _see_decided(course: _Course, entry: Entry) -> None:
+    course.departures[entry.content["departure"]] = "decided"
+
+
+def _see_paused(course: _Course, _entry: Entry) -> None:
+    course.paused = True
+
+
+def _see_released(course: _Course, _entry: Entry) -> None:
+    course.paused = False
+
+
+def _see_ended(course: _Course, _entry: Entry) -> None:
+    course.ended = True
 
 
 _FAULTS: dict[str, Callable[[_Course, Entry], Iterator[str]]] = {
@@ -147,6 +195,9 @@ _FAULTS: dict[str, Callable[[_Course, Entry], Iterator[str]]] = {
     Kind.FRACTION_CONFIRMED: _confirmed_faults,
     Kind.FRACTION_RECORDED: _recorded_faults,
     Kind.DEPARTURE_EXPLAINED: _explained_faults,
+    Kind.RECORD_CORRECTED: _corrected_faults,
+    Kind.DEPARTURE_DECIDED: _decided_faults,
+    Kind.COURSE_RELEASED: _released_faults,
 }
 
 _CHANGES: dict[str, Callable[[_Course, Entry], None]] = {
@@ -156,4 +207,9 @@ _CHANGES: dict[str, Callable[[_Course, Entry], None]] = {
     Kind.DESIGN_RETURNED: _see_returned,
     Kind.FRACTION_RECORDED: _see_recorded,
     Kind.DEPARTURE_EXPLAINED: _see_explained,
+    Kind.RECORD_CORRECTED: _see_corrected,
+    Kind.DEPARTURE_DECIDED: _see_decided,
+    Kind.COURSE_PAUSED: _see_paused,
+    Kind.COURSE_RELEASED: _see_released,
+    Kind.COURSE_ENDED: _see_ended,
 }

@@ -11,7 +11,7 @@ import pytest
 import signed_story as story
 import store_scenario as scenario
 from signed_story import CRANE, FINCH, HERON, PLOVER, TEAL, WREN, Person, Told, joins, told
-from sqlalchemy import delete, insert, text, update
+from sqlalchemy import delete, func, insert, text, update
 
 from featherlog.policy import DEFAULT_POLICY, Act
 from featherlog.store import ledger
@@ -125,10 +125,8 @@ def test_progress_is_told(database_url: str) -> None:
 def test_a_chain_hashed_anew_without_a_passphrase_is_found(database_url: str, backend: str) -> None:
     story.tell(database_url, [*OPENING, *COURSE])
     number = HERE - 1
-    less = text(
-        "UPDATE ledger_entry SET content = replace(content, '99.5', '98.5') "
-        f"WHERE number = {number}"
-    )
+    less = update(ledger_entry).where(ledger_entry.c.number == number)
+    less = less.values(content=func.replace(ledger_entry.c.content, "99.5", "98.5"))
     tampered(database_url, backend, lambda owner: owner.execute(less) and None)
     with reading(open_engine(database_url)) as connection:
         assert ledger.first_fault(connection) is None
@@ -210,6 +208,8 @@ KEY = scenario.draft(Kind.KEY_REPLACED, NEW_PLOVER.content, course=None)
 RESTORED = scenario.draft(
     Kind.ADMINISTRATOR_RESTORED, ROOK.content | {"role": "administrator"}, course=None
 )
+PAUSED = scenario.draft(Kind.COURSE_PAUSED, {"reason": "fever"})
+RELEASED = scenario.draft(Kind.COURSE_RELEASED, {"next_date": "2025-03-06"})
 STRICT = replace(DEFAULT_POLICY, two_people=(*DEFAULT_POLICY.two_people, Act.EXPLAIN))
 
 
@@ -313,6 +313,14 @@ CASES = {
         [told(RESTORED, FINCH_, ROOK)],
         "two people must sign to restore an administrator",
     ),
+    "confirmation of a paused course": (
+        [*COURSE[:3], told(PAUSED, PLOVER_), COURSE[3]],
+        "the course is paused",
+    ),
+    "release of a course that goes on": (
+        [*COURSE[:3], told(RELEASED, WREN_)],
+        "the course is not paused",
+    ),
     "one where the policy asks for two": (
         [told(policy(), FINCH_), *COURSE],
         "two people must sign to explain a departure",
@@ -346,6 +354,8 @@ def test_what_people_may_do_fits(database_url: str) -> None:
         joins(again, HERON_),
         told(policy(), again),
         *story.course({**PEOPLE, FINCH: again, PLOVER: newer})[:-1],
+        told(PAUSED, TEAL_),
+        told(RELEASED, WREN_),
         told(scenario.explained(), again, WREN_),
     ]
     story.tell(database_url, [*OPENING, *right])
