@@ -96,6 +96,15 @@ def junction_move(name: str, move_cm: float) -> str:
     return f"JUNCTION {name} moves {figure(abs(move_cm))} cm {toward(move_cm)}"
 
 
+def fields_apart(junction: str, upper: str, lower: str, moves_cm: list[float]) -> str:
+    """Say how the two edges of a junction move when its fields were not treated together."""
+    parts = [
+        f"{field} {f'moves {figure(abs(move))} cm {toward(move)}' if toward(move) else 'stays'}"
+        for field, move in zip((upper, lower), moves_cm, strict=True)
+    ]
+    return f"JUNCTION {junction}: the fields stood apart; {', '.join(parts)}"
+
+
 _TABLE_WORDS = (
     ("lateral", "to the right, seen facing the gantry", "to the left, seen facing the gantry"),
     ("longitudinal", "toward the gantry", "away from the gantry"),
@@ -104,21 +113,30 @@ _TABLE_WORDS = (
 
 
 def table_move(
-    move_cm: tuple[float, float, float], *, couch_turned: bool = False
+    move_cm: tuple[float, float, float],
+    *,
+    couch_turned: bool = False,
+    was_cm: tuple[float, float, float] | None = None,
 ) -> tuple[str, ...]:
     """Say each component of a table move in words with its IEC 61217 sign; empty when none.
 
-    Lateral and longitudinal run along the table top; with the couch turned, that is said.
+    Lateral and longitudinal run along the table top; with the couch turned, that is said. A
+    component that differs from ``was_cm``, the same move last time, says so.
     """
-    return tuple(
-        f"TABLE moves {figure(abs(component))} cm {plus if component > 0 else minus} "
-        f"({axis} {signed(component)} cm"
-        f"{', along the table top as it turns with the couch' if couch_turned and level else ''})"
-        for component, (axis, plus, minus), level in zip(
-            move_cm, _TABLE_WORDS, (True, True, False), strict=True
-        )
-        if abs(component) >= STILL_CM
-    )
+    lines = []
+    for index, (axis, plus, minus) in enumerate(_TABLE_WORDS):
+        move, was = move_cm[index], was_cm[index] if was_cm else move_cm[index]
+        changed = abs(move - was) >= STILL_CM
+        if abs(move) < STILL_CM and not changed:
+            continue
+        what = f"{figure(abs(move))} cm {plus if move > 0 else minus}"
+        how = f"moves {what}" if abs(move) >= STILL_CM else "does not move"
+        along = couch_turned and axis != "vertical"
+        facts = [f"{axis} {signed(move)} cm"]
+        facts += ["along the table top as it turns with the couch"] if along else []
+        facts += [f"CHANGED, was {signed(was)}"] if changed else []
+        lines.append(f"TABLE {how} ({', '.join(facts)})")
+    return tuple(lines)
 
 
 def jaw_move(jaw: str, change_cm: float, end: str | None) -> str:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import base64
 import hashlib
+from dataclasses import dataclass
 from itertools import pairwise
 from typing import TYPE_CHECKING
 
@@ -22,7 +23,7 @@ from featherlog.views.day import (
 )
 
 if TYPE_CHECKING:
-    from collections.abc import Mapping
+    from collections.abc import Iterable, Mapping
 
     from featherlog.geometry.planes import EdgePlane
     from featherlog.junction.design import Course, Junction
@@ -31,9 +32,11 @@ if TYPE_CHECKING:
         BeamSetting,
         FieldSetting,
         JunctionSetting,
+        Plan,
         PositionSettings,
         Triple,
     )
+    from featherlog.sequence.progress import Progress
 
 
 def page_code(revision_code: str, fraction: int | None, state_hash: str) -> str:
@@ -43,61 +46,116 @@ def page_code(revision_code: str, fraction: int | None, state_hash: str) -> str:
     return f"{code[:4]}-{code[4:8]}"
 
 
+@dataclass(frozen=True, slots=True)
+class Standing:
+    """Where each field stands before a step: the position at which it was treated last.
+
+    ``positions`` is empty at the first fraction; ``begun`` are the fields already treated in this
+    step, which stand at it.
+    """
+
+    positions: Mapping[str, PositionSettings]
+    begun: frozenset[str]
+
+    def of(self, field: str) -> FieldSetting | None:
+        """Return a field's settings where it stands; None at the first fraction."""
+        position = self.positions.get(field)
+        return next((f for f in position.fields if f.field == field), None) if position else None
+
+
+def standing(plan: Plan, labels: Mapping[str, str], begun: Iterable[str]) -> Standing:
+    """Return where the fields stand, given each one's last position by its label."""
+    positions = {field: plan.position(label) for field, label in labels.items()}
+    return Standing(positions, frozenset(begun))
+
+
+NOWHERE = Standing({}, frozenset())
+"""Before the first fraction."""
+
+
 def field_views(
     now: PositionSettings,
-    before: PositionSettings | None,
-    delivered: Mapping[str, float],
-    due: Mapping[str, float],
+    before: Standing,
+    due: Progress,
+    parts: Mapping[str, float],
     display: DisplayScale | None,
 ) -> tuple[FieldView, ...]:
-    """Return every field's settings, with what changed since the position before.
+    """Return every field's settings, with what changed since each field was treated last.
 
-    ``delivered`` is the part of each beam's meterset already given in this fraction, ``due`` the
-    part still to be given now. ``display`` is the console's own scale, if it has one.
+    ``parts`` is the part of each beam's meterset already given in this fraction. ``display`` is the
+    console's own scale, if it has one.
     """
-    views = []
-    for index, field in enumerate(now.treated):
-        last = before.treated[index] if before else None
-        views.append(
-            FieldView(
-                field=field.field,
-                moved_by=field.moved_by,
-                since_last=_table_move(_since(field, last), field),
-                from_field_before=None
-                if index == 0
-                else _table_move(
-                    _difference(
-                        field.table_from_first_field_cm,
-                        now.treated[index - 1].table_from_first_field_cm,
-                    ),
-                    field,
-                ),
-                beams=tuple(
-                    _beam_view(
-                        beam,
-                        last.beams[number] if last else None,
-                        (delivered.get(beam.beam, 0.0), due.get(beam.beam, 0.0)),
-                        display,
-                    )
-                    for number, beam in enumerate(field.beams)
-                ),
-            )
+    return tuple(
+        _field_view(now, index, before, _Given(due, parts, display))
+        for index in range(len(now.treated))
+    )
+
+
+@dataclass(frozen=True, slots=True)
+class _Given:
+    """What the beams of a step have had and are due, and how their console shows values."""
+
+    due: Progress
+    parts: Mapping[str, float]
+    display: DisplayScale | None
+
+
+def _field_view(now: PositionSettings, index: int, before: Standing, given: _Given) -> FieldView:
+    field = now.treated[index]
+    since = _table_move(_since(now, field, before), field)
+    between, earlier = _between(now, index), _between_before(now, index, before)
+    begun = field.field in before.begun
+    if between is None:
+        orders = tuple(f"{move} since the last fraction" for move in since.words)
+        still = bool(before.positions) and not orders
+        notes: tuple[str, ...] = ("TABLE: no move since the last fraction",) if still else ()
+    else:
+        orders = tuple(
+            f"{move} from {now.treated[index - 1].field}"
+            for move in _orders(between, earlier, field)
         )
-    return tuple(views)
+        notes = tuple(f"part of that, since the last fraction: {move}" for move in since.words)
+    if begun:
+        notes = ("treated already in this fraction: nothing of it moves",)
+    return FieldView(
+        field=field.field,
+        moved_by=field.moved_by,
+        previous_position=_label(before, field.field),
+        begun=begun,
+        since_last=since,
+        from_field_before=between,
+        before_from_field_before=earlier,
+        orders=orders,
+        notes=notes,
+        beams=tuple(_beam_view(beam, before.of(field.field), given) for beam in field.beams),
+    )
+
+
+def _orders(
+    between: TableMoveView, earlier: TableMoveView | None, field: FieldSetting
+) -> tuple[str, ...]:
+    return words.table_move(
+        _vector(between),
+        couch_turned=_turned(field),
+        was_cm=_vector(earlier) if earlier else None,
+    )
+
+
+def _vector(move: TableMoveView) -> Triple:
+    return (move.lateral_cm, move.longitudinal_cm, move.vertical_cm)
 
 
 def junction_views(
-    course: Course, now: PositionSettings, before: PositionSettings | None
+    course: Course, now: PositionSettings, before: Standing
 ) -> tuple[JunctionView, ...]:
     """Return every junction: where it is, how it moved in words, the gaps to expect, its edges."""
     views = []
-    for index, (junction, (upper, lower)) in enumerate(
-        zip(course.junctions, pairwise(now.fields), strict=True)
-    ):
+    for junction, (upper, lower) in zip(course.junctions, pairwise(now.fields), strict=True):
         setting = now.junction(junction.name)
-        earlier = before.junction(junction.name).offset_cm if before else setting.offset_cm
-        moves = setting.offset_cm - earlier
-        previous = before.fields[index : index + 2] if before and abs(moves) > 0 else ()
+        moves = [_edge_move(now, field, before, junction.name) for field in (upper, lower)]
+        # A field of an earlier course never moves: its neighbour says what the junction does.
+        known = [move for move in moves if move is not None] or [0.0]
+        previous = tuple(before.of(field.field) or field for field in (upper, lower))
         views.append(
             JunctionView(
                 junction=junction.name,
@@ -105,20 +163,77 @@ def junction_views(
                 superior_field=upper.field,
                 inferior_field=lower.field,
                 offset_cm=setting.offset_cm,
-                moves_cm=moves,
-                words=words.junction_move(junction.name, moves),
+                moves_cm=known[0],
+                words=words.junction_move(junction.name, known[0])
+                if max(known) - min(known) < words.STILL_CM
+                else words.fields_apart(junction.name, upper.field, lower.field, known),
                 gaps=tuple(
                     GapView(gap.side, gap.expected_cm, junction.gap_tolerance_cm)
                     for gap in setting.skin_gaps
                 ),
-                side_view=_side_view(junction, setting, (upper, lower), previous),
+                side_view=_side_view(
+                    junction,
+                    setting,
+                    (upper, lower),
+                    previous if any(abs(move) > words.STILL_CM for move in known) else (),
+                ),
             )
         )
     return tuple(views)
 
 
-def _since(field: FieldSetting, last: FieldSetting | None) -> Triple:
-    return _difference(field.table_from_a_cm, last.table_from_a_cm) if last else (0.0, 0.0, 0.0)
+def _edge_move(
+    now: PositionSettings, field: FieldSetting, before: Standing, junction: str
+) -> float | None:
+    """Return how far (cm, + superior) a field's edge at a junction moves; None if it never does."""
+    if field.earlier_course:
+        return None
+    position = before.positions.get(field.field)
+    if position is None:
+        return 0.0
+    return now.junction(junction).offset_cm - position.junction(junction).offset_cm
+
+
+def _label(before: Standing, field: str) -> str:
+    position = before.positions.get(field)
+    return position.label if position else ""
+
+
+def _place(position: PositionSettings, field: str) -> Triple:
+    """Return where the table has a field, against the first field's place at position A (cm)."""
+    setting = next(one for one in position.fields if one.field == field)
+    return _sum(setting.table_from_first_field_cm, position.fields[0].table_from_a_cm)
+
+
+def _since(now: PositionSettings, field: FieldSetting, before: Standing) -> Triple:
+    position = before.positions.get(field.field)
+    if position is None:
+        return (0.0, 0.0, 0.0)
+    return _difference(_place(now, field.field), _place(position, field.field))
+
+
+def _between(now: PositionSettings, index: int) -> TableMoveView | None:
+    """Return the table move from the field treated before; None for the first."""
+    if index == 0:
+        return None
+    field, other = now.treated[index], now.treated[index - 1]
+    return _table_move(_difference(_place(now, field.field), _place(now, other.field)), field)
+
+
+def _between_before(now: PositionSettings, index: int, before: Standing) -> TableMoveView | None:
+    """Return what the same move was when both fields were treated last."""
+    field, other = (now.treated[place].field for place in (index, index - 1))
+    if index == 0 or not {field, other} <= set(before.positions):
+        return None
+    move = _difference(
+        _place(before.positions[field], field), _place(before.positions[other], other)
+    )
+    return _table_move(move, now.treated[index])
+
+
+def _sum(one: Triple, other: Triple) -> Triple:
+    x, y, z = (a + b for a, b in zip(one, other, strict=True))
+    return (x, y, z)
 
 
 def _difference(one: Triple, other: Triple) -> Triple:
@@ -127,17 +242,25 @@ def _difference(one: Triple, other: Triple) -> Triple:
 
 
 def _table_move(move_cm: Triple, field: FieldSetting) -> TableMoveView:
-    turned = any(beam.couch_deg for beam in field.beams)
-    return TableMoveView(*move_cm, words.table_move(move_cm, couch_turned=turned))
+    return TableMoveView(*move_cm, words.table_move(move_cm, couch_turned=_turned(field)))
+
+
+def _turned(field: FieldSetting) -> bool:
+    return any(beam.couch_deg for beam in field.beams)
 
 
 def _beam_view(
     beam: BeamSetting,
-    last: BeamSetting | None,
-    parts: tuple[float, float],
-    display: DisplayScale | None,
+    last_field: FieldSetting | None,
+    given: _Given,
 ) -> BeamView:
-    delivered, due = parts
+    last = (
+        next((one for one in last_field.beams if one.beam == beam.beam), None)
+        if last_field
+        else None
+    )
+    due = given.due
+    had = max(0.0, given.parts.get(beam.beam, 0.0) - due.started)
     return BeamView(
         beam=beam.beam,
         energy=beam.energy,
@@ -147,11 +270,11 @@ def _beam_view(
         previous_collimator_deg=last.collimator_deg if last else None,
         previous_couch_deg=last.couch_deg if last else None,
         ssd_cm=beam.ssd_cm,
-        planned_mu=beam.meterset_mu,
-        delivered_mu=delivered * beam.meterset_mu,
-        to_deliver_mu=due * beam.meterset_mu,
+        planned_mu=(due.expected - due.started) * beam.meterset_mu,
+        delivered_mu=had * beam.meterset_mu,
+        to_deliver_mu=due.due.get(beam.beam, 0.0) * beam.meterset_mu,
         jaws=tuple(_jaw_view(beam, jaw, last) for jaw in beam.jaw_cm),
-        console=_console(beam, display) if display else (),
+        console=_console(beam, given.display) if given.display else (),
     )
 
 

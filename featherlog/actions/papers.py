@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from featherlog.actions.day_view import junction_views
+from featherlog.actions.day_view import NOWHERE, junction_views
 from featherlog.actions.review import review
 from featherlog.actions.solution import stored_solution
 from featherlog.actions.today import today
@@ -30,7 +30,7 @@ def dossier_pages(
 ) -> tuple[SolutionView, bytes]:
     """Return the latest revision's solution and its approval dossier (PDF)."""
     view = stored_solution(database, key)
-    sides = junction_views(view.course, view.positions[0], None)
+    sides = junction_views(view.course, view.positions[0], NOWHERE)
     return view, dossier(view, page_size, side_views=sides)
 
 

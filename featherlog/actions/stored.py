@@ -85,7 +85,7 @@ def load_latest(desk: Desk, key: str) -> Stored:
 def _stored(desk: Desk, row: CourseRow, revision: RevisionRow) -> Stored:
     plan = msgspec.json.decode(revision.plan, type=Plan)
     machine = msgspec.json.decode(revision.machine, type=Machine)
-    deliveries = queries.deliveries(desk.connection, row.key)
+    deliveries = _in_treatment_order(plan, queries.deliveries(desk.connection, row.key))
     states = fraction_states(plan, delivered_beams(deliveries), machine.tolerances.meterset_percent)
     return Stored(
         row=row,
@@ -97,6 +97,15 @@ def _stored(desk: Desk, row: CourseRow, revision: RevisionRow) -> Stored:
         states=states,
         progress=progress(plan, states, machine.tolerances.meterset_percent),
     )
+
+
+def _in_treatment_order(plan: Plan, rows: tuple[DeliveryRow, ...]) -> tuple[DeliveryRow, ...]:
+    """Return deliveries by when they were treated, the beams of one record in field order.
+
+    The database knows no order within a record, and names sort otherwise than people treat.
+    """
+    beams = [beam.beam for one in plan.positions[0].fields for beam in one.beams]
+    return tuple(sorted(rows, key=lambda row: (row.entry, beams.index(row.beam))))
 
 
 def delivered_beams(rows: Iterable[DeliveryRow]) -> list[DeliveredBeam]:

@@ -6,18 +6,21 @@ from datetime import date
 from typing import TYPE_CHECKING
 
 from featherlog import words
-from featherlog.actions.day_view import field_views, junction_views, page_code
+from featherlog.actions.day_view import field_views, junction_views, page_code, standing
 from featherlog.actions.desk import Desk, at_desk
 from featherlog.actions.stored import Stored, departure_lines, load
 from featherlog.errors import InputError, NotFoundError
 from featherlog.sequence.calendar import project_dates
 from featherlog.sequence.gate import unequal_sides
 from featherlog.sequence.pattern import shift_fractions
-from featherlog.sequence.progress import previous_position
+from featherlog.sequence.progress import last_positions
 from featherlog.store import ledger, queries
 from featherlog.views.day import DayView, DueLine, DueList, NextShift
 
 if TYPE_CHECKING:
+    from collections.abc import Mapping
+
+    from featherlog.sequence.progress import Progress
     from featherlog.store.rows import CourseRow
 
 
@@ -52,11 +55,11 @@ def day_view(desk: Desk, stored: Stored) -> DayView:
     head = ledger.head(desk.connection)
     number = stored.progress.next_fraction or stored.plan.fractions[-1].number
     position = stored.progress.position or ""
-    before = previous_position(stored.plan, stored.states, number, stored.progress.step)
     planned = stored.plan.fraction(number)
     reasons = stop_reasons(stored)
     now = stored.plan.position(position) if position else None
-    last = stored.plan.position(before) if before else None
+    labels = last_positions(stored.plan, stored.states, stored.progress)
+    before = standing(stored.plan, labels, stored.progress.begun_at)
     state = stored.states.get(number)
     return DayView(
         heading=stored.heading(demo=desk.demo),
@@ -70,16 +73,16 @@ def day_view(desk: Desk, stored: Stored) -> DayView:
         dose_gy=planned.dose_gy,
         projected_date=stored.row.next_date or "",
         position=position,
-        previous_position=before,
-        shift=shift_of(before, position),
-        shift_words=_shift_words(before, position, number, stored.progress.step),
+        previous_position=_stood(labels),
+        shift=shift_of(labels, position),
+        shift_words=_shift_words(labels, stored.progress),
         part_delivered=stored.progress.part_delivered,
-        junctions=junction_views(stored.course, now, last) if now else (),
+        junctions=junction_views(stored.course, now, before) if now else (),
         fields=field_views(
             now,
-            last,
+            before,
+            stored.progress,
             state.parts if state else {},
-            stored.progress.due,
             stored.machine.display,
         )
         if now
@@ -107,28 +110,52 @@ def stop_reasons(stored: Stored) -> tuple[str, ...]:
     if not stored.approved:
         revision = stored.revision
         return (f"revision {revision.number} of this design is {revision.state}, not approved",)
-    fraction, position = stored.progress.next_fraction, stored.progress.position
-    if fraction is None or stored.progress.part_delivered:
+    due = stored.progress
+    if len(set(due.begun_at.values())) > 1:
+        apart = _each(due.begun_at)
+        return (f"fraction {due.next_fraction} was begun with its fields apart ({apart})",)
+    if due.next_fraction is None or due.part_delivered:
         return ()
-    before = previous_position(stored.plan, stored.states, fraction, stored.progress.step)
-    if before in (None, position):
+    labels = last_positions(stored.plan, stored.states, due)
+    if shift_of(labels, due.position or "") != "yes":
         return ()
-    return unequal_sides(stored.plan, stored.states, fraction)
+    return unequal_sides(stored.plan, stored.states, due.next_fraction)
 
 
-def shift_of(before: str | None, position: str) -> str:
-    """Return ``first``, ``yes`` or ``no``: whether the junction moves for this fraction."""
-    if before is None:
+def shift_of(last: Mapping[str, str], position: str) -> str:
+    """Return ``first``, ``yes`` or ``no``: whether any field moves for this step.
+
+    ``last`` is where each field stands, empty before the first fraction.
+    """
+    if not last:
         return "first"
-    return "no" if before == position else "yes"
+    return "no" if set(last.values()) == {position} else "yes"
 
 
-def _shift_words(before: str | None, position: str, fraction: int, step: int) -> str:
-    if not position:
+def _stood(last: Mapping[str, str]) -> str | None:
+    """Return where the fields stood: one label, or each field's where they stood apart."""
+    if not last:
+        return None
+    return next(iter(last.values())) if len(set(last.values())) == 1 else _each(last)
+
+
+def _each(positions: Mapping[str, str]) -> str:
+    return ", ".join(f"{field} at {label}" for field, label in positions.items())
+
+
+def _shift_words(last: Mapping[str, str], due: Progress) -> str:
+    position, number = due.position, due.next_fraction
+    if position is None or number is None:
         return "No fraction is left to treat."
-    if before is None:
+    if due.part_delivered:
+        begun = ", ".join(due.begun_at)
+        return f"Fraction {number} was begun at {position} ({begun}): what was begun stays there."
+    if not last:
         return f"First fraction: set position {position}."
-    earlier = f"fraction {fraction - 1}" if step == 1 else f"step {step - 1} of this fraction"
+    earlier = f"fraction {number - 1}" if due.step == 1 else f"step {due.step - 1}"
+    if len(set(last.values())) > 1:
+        return f"Shift to {position}: after {earlier} the fields stood apart ({_each(last)})."
+    before = next(iter(last.values()))
     if before == position:
         return f"No shift: position {position}, as in {earlier}."
     return f"Shift: from position {before} to position {position}, after {earlier}."
@@ -160,7 +187,7 @@ def _is_due(row: CourseRow, on: date) -> bool:
 def _due_line(stored: Stored, on: date) -> DueLine:
     row, progress = stored.row, stored.progress
     position, number = progress.position or "", progress.next_fraction or 0
-    before = previous_position(stored.plan, stored.states, number, progress.step)
+    last = last_positions(stored.plan, stored.states, progress)
     due = row.next_date or ""
     attention = [f"{row.open_departures} open departure(s)"] if row.open_departures else []
     if progress.part_delivered:
@@ -174,7 +201,7 @@ def _due_line(stored: Stored, on: date) -> DueLine:
         fraction=number,
         fractions=row.fractions,
         position=position,
-        shift=shift_of(before, position),
+        shift=shift_of(last, position),
         due="today" if due == on.isoformat() else f"since {due}",
         projected_date=due,
         attention="; ".join(attention),

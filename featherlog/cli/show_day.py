@@ -62,11 +62,11 @@ def _settings(view: DayView) -> Iterator[str]:
     )
     if view.steps > 1:
         yield f"STEP {view.step} of {view.steps} of this fraction: each at its own position"
-    yield f"Due {view.projected_date}. {view.shift_words}"
+    yield wrapped(f"Due {view.projected_date}. {view.shift_words}")
     if view.part_delivered:
+        what = f"fraction {view.fraction}" if view.steps == 1 else f"step {view.step}"
         yield wrapped(
-            f"PART DELIVERED: finish fraction {view.fraction} at position {view.position}; the "
-            "position is locked."
+            f"PART DELIVERED: finish {what} at position {view.position}; the position is locked."
         )
     for junction in view.junctions:
         yield from _junction(junction)
@@ -96,13 +96,8 @@ def _junction(junction: JunctionView) -> Iterator[str]:
 
 def _field(field: FieldView) -> Iterator[str]:
     yield f"{field.field.upper()}   (moved by its {field.moved_by})"
-    moves = field.since_last.words
-    yield from (f"  {move}" for move in moves)
-    if not moves:
-        yield "  TABLE: no move since the last fraction"
-    if field.from_field_before is not None:
-        between = field.from_field_before.words or ("TABLE does not move",)
-        yield from (wrapped(f"from the field before: {move}", "  ") for move in between)
+    yield from (wrapped(order, "  ") for order in field.orders)
+    yield from (wrapped(f"({note})", "  ") for note in field.notes)
     for beam in field.beams:
         yield from _beam(beam)
 
@@ -169,7 +164,7 @@ def confirmed_text(view: DayView) -> str:
         f"{view.heading.course}: CONFIRMED fraction {view.fraction} of {view.fractions}",
         f"POSITION {view.position}",
         *(junction.words for junction in view.junctions),
-        *(f"{field.field}: {move}" for field in view.fields for move in field.since_last.words),
+        *(wrapped(f"{field.field}: {move}") for field in view.fields for move in field.orders),
         "After the beam: featherlog record " + view.heading.course,
     ]
     return "\n".join(lines)

@@ -56,7 +56,7 @@ def settings_table(view: DayView, width: float, padding: float) -> Table:
     commands: list[tuple[Any, ...]] = [("RIGHTPADDING", (5, 0), (5, -1), 6)]
     for field in view.fields:
         commands += _field_rules(len(rows))
-        rows.append([_field_line(field, _last(view))] + [""] * (len(_HEADS) - 1))
+        rows.append([_field_line(field)] + [""] * (len(_HEADS) - 1))
         for beam in field.beams:
             first = len(rows)
             rows += _beam_rows(beam, part=view.part_delivered, split=view.steps > 1)
@@ -114,28 +114,13 @@ def _turns(now_deg: float, before_deg: float | None) -> bool:
     return before_deg is not None and figure(now_deg) != figure(before_deg)
 
 
-def _last(view: DayView) -> str:
-    """Return what the table last stood at: nothing yet, the last fraction or its last step."""
-    if view.shift == "first":
-        return ""
-    return "the last fraction" if view.step == 1 else "the last step"
-
-
-def _field_line(field: FieldView, last: str) -> list[Any]:
+def _field_line(field: FieldView) -> list[Any]:
     name = Markup(f'<font size="11">{strong(field.field)}</font>')
-    facts = [name, safe(f"moved by {field.moved_by}")]
-    if last and not field.since_last.words:
-        facts.append(safe(f"TABLE stays as in {last}"))
-    before = field.from_field_before.words if field.from_field_before else ()
+    facts = [name, safe(f"moved by {field.moved_by}"), *map(safe, field.notes)]
     return [
         para(join("  ·  ", facts), _FIELD_LINE),
-        *(_table_line("from the field before", words) for words in before),
-        *(_table_line(f"since {last}", words) for words in field.since_last.words),
+        *(para(join(" ", [safe(TICK), strong(order)])) for order in field.orders),
     ]
-
-
-def _table_line(since: str, words: str) -> Any:  # noqa: ANN401 - a reportlab flowable
-    return para(join(" ", [safe(TICK), strong(words), safe(since)]))
 
 
 def _lines(beam: BeamView) -> Iterator[tuple[JawView, ...]]:

@@ -51,10 +51,6 @@ class FractionState:
     parts: Mapping[str, float]
     complete: bool
 
-    def stood_at(self, steps: int) -> str:
-        """Return where the fraction stands: where it began, or the latest of several steps."""
-        return self.began_at if steps == 1 else list(self.last_position.values())[-1]
-
 
 @dataclass(frozen=True, slots=True)
 class Progress:
@@ -63,8 +59,9 @@ class Progress:
     ``next_fraction`` is None when every fraction is complete. ``step`` counts the steps of a
     fraction that is split over positions, from 1. ``position`` is where the step is to be treated:
     its planned position, or where it began when ``part_delivered``. ``due`` is each beam's part of
-    its meterset still to be given in this step, ``expected`` its part once the step is complete.
-    ``begun_beams`` have had some of their meterset in this step.
+    its meterset still to be given in this step; ``started`` and ``expected`` are its parts before
+    and after the step. ``begun_beams`` have had some of their meterset in this step, and
+    ``begun_at`` is where their fields were treated, in the order they were.
     """
 
     complete: int
@@ -74,8 +71,10 @@ class Progress:
     position: str | None = None
     part_delivered: bool = False
     due: Mapping[str, float] = field(default_factory=dict)
+    started: float = 0.0
     expected: float = 1.0
     begun_beams: frozenset[str] = frozenset()
+    begun_at: Mapping[str, str] = field(default_factory=dict)
 
 
 def fraction_states(
@@ -158,33 +157,52 @@ def due_in(
         for name, part in parts.items()
         if part > before + allowed * fraction.steps[step].weight
     }
-    begun = state is not None and bool(here)
-    place = state.stood_at(len(ends)) if state and begun else fraction.steps[step].position
+    begun_at = _begun_at(plan, state, here) if state else {}
     return Progress(
         complete=0,
         next_fraction=number,
         step=step + 1,
         steps=len(ends),
-        position=place,
-        part_delivered=begun,
+        position=next(iter(begun_at.values()), fraction.steps[step].position),
+        part_delivered=bool(begun_at),
+        begun_at=begun_at,
         due={name: max(0.0, ends[step] - part) for name, part in parts.items()},
+        started=before,
         expected=ends[step],
         begun_beams=frozenset(here),
     )
 
 
-def previous_position(
-    plan: Plan, states: Mapping[int, FractionState], fraction: int, step: int = 1
-) -> str | None:
-    """Return the position treated before a step: as delivered, else as planned; None at the first.
+def _begun_at(plan: Plan, state: FractionState, beams: set[str]) -> dict[str, str]:
+    """Return where each field with one of these beams was treated last, in treatment order."""
+    begun = {
+        one.field
+        for one in plan.positions[0].treated
+        if any(beam.beam in beams for beam in one.beams)
+    }
+    return {name: place for name, place in state.last_position.items() if name in begun}
 
-    ``step`` counts the steps of a split fraction from 1.
+
+def last_positions(
+    plan: Plan, states: Mapping[int, FractionState], due: Progress
+) -> dict[str, str]:
+    """Return where each field stands before the step that is due; empty at the first.
+
+    A field already treated in this step stands there; another where it was treated last, or else
+    where it was planned to be.
     """
-    if step > 1:
-        before, planned = fraction, plan.fraction(fraction).steps[step - 2]
-    elif fraction > 1:
-        before, planned = fraction - 1, plan.fraction(fraction - 1).steps[-1]
+    number = due.next_fraction
+    if number is None:
+        return {}
+    if due.step > 1:
+        before, planned = number, plan.fraction(number).steps[due.step - 2].position
+    elif number > 1:
+        before, planned = number - 1, plan.fraction(number - 1).steps[-1].position
     else:
-        return None
+        return dict(due.begun_at)
     state = states.get(before)
-    return state.stood_at(len(plan.fraction(before).steps)) if state else planned.position
+    known = state.last_position if state else {}
+    return {
+        one.field: due.begun_at.get(one.field, known.get(one.field, planned))
+        for one in plan.positions[0].treated
+    }

@@ -116,7 +116,7 @@ def treatment(connection: Connection, key: str) -> Treatment | None:
 
 
 def deliveries(connection: Connection, key: str) -> tuple[DeliveryRow, ...]:
-    """Return what every beam of the course gave, in the order it was recorded."""
+    """Return what every beam of the course gave, record by record, beams by their names."""
     delivery = tables.delivery.c
     query = select(tables.delivery).where(delivery.course == key)
     return _all(

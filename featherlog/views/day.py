@@ -31,9 +31,9 @@ class JawView:
 class BeamView:
     """One beam to set.
 
-    The previous angles are those of the fraction before, None at the first. ``to_deliver_mu`` is
-    what remains of this step of the fraction, ``delivered_mu`` what the
-    fraction has had and ``planned_mu`` its whole meterset. ``console`` holds (name, value) pairs as
+    The previous angles are those of the fraction before, None at the first. ``planned_mu`` is the
+    meterset of this step of the fraction, ``delivered_mu`` what the step has had and
+    ``to_deliver_mu`` what remains of it. ``console`` holds (name, value) pairs as
     the machine's own console shows them, empty where that shows IEC 61217.
     """
 
@@ -64,16 +64,26 @@ class TableMoveView:
 
 @dataclass(frozen=True, slots=True)
 class FieldView:
-    """One field to set. ``since_last`` is its isocentre's table move since the last fraction.
+    """One field to set.
 
-    ``from_field_before`` is the table move from the field treated before it on the same day, None
-    for the first field.
+    ``from_field_before`` is the one table move to make for it, from the field treated before it on
+    the same day, and ``before_from_field_before`` what that move was last time; both are None for
+    the first field, whose move is ``since_last``: against the last fraction. For later fields
+    ``since_last`` only explains, it is part of the move already. ``previous_position`` is where the
+    field stood last, empty at the first fraction; ``begun`` is true when it was treated already in
+    this fraction and nothing of it moves. ``orders`` say in words what to do with the table, each
+    once, and ``notes`` explain.
     """
 
     field: str
     moved_by: str
+    previous_position: str
+    begun: bool
     since_last: TableMoveView
     from_field_before: TableMoveView | None
+    before_from_field_before: TableMoveView | None
+    orders: tuple[str, ...]
+    notes: tuple[str, ...]
     beams: tuple[BeamView, ...]
 
 
@@ -145,7 +155,9 @@ class DayView:
 
     ``status`` is ``ready``, ``complete`` (nothing left to treat) or ``stop``; ``stop_reasons`` say
     why and whom to call. ``shift`` is ``yes``, ``no`` or ``first`` (there is no earlier fraction).
-    ``step`` of ``steps`` counts the positions of a fraction that is split over several.
+    ``previous_position`` is where all fields stood last, None at the first fraction; where they
+    stood apart it names each. ``step`` of ``steps`` counts the positions of a fraction that is
+    split over several.
     ``part_delivered`` is true when this fraction was begun and its remainder is locked to
     ``position``. ``page_code`` names this page's state of the course.
     """

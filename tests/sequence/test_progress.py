@@ -5,7 +5,13 @@ from typing import TYPE_CHECKING
 import pytest
 from deliveries import FIELDS, deliver
 
-from featherlog.sequence.progress import Progress, fraction_states, previous_position, progress
+from featherlog.sequence.progress import (
+    Progress,
+    due_in,
+    fraction_states,
+    last_positions,
+    progress,
+)
 
 if TYPE_CHECKING:
     from featherlog.junction.plan import Plan
@@ -83,10 +89,34 @@ def test_a_field_keeps_every_position_at_which_it_received_dose(plan: Plan) -> N
     assert (state.began_at, state.last_position["UPPER"]) == ("B", "C")
 
 
-def test_the_position_before_is_the_delivered_one_else_the_planned_one(plan: Plan) -> None:
+def _stands(plan: Plan, fraction: int, *given: list[DeliveredBeam]) -> dict[str, str]:
+    states = fraction_states(plan, [row for rows in given for row in rows], PERCENT)
+    due = due_in(plan, fraction, states.get(fraction), PERCENT)
+    return last_positions(plan, states, due)
+
+
+def test_fields_stand_where_they_were_treated_else_where_they_were_planned(plan: Plan) -> None:
     late = deliver(plan, 3, **dict.fromkeys(FIELDS, "A"))
-    states = fraction_states(plan, late, PERCENT)
-    assert previous_position(plan, states, 1) is None
-    assert previous_position(plan, states, 4) == "A"
-    assert previous_position(plan, states, 3) == "A"
-    assert previous_position(plan, states, 6) == "C"
+    assert _stands(plan, 1, late) == {}
+    assert _stands(plan, 4, late) == dict.fromkeys(FIELDS, "A")
+    assert _stands(plan, 6, late) == dict.fromkeys(FIELDS, "C")
+
+
+def test_a_field_that_stayed_behind_stands_where_it_stayed(plan: Plan) -> None:
+    assert _stands(plan, 4, deliver(plan, 3, UPPER="A")) == {
+        "BRAIN": "B",
+        "UPPER": "A",
+        "LOWER": "B",
+    }
+
+
+def test_a_field_begun_in_a_fraction_stands_at_it_and_the_others_where_they_were(
+    plan: Plan,
+) -> None:
+    begun = deliver(plan, 3, BRAIN=None, LOWER=None)
+    assert _stands(plan, 3, deliver(plan, 2), begun) == {"BRAIN": "A", "UPPER": "B", "LOWER": "A"}
+
+
+def test_the_remainder_is_due_where_its_own_field_was_begun(plan: Plan) -> None:
+    now = standing(plan, *[deliver(plan, n) for n in (1, 2)], deliver(plan, 3, part=0.5, BRAIN="A"))
+    assert now.begun_at == {"BRAIN": "A", "UPPER": "B", "LOWER": "B"}

@@ -11,7 +11,13 @@ from spine_course import machine, sequence, spine
 
 from featherlog.junction.design import Pattern
 from featherlog.sequence.planning import plan_course
-from featherlog.sequence.progress import Progress, fraction_states, previous_position, progress
+from featherlog.sequence.progress import (
+    Progress,
+    due_in,
+    fraction_states,
+    last_positions,
+    progress,
+)
 
 if TYPE_CHECKING:
     from featherlog.junction.plan import Plan
@@ -102,9 +108,13 @@ def test_each_field_keeps_all_its_positions(split: Plan) -> None:
     assert set(state.last_position.values()) == {"B"}
 
 
-def test_the_position_before_a_step_is_that_of_the_step_before(split: Plan) -> None:
-    states = fraction_states(split, step(split, "A", 0.25), PERCENT)
-    assert previous_position(split, states, 1) is None
-    assert previous_position(split, states, 1, step=2) == "A"
-    assert previous_position(split, {}, 1, step=3) == "B"
-    assert previous_position(split, {}, 2) == "C"
+def test_fields_stand_at_the_step_before(split: Plan) -> None:
+    def stands(fraction: int, *given: list[DeliveredBeam]) -> set[str]:
+        states = fraction_states(split, [row for rows in given for row in rows], PERCENT)
+        due = due_in(split, fraction, states.get(fraction), PERCENT)
+        return set(last_positions(split, states, due).values())
+
+    assert stands(1) == set()
+    assert stands(1, step(split, "A", 0.25)) == {"A"}
+    assert stands(1, step(split, "A", 0.25), step(split, "B", 0.5)) == {"B"}
+    assert stands(2) == {"C"}
