@@ -197,6 +197,8 @@ def show_policy(json: Json = False, database: Database = None) -> None:
 
 
 def _policy(view: PolicyView) -> Iterator[str]:
+    from featherlog.policy import ALWAYS_TWO
+
     policy, thresholds = view.policy, view.policy.reporting_thresholds
     if view.version:
         yield f"Policy version {view.version} of {policy.department}, ledger entry {view.entry}"
@@ -205,7 +207,7 @@ def _policy(view: PolicyView) -> Iterator[str]:
     yield f"time zone: {policy.time_zone or 'the one of this computer'}"
     yield f"call the physicist: {policy.contacts.physicist or 'nobody named yet'}"
     yield f"call the physician: {policy.contacts.physician or 'nobody named yet'}"
-    yield f"two people: {', '.join(policy.two_people)}"
+    yield f"two people: {', '.join(dict.fromkeys((*ALWAYS_TWO, *policy.two_people)))}"
     yield f"between two fractions on one day: {policy.minimum_interval_hours:g} h"
     yield f"read back on shift days: {', '.join(policy.read_back_on_shift_days)}"
     yield f"physicist present at shifts: {'yes' if policy.physics_presence_at_shifts else 'no'}"

@@ -29,19 +29,24 @@ def first_difference(connection: Connection) -> str | None:
     Raises:
         IntegrityError: an entry cannot be projected at all.
     """
-    with _scratch() as scratch:
+    with scratch_database() as scratch:
         _copy_ledger(connection, scratch)
         for entry in ledger.entries(scratch):
             projection.apply(scratch, entry)
-        for table in reversed(PROJECTIONS):
-            fault = _difference(connection, scratch, table)
-            if fault is not None:
-                return fault
-    return None
+        return next((sentence for _, sentence in differences(connection, scratch)), None)
+
+
+def differences(live: Connection, made: Connection) -> Iterator[tuple[int, str]]:
+    """Yield the first difference of each table: the entry that its row tells of, and a sentence."""
+    for table in reversed(PROJECTIONS):
+        difference = _difference(live, made, table)
+        if difference is not None:
+            yield difference
 
 
 @contextmanager
-def _scratch() -> Iterator[Connection]:
+def scratch_database() -> Iterator[Connection]:
+    """Give an empty database with all tables, gone at the end."""
     # A database without a name lives in a private, nameless temporary file; it is no second truth.
     engine = sqlalchemy.create_engine(
         "sqlite://", creator=lambda: sqlite3.connect(""), poolclass=StaticPool
@@ -60,17 +65,20 @@ def _copy_ledger(connection: Connection, scratch: Connection) -> None:
         scratch.execute(insert(ledger_entry), [dict(row) for row in batch])
 
 
-def _difference(live: Connection, made: Connection, table: Table) -> str | None:
+def _difference(live: Connection, made: Connection, table: Table) -> tuple[int, str] | None:
     for found, expected in zip_longest(_rows(live, table), _rows(made, table)):
         if found == expected:
             continue
         if found is None or (expected is not None and _key(table, expected) < _key(table, found)):
-            return f"{_name(table, expected)} is missing, but the ledger made it."
+            said = f"{_name(table, expected)} is missing, but the ledger made it."
+            return _entry(table, expected), said
         if expected is None or _key(table, found) < _key(table, expected):
-            return f"{_name(table, found)} is there, but no ledger entry made it."
+            said = f"{_name(table, found)} is there, but no ledger entry made it."
+            return _entry(table, found), said
         columns = table.columns.keys()
         other = [n for n, a, b in zip(columns, found, expected, strict=True) if a != b]
-        return f"{_name(table, found)} differs from what the ledger made, in {', '.join(other)}."
+        said = f"{_name(table, found)} differs from what the ledger made, in {', '.join(other)}."
+        return _entry(table, expected), said
     return None
 
 
@@ -80,8 +88,16 @@ def _rows(connection: Connection, table: Table) -> Iterator[tuple[Any, ...]]:
     order = [
         key.collate(collation) if isinstance(key.type, Text) else key for key in table.primary_key
     ]
-    for row in connection.execute(select(table).order_by(*order)):
-        yield tuple(row)
+    options = {"yield_per": _BATCH}
+    with connection.execute(select(table).order_by(*order), execution_options=options) as rows:
+        yield from map(tuple, rows)
+
+
+def _entry(table: Table, row: tuple[Any, ...]) -> int:
+    """Return the entry that a row tells of, in whichever column it stands."""
+    columns = table.columns.keys()
+    name = "entry" if "entry" in columns else "from_entry"
+    return int(row[columns.index(name)])
 
 
 def _key(table: Table, row: tuple[Any, ...]) -> tuple[Any, ...]:

@@ -1,30 +1,30 @@
 """The whole ledger looked at again, and what the projections should be: the first fault is named.
 
 For each entry, in order: its place and hash in the chain, its signatures, who signed it, what it
-follows. Then the projections are made anew in a database of their own in memory, and compared.
+follows. Then the projections are made anew in a scratch database, and compared.
 """
 
 from __future__ import annotations
 
 from dataclasses import dataclass
-from itertools import zip_longest
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
-from sqlalchemy import Text, create_engine, func, insert, select
+from sqlalchemy import func, insert, select
 
 from featherlog.errors import IntegrityError
 from featherlog.signing.keys import verify as holds
 from featherlog.store import projection
 from featherlog.store.authority import People
+from featherlog.store.comparing import differences, scratch_database
 from featherlog.store.entry import FIRST_HASH, Kind, read_signatures, signed_by, text_to_sign
 from featherlog.store.ledger import chain_fault, entries, row_of
 from featherlog.store.order import Courses
-from featherlog.store.tables import PROJECTIONS, ledger_entry, metadata
+from featherlog.store.tables import ledger_entry
 
 if TYPE_CHECKING:
-    from collections.abc import Callable, Iterator
+    from collections.abc import Callable
 
-    from sqlalchemy import Connection, Row, Table
+    from sqlalchemy import Connection
 
     from featherlog.store.entry import Entry, Signature
 
@@ -68,9 +68,7 @@ def verify(
         earlier: a head that must be part of this ledger; tells a tail that was cut off.
         progress: called now and then with the entries done and the entries there are.
     """
-    scratch = create_engine("sqlite://")
-    metadata.create_all(scratch)
-    with scratch.begin() as anew:
+    with scratch_database() as anew:
         walk = _Walk(anew, earlier)
         total = connection.execute(select(func.count()).select_from(ledger_entry)).scalar_one()
         for number, entry in enumerate(entries(connection), start=1):
@@ -82,8 +80,7 @@ def verify(
         cut = walk.cut_tail()
         if cut is not None:
             return walk.found(None, cut)
-        differs = _projection_fault(connection, anew)
-        return walk.found(*differs) if differs else walk.found(None, "")
+        return walk.found(*min(differences(connection, anew), default=(None, "")))
 
 
 class _Walk:
@@ -166,40 +163,3 @@ def _signature_fault(entry: Entry, signatures: tuple[Signature, ...]) -> str | N
         if not holds(signature.key, text, signature.signature):
             return f"the signature of {signature.who} does not hold"
     return None
-
-
-def _projection_fault(live: Connection, anew: Connection) -> tuple[int, str] | None:
-    """Return the first entry whose projections differ from what the ledger makes of them."""
-    found = [fault for table in PROJECTIONS if (fault := _table_fault(table, live, anew))]
-    return min(found, default=None)
-
-
-def _table_fault(table: Table, live: Connection, anew: Connection) -> tuple[int, str] | None:
-    for is_there, should_be in zip_longest(_rows(live, table), _rows(anew, table)):
-        if is_there is None or should_be is None or tuple(is_there) != tuple(should_be):
-            return _difference(table, is_there, should_be)
-    return None
-
-
-def _difference(
-    table: Table, is_there: Row[Any] | None, should_be: Row[Any] | None
-) -> tuple[int, str]:
-    column = "from_entry" if table.name == "staff_key" else "entry"
-    numbers = [getattr(row, column) for row in (should_be, is_there) if row is not None]
-    number = min(numbers)
-    return number, (
-        f"The table {table.name} is not what the ledger makes of it, first where it tells of entry "
-        f"{number}: it was changed behind the program."
-    )
-
-
-def _rows(connection: Connection, table: Table) -> Iterator[Row[Any]]:
-    # The order of text depends on the server's language; by its bytes it is the same everywhere.
-    byte_order = "C" if connection.dialect.name == "postgresql" else "BINARY"
-    keys = [
-        column.collate(byte_order) if isinstance(column.type, Text) else column
-        for column in table.primary_key
-    ]
-    query = select(table).order_by(*keys)
-    with connection.execute(query, execution_options={"yield_per": _REPORT_EVERY}) as streamed:
-        yield from streamed

@@ -139,6 +139,10 @@ def explained(number: int = 1) -> Draft:
     return draft(Kind.DEPARTURE_EXPLAINED, {"departure": number, "reason": "marks were faint"})
 
 
+def paused() -> Draft:
+    return draft(Kind.COURSE_PAUSED, {"reason": "fever"})
+
+
 def whole_story() -> list[Draft]:
     """Return drafts of every kind, in an order that happens."""
     return [
@@ -163,4 +167,5 @@ def whole_story() -> list[Draft]:
         restored(),
         signing_failed(),
         policy(),
+        paused(),
     ]

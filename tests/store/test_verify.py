@@ -198,7 +198,7 @@ def test_a_table_changed_behind_the_program_is_found(
     with migrating(open_engine(database_url)) as owner:
         owner.execute(text(change))
     found = looked(database_url)
-    assert (found.fault_entry, f"The table {table} is not" in found.fault) == (entry, True)
+    assert (found.fault_entry, f"The row of {table} " in found.fault) == (entry, True)
 
 
 FINCH_, WREN_, HERON_ = PEOPLE[FINCH], PEOPLE[WREN], PEOPLE[HERON]
@@ -208,7 +208,7 @@ KEY = scenario.draft(Kind.KEY_REPLACED, NEW_PLOVER.content, course=None)
 RESTORED = scenario.draft(
     Kind.ADMINISTRATOR_RESTORED, ROOK.content | {"role": "administrator"}, course=None
 )
-PAUSED = scenario.draft(Kind.COURSE_PAUSED, {"reason": "fever"})
+PAUSED = scenario.paused()
 RELEASED = scenario.draft(Kind.COURSE_RELEASED, {"next_date": "2025-03-06"})
 STRICT = replace(DEFAULT_POLICY, two_people=(*DEFAULT_POLICY.two_people, Act.EXPLAIN))
 
