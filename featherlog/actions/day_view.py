@@ -105,16 +105,17 @@ def _field_view(now: PositionSettings, index: int, before: Standing, given: _Giv
     since = _table_move(_since(now, field, before), field)
     between, earlier = _between(now, index), _between_before(now, index, before)
     begun = field.field in before.begun
+    last = "the last fraction" if given.due.step == 1 else "the last step"
     if between is None:
-        orders = tuple(f"{move} since the last fraction" for move in since.words)
+        orders = tuple(f"{move} since {last}" for move in since.words)
         still = bool(before.positions) and not orders
-        notes: tuple[str, ...] = ("TABLE: no move since the last fraction",) if still else ()
+        notes: tuple[str, ...] = (f"TABLE: no move since {last}",) if still else ()
     else:
         orders = tuple(
             f"{move} from {now.treated[index - 1].field}"
             for move in _orders(between, earlier, field)
         )
-        notes = tuple(f"part of that, since the last fraction: {move}" for move in since.words)
+        notes = tuple(f"part of that, since {last}: {move}" for move in since.words)
     if begun:
         notes = ("treated already in this fraction: nothing of it moves",)
     return FieldView(
@@ -228,7 +229,7 @@ def _between_before(now: PositionSettings, index: int, before: Standing) -> Tabl
     move = _difference(
         _place(before.positions[field], field), _place(before.positions[other], other)
     )
-    return _table_move(move, now.treated[index])
+    return TableMoveView(*move, ())
 
 
 def _sum(one: Triple, other: Triple) -> Triple:

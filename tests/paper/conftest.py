@@ -79,11 +79,20 @@ def beam(
 
 
 def field(name: str, beams: tuple[BeamView, ...], *, first: bool) -> FieldView:
+    since = move() if first else move(longitudinal=1.0)
+    between = None if first else move(longitudinal=24.0, vertical=-6.3)
     return FieldView(
         field=name,
         moved_by="jaws" if first else "couch",
-        since_last=move() if first else move(longitudinal=1.0),
-        from_field_before=None if first else move(longitudinal=24.0, vertical=-6.3),
+        previous_position="A",
+        begun=False,
+        since_last=since,
+        from_field_before=between,
+        before_from_field_before=None if first else TableMoveView(0.0, 23.0, -6.3, ()),
+        orders=() if between is None else between.words,
+        notes=("TABLE: no move since the last fraction",)
+        if first
+        else tuple(f"part of that, since the last fraction: {one}" for one in since.words),
         beams=beams,
     )
 
@@ -174,6 +183,7 @@ def still(view: DayView) -> DayView:
         replace(
             f,
             since_last=move(),
+            notes=(),
             beams=tuple(
                 replace(b, jaws=tuple(replace(j, previous_cm=j.cm, words="") for j in b.jaws))
                 for b in f.beams
@@ -333,6 +343,7 @@ def figures(dose: tuple[float, ...], z: list[float], reference: float) -> DoseFi
     most, least = max(dose), min(dose)
     return DoseFigures(
         reference_gy=reference,
+        cold_reference_gy=reference,
         maximum_gy=most,
         maximum_percent=100 * most / reference,
         maximum_z_cm=z[dose.index(most)],

@@ -232,7 +232,6 @@ def test_a_step_of_a_split_fraction_is_named_beside_the_fraction(step_day: DayVi
     text = whole_text(shift_sheet(step_day))
     assert "6of20STEP2of3" in text
     assert "34.5of103.5given" in text
-    assert "sincethelaststep" in text
     locked = whole_text(shift_sheet(replace(step_day, part_delivered=True)))
     assert "Step2offraction6mustbefinishedatpositionB." in locked
 
