@@ -68,11 +68,11 @@ class FieldView:
 
     ``from_field_before`` is the one table move to make for it, from the field treated before it on
     the same day, and ``before_from_field_before`` what that move was last time (figures only); both
-    are None for the first field, whose move is ``since_last``: against the last fraction. For later fields
-    ``since_last`` only explains, it is part of the move already. ``previous_position`` is where the
-    field stood last, empty at the first fraction; ``begun`` is true when it was treated already in
-    this fraction and nothing of it moves. ``orders`` say in words what to do with the table, each
-    once, and ``notes`` explain.
+    are None for the first field, whose move is ``since_last``: against the last fraction. For later
+    fields ``since_last`` only explains, it is part of the move already. ``previous_position`` is
+    where the field stood last, empty at the first fraction; ``begun`` is true when it was treated
+    already in this fraction and nothing of it moves. ``orders`` say in words what to do with the
+    table, each once, and ``notes`` explain.
     """
 
     field: str
