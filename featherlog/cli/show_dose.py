@@ -11,7 +11,7 @@ from featherlog.cli.show_day import heading_lines
 if TYPE_CHECKING:
     from collections.abc import Iterator
 
-    from featherlog.views.dose import DoseCurve, DoseLine, DoseView
+    from featherlog.views.dose import DoseCurve, DoseFigures, DoseLine, DoseView
 
 
 def dose_text(view: DoseView) -> str:
@@ -43,8 +43,22 @@ def _depth(line: DoseLine, reference_gy: float) -> Iterator[str]:
         f"    {text}" for text in table(heads, rows, numeric="|".join(heads[1:])).split("\n")
     )
     for curve in line.curves:
-        if curve.figures and abs(curve.figures.reference_gy - reference_gy) > 1e-6:  # noqa: PLR2004 - noise
-            yield f"    {curve.name}: percent of {curve.figures.reference_gy:.2f} Gy"
+        if curve.note:
+            low, high = min(curve.dose_gy), max(curve.dose_gy)
+            said = f"{curve.name}: {low:.2f} to {high:.2f} Gy; {curve.note}"
+            yield wrapped(said, "    ")
+        elif curve.figures and _other_reference(curve.figures, reference_gy):
+            yield f"    {curve.name}: percent of {_references(curve.figures)}"
+
+
+def _other_reference(figures: DoseFigures, reference_gy: float) -> bool:
+    of = (figures.reference_gy, figures.cold_reference_gy)
+    return any(abs(gy - reference_gy) > 1e-6 for gy in of)  # noqa: PLR2004 - noise
+
+
+def _references(figures: DoseFigures) -> str:
+    hot, cold = f"{figures.reference_gy:.2f} Gy", f"{figures.cold_reference_gy:.2f} Gy"
+    return hot if hot == cold else f"{hot} (maximum) and {cold} (minimum)"
 
 
 def _row(curve: DoseCurve) -> tuple[str, ...]:

@@ -10,7 +10,7 @@ from collections import defaultdict
 from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
-    from collections.abc import Iterable, Iterator
+    from collections.abc import Iterable, Iterator, Mapping
 
     from featherlog.junction.plan import BeamSetting, Plan
     from featherlog.sequence.progress import DeliveredBeam
@@ -97,13 +97,28 @@ def completed_dose_gy(
 
     A fraction is complete when each of its beams has its planned meterset within the tolerance.
     """
+    complete = _complete(plan, _parts_by_fraction(deliveries), meterset_tolerance_percent)
+    return sum(fraction.dose_gy for fraction in plan.fractions if fraction.number in complete)
+
+
+def has_unfinished(
+    plan: Plan, deliveries: Iterable[DeliveredBeam], meterset_tolerance_percent: float
+) -> bool:
+    """Tell whether a fraction was begun and is not complete, prescribed or not."""
     parts = _parts_by_fraction(deliveries)
+    begun = {number for number, _ in parts}
+    return begun != _complete(plan, parts, meterset_tolerance_percent)
+
+
+def _complete(
+    plan: Plan, parts: Mapping[tuple[int, str], float], meterset_tolerance_percent: float
+) -> set[int]:
     enough = 1.0 - meterset_tolerance_percent / 100.0 - 1e-9
-    return sum(
-        fraction.dose_gy
-        for fraction in plan.fractions
-        if all(parts[fraction.number, beam.beam] >= enough for beam in _beams(plan))
-    )
+    return {
+        number
+        for number in {number for number, _ in parts}
+        if all(parts.get((number, beam.beam), 0.0) >= enough for beam in _beams(plan))
+    }
 
 
 def _delivered_parts(plan: Plan, deliveries: Iterable[DeliveredBeam]) -> Iterator[_Part]:

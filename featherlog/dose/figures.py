@@ -25,24 +25,30 @@ _NOISE_GY = 1e-9
 
 
 def dose_figures(
-    z_cm: NDArray[np.float64], dose_gy: NDArray[np.float64], reference_gy: float
+    z_cm: NDArray[np.float64],
+    dose_gy: NDArray[np.float64],
+    reference_gy: float,
+    cold_reference_gy: float | None = None,
 ) -> DoseFigures:
     """Return the extremes and the hot and cold lengths of a profile on an even, rising grid.
 
-    On a plateau the extreme's coordinate is the plateau's first grid point.
+    On a plateau the extreme's coordinate is the plateau's first grid point. Cold is judged against
+    ``cold_reference_gy`` where it is given.
     """
+    cold_gy = reference_gy if cold_reference_gy is None else cold_reference_gy
     maximum_z_cm, maximum_gy = _peak(z_cm, dose_gy)
     minimum_z_cm, negative_minimum_gy = _peak(z_cm, -dose_gy)
     return DoseFigures(
         reference_gy=reference_gy,
+        cold_reference_gy=cold_gy,
         maximum_gy=maximum_gy,
         maximum_percent=100.0 * maximum_gy / reference_gy,
         maximum_z_cm=maximum_z_cm,
         minimum_gy=-negative_minimum_gy,
-        minimum_percent=-100.0 * negative_minimum_gy / reference_gy,
+        minimum_percent=-100.0 * negative_minimum_gy / cold_gy,
         minimum_z_cm=minimum_z_cm,
         over_107_cm=length_above(z_cm, dose_gy, HOT * reference_gy),
-        under_95_cm=length_above(z_cm, -dose_gy, -COLD * reference_gy),
+        under_95_cm=length_above(z_cm, -dose_gy, -COLD * cold_gy),
     )
 
 

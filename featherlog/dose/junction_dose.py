@@ -2,8 +2,11 @@
 
 The planned, predicted and unfeathered curves are measured against the junction's reference dose,
 which is the whole course's; the delivered one against the part of it that the complete prescribed
-fractions stand for, so a fraction beyond the prescribed number, or one still in parts, shows as
-excess.
+fractions stand for, so a fraction beyond the prescribed number shows as excess. While a fraction is
+unfinished its two sides cannot be compared, so the delivered curve then has Gy and no percent.
+
+A neighbour of an earlier course had its own dose before this one began. Hot is then judged against
+the higher dose of the two sides and cold against the lower.
 """
 
 from __future__ import annotations
@@ -17,6 +20,7 @@ from featherlog.dose.amounts import (
     completed_dose_gy,
     delivered_amounts,
     earlier_amounts,
+    has_unfinished,
     planned_amounts,
     predicted_amounts,
     unfeathered_amounts,
@@ -28,6 +32,7 @@ from featherlog.dose.result import (
     PLANNED,
     PREDICTED,
     UNFEATHERED,
+    UNFINISHED,
     DoseCurve,
     DoseLine,
     JunctionDose,
@@ -57,6 +62,7 @@ class _CourseSum:
     name: str
     amounts: Amounts
     reference_part: float
+    note: str = ""
 
 
 def junction_doses(
@@ -94,7 +100,10 @@ def _course_sums(
     return (
         _CourseSum(PLANNED, earlier | planned_amounts(plan), 1.0),
         _CourseSum(
-            DELIVERED, earlier | delivered_amounts(plan, deliveries), complete_gy / prescribed_gy
+            DELIVERED,
+            earlier | delivered_amounts(plan, deliveries),
+            complete_gy / prescribed_gy,
+            UNFINISHED if has_unfinished(plan, deliveries, meterset_tolerance_percent) else "",
         ),
         _CourseSum(PREDICTED, earlier | predicted_amounts(plan, deliveries), 1.0),
         _CourseSum(UNFEATHERED, earlier | unfeathered_amounts(plan), 1.0),
@@ -129,12 +138,14 @@ def _dose_line(
     x_cm, y_cm, _ = point_at_depth(junction, depth_cm, 0.0)
     line = AxisLine(x_cm, y_cm, course.patient_position, machine)
     z_cm = _grid(*junction_window(line, plan, index))
+    earlier_gy = _earlier_dose_gy(plan, index)
     curves = tuple(
         _curve(
-            each.name,
+            each,
             z_cm,
             line_dose(z_cm, line, plan, each.amounts),
             junction.reference_dose_gy * each.reference_part,
+            earlier_gy,
         )
         for each in sums
     )
@@ -146,8 +157,20 @@ def _grid(low_cm: float, high_cm: float) -> NDArray[np.float64]:
     return np.arange(first, last + 1) / _POINTS_PER_CM
 
 
+def _earlier_dose_gy(plan: Plan, index: int) -> float | None:
+    """Return what a neighbour of an earlier course had; None where both fields are treated."""
+    beside = plan.positions[0].fields[index : index + 2]
+    return next((field.earlier_dose_gy for field in beside if field.earlier_course), None)
+
+
 def _curve(
-    name: str, z_cm: NDArray[np.float64], dose_gy: NDArray[np.float64], reference_gy: float
+    summed: _CourseSum,
+    z_cm: NDArray[np.float64],
+    dose_gy: NDArray[np.float64],
+    own_gy: float,
+    earlier_gy: float | None,
 ) -> DoseCurve:
-    figures = dose_figures(z_cm, dose_gy, reference_gy) if reference_gy > 0 else None
-    return DoseCurve(name, tuple(dose_gy.tolist()), figures)
+    sides_gy = [own_gy] if earlier_gy is None else [own_gy, earlier_gy]
+    known = own_gy > 0 and not summed.note
+    figures = dose_figures(z_cm, dose_gy, max(sides_gy), min(sides_gy)) if known else None
+    return DoseCurve(summed.name, tuple(dose_gy.tolist()), figures, summed.note)

@@ -13,12 +13,20 @@ DELIVERED = "delivered"
 PREDICTED = "predicted"
 UNFEATHERED = "unfeathered"
 
+UNFINISHED = "includes an unfinished fraction, so no percent is given"
+
 
 @dataclass(frozen=True, slots=True)
 class DoseFigures:
-    """Figures of one profile; percent is of ``reference_gy``, z along the axis (+ superior)."""
+    """Figures of one profile; z along the axis (+ superior).
+
+    Maximum and hot length are against ``reference_gy``, minimum and cold length against
+    ``cold_reference_gy``. They differ beside a field of an earlier course: hot is judged against
+    the higher dose of the two sides, cold against the lower.
+    """
 
     reference_gy: float
+    cold_reference_gy: float
     maximum_gy: float
     maximum_percent: float
     maximum_z_cm: float
@@ -31,11 +39,15 @@ class DoseFigures:
 
 @dataclass(frozen=True, slots=True)
 class DoseCurve:
-    """One profile: planned, delivered, predicted or unfeathered; ``figures`` None when no dose."""
+    """One profile: planned, delivered, predicted or unfeathered.
+
+    ``figures`` is None where there is no dose yet, and where ``note`` says why no percent is given.
+    """
 
     name: str
     dose_gy: tuple[float, ...]
     figures: DoseFigures | None
+    note: str = ""
 
 
 @dataclass(frozen=True, slots=True)

@@ -14,7 +14,7 @@ if TYPE_CHECKING:
 
     from reportlab.platypus import Flowable, Table
 
-    from featherlog.views.dose import DoseFigures, DoseLine
+    from featherlog.views.dose import DoseCurve, DoseFigures, DoseLine
 
 _HEADS = (
     "Place", "Dose", "Max Gy", "%", "at z cm", "Min Gy", "%", "at z cm", ">107 % cm", "<95 % cm",
@@ -26,17 +26,20 @@ _PARTS = (104, 60, 39, 33, 38, 39, 33, 38, 53, 48, 55)
 def figures_table(lines: Sequence[tuple[str, DoseLine]], width: float) -> Table:
     """Return the figures of each named line's curves: extremes with their places, and lengths.
 
-    Each row names the dose that its percents are of.
+    Each row names the dose that its percents are of, two where hot and cold are of different ones.
+    A curve without percents has its extremes in Gy and says why.
     """
     rows: list[list[Any]] = [[para(safe(head), style.SMALL) for head in _HEADS]]
     spans: list[tuple[Any, ...]] = []
     for place, line in lines:
-        kept = [(item.name, item.figures) for item in line.curves if item.figures is not None]
+        kept = [item for item in line.curves if item.figures is not None or item.note]
         if kept:
             spans.append(("SPAN", (0, len(rows)), (0, len(rows) + len(kept) - 1)))
-        for number, (name, figures) in enumerate(kept):
+        for number, item in enumerate(kept):
             first = para(safe("" if number else place), style.SMALL)
-            rows.append([first, *_figure_cells(name, figures)])
+            if item.figures is None:
+                spans.append(("SPAN", (-8, len(rows)), (-1, len(rows))))
+            rows.append([first, *_cells(item)])
     return grid(
         rows,
         shares(width, *_PARTS),
@@ -46,6 +49,14 @@ def figures_table(lines: Sequence[tuple[str, DoseLine]], width: float) -> Table:
         padding=(2, 0.8),
         repeat_rows=1,
     )
+
+
+def _cells(curve: DoseCurve) -> list[Flowable]:
+    if curve.figures is not None:
+        return _figure_cells(curve.name, curve.figures)
+    said = f"down to {min(curve.dose_gy):.2f} Gy; {curve.note}"
+    texts = (curve.name, f"{max(curve.dose_gy):.2f}", said, *[""] * (len(_HEADS) - 4))
+    return [para(safe(text), style.SMALL) for text in texts]
 
 
 def _figure_cells(name: str, figures: DoseFigures) -> list[Flowable]:
@@ -58,6 +69,11 @@ def _figure_cells(name: str, figures: DoseFigures) -> list[Flowable]:
         signed(figures.minimum_z_cm, least=2),
         f"{figures.over_107_cm:.2f}",
         f"{figures.under_95_cm:.2f}",
-        figure(figures.reference_gy),
+        _reference(figures),
     )
     return [para(safe(name), style.SMALL), *(para(safe(text), style.SMALL) for text in numbers)]
+
+
+def _reference(figures: DoseFigures) -> str:
+    hot, cold = figure(figures.reference_gy), figure(figures.cold_reference_gy)
+    return hot if hot == cold else f"{hot}; {cold}"

@@ -10,6 +10,7 @@ from featherlog.dose.amounts import (
     completed_dose_gy,
     delivered_amounts,
     earlier_amounts,
+    has_unfinished,
     planned_amounts,
     predicted_amounts,
     unfeathered_amounts,
@@ -109,6 +110,21 @@ def test_a_fraction_counts_once_every_beam_has_its_meterset_within_tolerance(
     p = half_beam_plan("AAA", 1.8)
     begun = [*both(1, "A"), whole(2, "UPPER", "A"), part(2, "LOWER", "A", percent)]
     assert completed_dose_gy(p, begun, 2.0) == pytest.approx(dose_gy)
+
+
+@pytest.mark.parametrize(
+    ("given", "unfinished"),
+    [
+        ([], False),
+        (both(1, "A"), False),
+        ([*both(1, "A"), whole(2, "UPPER", "A")], True),
+        # A fraction beyond the prescribed number can be left unfinished, too.
+        ([*both(1, "A"), *both(2, "A"), part(3, "UPPER", "A", 40)], True),
+        ([whole(1, "UPPER", "A"), part(1, "LOWER", "A", 98.5)], False),
+    ],
+)
+def test_an_unfinished_fraction_is_seen(given: list[DeliveredBeam], *, unfinished: bool) -> None:
+    assert has_unfinished(half_beam_plan("AA"), given, 2.0) is unfinished
 
 
 def test_a_fraction_beyond_the_prescribed_number_is_not_prescribed_dose() -> None:

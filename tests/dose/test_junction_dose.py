@@ -10,6 +10,7 @@ from small_plans import beam, course, half_beam_plan, machine, plan, position, q
 
 from featherlog.dose.course_sum import AxisLine
 from featherlog.dose.junction_dose import junction_doses
+from featherlog.dose.result import UNFINISHED
 from featherlog.dose.window import junction_window
 from featherlog.geometry.patient import PatientPosition
 from featherlog.sequence.progress import DeliveredBeam
@@ -89,6 +90,54 @@ def test_delivered_dose_is_measured_against_the_complete_fractions() -> None:
 def test_a_fraction_too_many_shows_as_excess() -> None:
     figures = curves("AA", both(1, "A") + both(2, "A") + both(3, "A"))["delivered"].figures
     assert figures.maximum_percent == pytest.approx(150.0)
+
+
+def test_while_a_fraction_is_unfinished_the_delivered_curve_has_gy_and_no_percent() -> None:
+    begun = DeliveredBeam(2, "field", "UPPER", "A", 100.0, 100.0)
+    by_name = curves("AA", [*both(1, "A"), begun])
+    delivered = by_name["delivered"]
+    assert (delivered.figures, delivered.note) == (None, UNFINISHED)
+    assert (max(delivered.dose_gy), min(delivered.dose_gy)) == pytest.approx((3.6, 1.8), abs=1e-3)
+    assert by_name["predicted"].figures.maximum_percent == pytest.approx(100.0)
+    assert {curve.note for name, curve in by_name.items() if name != "delivered"} == {""}
+
+
+def beside_earlier(dose_gy: float, deliveries: list[DeliveredBeam]) -> dict[str, DoseCurve]:
+    """Fifteen fractions of 2 Gy at LOWER beside a field of an earlier course."""
+    of = half_beam_plan("A" * 15, 2.0)
+    upper, *others = of.positions[0].fields
+    earlier = dataclasses.replace(upper, earlier_course="2029", earlier_dose_gy=dose_gy)
+    first = dataclasses.replace(of.positions[0], fields=(earlier, *others))
+    positions = (first, *of.positions[1:])
+    of = dataclasses.replace(of, positions=positions)
+    reference = dataclasses.replace(course(15).junctions[0], reference_dose_gy=30.0)
+    between = dataclasses.replace(course(15), junctions=(reference,))
+    (junction,) = junction_doses(between, of, ALDER, deliveries)
+    return {curve.name: curve for curve in junction.lines[1].curves}
+
+
+@pytest.mark.parametrize("fractions", [1, 2, 15])
+@pytest.mark.parametrize("earlier_gy", [20.0, 30.0, 45.0])
+def test_beside_an_earlier_course_each_side_is_judged_by_its_own_dose(
+    fractions: int, earlier_gy: float
+) -> None:
+    given = [
+        DeliveredBeam(number, "field", "LOWER", "A", 100.0, 100.0)
+        for number in range(1, fractions + 1)
+    ]
+    by_name = beside_earlier(earlier_gy, given)
+    for curve in by_name.values():
+        figures = curve.figures
+        assert figures.maximum_percent == pytest.approx(100.0, abs=0.1)
+        assert figures.minimum_percent == pytest.approx(100.0, abs=0.1)
+        assert (figures.over_107_cm, figures.under_95_cm) == (0.0, 0.0)
+    delivered = by_name["delivered"].figures
+    sides = sorted([delivered.cold_reference_gy, delivered.reference_gy])
+    assert sides == pytest.approx(sorted([earlier_gy, 2.0 * fractions]))
+
+
+def test_an_earlier_course_alone_has_no_figures_yet() -> None:
+    assert beside_earlier(30.0, [])["delivered"].figures is None
 
 
 def test_a_wrong_position_stays_in_the_prediction() -> None:

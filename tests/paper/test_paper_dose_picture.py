@@ -10,6 +10,7 @@ from hypothesis import strategies as st
 from pdf_runs import font_files, overlapping, page_runs, page_texts, squeezed
 from reportlab.graphics.shapes import Drawing, PolyLine, String
 
+from featherlog.dose.result import UNFINISHED
 from featherlog.errors import NotFoundError
 from featherlog.paper.dose_picture import dose_drawing, dose_pdf, dose_svg, line_drawing
 from featherlog.paper.plot import ticks
@@ -128,11 +129,26 @@ def test_every_row_of_percents_names_its_own_reference(dose_view: DoseView) -> N
     junction = dose_view.junctions[0]
     line = junction.lines[0]
     own = tuple(
-        replace(curve, figures=replace(curve.figures, reference_gy=12.6))
+        replace(curve, figures=replace(curve.figures, reference_gy=12.6, cold_reference_gy=3.2))
         for curve in line.curves
         if curve.name == "delivered" and curve.figures is not None
     )
     view = replace(dose_view, junctions=(replace(junction, lines=(replace(line, curves=own),)),))
     (page,) = page_texts(dose_pdf(view))
     assert "100%isGy" in page
-    assert "0.000.4012.6" in page
+    assert "0.000.4012.6;3.2" in page
+
+
+def test_a_curve_with_an_unfinished_fraction_has_gy_and_words(dose_view: DoseView) -> None:
+    junction = dose_view.junctions[0]
+    line = junction.lines[0]
+    curves_now = tuple(
+        replace(curve, figures=None, note=UNFINISHED) if curve.name == "delivered" else curve
+        for curve in line.curves
+    )
+    lines = (replace(line, curves=curves_now),)
+    view = replace(dose_view, junctions=(replace(junction, lines=lines),))
+    (page,) = page_texts(dose_pdf(view))
+    dose_gy = next(curve.dose_gy for curve in line.curves if curve.name == "delivered")
+    said = f"delivered{max(dose_gy):.2f}down to {min(dose_gy):.2f} Gy; {UNFINISHED}"
+    assert squeezed(said) in page
