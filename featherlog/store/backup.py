@@ -23,9 +23,10 @@ from featherlog.errors import (
     RefusedError,
     StoreError,
 )
-from featherlog.store import comparing, engine, ledger, migrate
+from featherlog.store import engine, migrate
 from featherlog.store.copying import copy_file
 from featherlog.store.engine import open_engine, reading, resolve_url
+from featherlog.store.verify import verify as verify_ledger
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
@@ -154,9 +155,9 @@ def _as_current(file: Path, *, folder: Path) -> Iterator[Path]:
         url = resolve_url(str(copy))
         migrate.upgrade(url)
         with reading(open_engine(url)) as connection:
-            fault = ledger.first_fault(connection) or comparing.first_difference(connection)
+            fault = verify_ledger(connection).fault
         if fault:
-            raise IntegrityError(str(fault))
+            raise IntegrityError(fault)
         yield copy
 
 

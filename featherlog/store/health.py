@@ -11,17 +11,11 @@ from typing import TYPE_CHECKING
 from sqlalchemy import select
 
 from featherlog.errors import FeatherlogError
-from featherlog.store import (
-    comparing,
-    health_file,
-    health_postgresql,
-    health_sqlite,
-    ledger,
-    queries,
-)
+from featherlog.store import health_file, health_postgresql, health_sqlite, queries
 from featherlog.store.engine import open_engine, reading, sqlite_file
 from featherlog.store.schema import REVISIONS
 from featherlog.store.tables import ledger_entry, metadata
+from featherlog.store.verify import verify
 from featherlog.views.health import FAIL, OK, WARN, HealthLine
 
 if TYPE_CHECKING:
@@ -54,7 +48,6 @@ def examine(url: str, now: datetime) -> Iterator[HealthLine]:
         ("purpose", _purpose),
         ("schema", _schema),
         ("ledger", _ledger),
-        ("projections", _projections),
         ("clock", lambda connection: _clock(connection, now)),
     )
     for name, check in (*own, *common):
@@ -83,30 +76,25 @@ def _schema(connection: Connection) -> HealthLine:
     from alembic.autogenerate import compare_metadata  # noqa: PLC0415 - slow, and only needed here
     from alembic.migration import MigrationContext  # noqa: PLC0415 - as above
 
-    name = "schema"
-    differences = compare_metadata(MigrationContext.configure(connection), metadata)
+    differences = len(compare_metadata(MigrationContext.configure(connection), metadata))
+    if connection.dialect.name == "sqlite":
+        differences += health_sqlite.changed_statements(connection)
     if differences:
-        found = f"{len(differences)} difference(s) from revision {REVISIONS[-1]}"
-        return HealthLine(name, FAIL, found, "somebody changed the tables; call the administrator")
-    return HealthLine(name, OK, f"revision {REVISIONS[-1]}, this program's")
+        found = f"{differences} difference(s) from revision {REVISIONS[-1]}"
+        todo = "somebody changed tables or triggers; call the administrator"
+        return HealthLine("schema", FAIL, found, todo)
+    return HealthLine("schema", OK, f"revision {REVISIONS[-1]}, this program's")
 
 
 def _ledger(connection: Connection) -> HealthLine:
-    fault = ledger.first_fault(connection)
-    if fault:
-        return HealthLine("ledger", FAIL, str(fault), _RESTORE)
-    head = ledger.head(connection)
-    if head is None:
+    found = verify(connection)
+    if found.fault:
+        return HealthLine("ledger", FAIL, found.fault, _RESTORE)
+    if not found.entries:
         return HealthLine("ledger", OK, "empty")
-    found = f"fits together up to its head, {head.number}:{head.hash[:12]}"
-    return HealthLine("ledger", OK, found)
-
-
-def _projections(connection: Connection) -> HealthLine:
-    fault = comparing.first_difference(connection)
-    if fault:
-        return HealthLine("projections", FAIL, fault, _RESTORE)
-    return HealthLine("projections", OK, "every row is what the ledger made")
+    number, _, digits = found.head.partition(":")
+    text = f"{number} entries and {found.signatures} signatures hold, and every table is what they"
+    return HealthLine("ledger", OK, f"{text} made; head {number}:{digits[:12]}")
 
 
 def _clock(connection: Connection, now: datetime) -> HealthLine:

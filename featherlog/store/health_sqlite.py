@@ -4,19 +4,49 @@ from __future__ import annotations
 
 import platform
 import sqlite3
-from typing import TYPE_CHECKING
+from contextlib import closing
+from functools import cache
+from pathlib import Path
+from tempfile import TemporaryDirectory
+from typing import TYPE_CHECKING, Any
 
-from featherlog.store import engine
+from featherlog.store import engine, migrate
+from featherlog.store.engine import resolve_url
 from featherlog.views.health import FAIL, OK, HealthLine
 
 if TYPE_CHECKING:
+    from collections.abc import Iterable, Sequence
+
     from sqlalchemy import Connection
 
+_STATEMENTS = "SELECT type, name, tbl_name, sql FROM sqlite_master"
 _TRIGGERS = frozenset(
     f"{table}_no_{verb}"
     for table in ("ledger_entry", "store_property")
     for verb in ("update", "delete")
 )
+
+
+def changed_statements(connection: Connection) -> int:
+    """Count the statements that made tables, indexes and triggers and are not the program's own."""
+    return len(_own_statements() ^ _normal(connection.exec_driver_sql(_STATEMENTS)))
+
+
+@cache
+def _own_statements() -> frozenset[tuple[str, ...]]:
+    with TemporaryDirectory() as folder:
+        file = Path(folder) / "new.db"
+        migrate.create(resolve_url(str(file)), demo=True)
+        with closing(sqlite3.connect(file)) as connection:
+            return _normal(connection.execute(_STATEMENTS))
+
+
+def _normal(rows: Iterable[Sequence[Any]]) -> frozenset[tuple[str, ...]]:
+    # A migration that rebuilds a table writes its constraints in an order of chance.
+    return frozenset(
+        (kind, name, table, *sorted(line.strip(" \t,") for line in (sql or "").splitlines()))
+        for kind, name, table, sql in rows
+    )
 
 
 def _version(_connection: Connection) -> HealthLine:

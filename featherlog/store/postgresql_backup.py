@@ -10,10 +10,10 @@ from typing import TYPE_CHECKING
 from sqlalchemy import make_url
 
 from featherlog.errors import IntegrityError, StoreError
-from featherlog.store import ledger
 from featherlog.store.backup import free
 from featherlog.store.copying import make_private
 from featherlog.store.engine import masked, open_engine, reading
+from featherlog.store.verify import verify
 
 if TYPE_CHECKING:
     from pathlib import Path
@@ -36,7 +36,7 @@ def back_up(url: str, target: Path) -> Path:
     """
     part = free(target).with_name(f"{target.name}.part")
     with reading(open_engine(url)) as connection:
-        fault = ledger.first_fault(connection)
+        fault = verify(connection).fault
     if fault:
         raise IntegrityError(f"No backup was made, for the database is not sound: {fault}")
     try:

@@ -22,7 +22,7 @@ if TYPE_CHECKING:
     from collections.abc import Iterator
 
 GOLDEN = Path(__file__).parents[2] / "fixtures" / "golden"
-ALIKE = {"append-only", "schema", "ledger", "projections"}
+ALIKE = {"append-only", "schema", "ledger"}
 
 
 @pytest.fixture(params=REVISIONS)

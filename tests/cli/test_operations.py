@@ -46,7 +46,7 @@ def test_health_that_fails_has_an_exit_code_of_its_own(
     assert plain.code == 7
     assert "FAIL  append-only  missing: ledger_entry_no_delete" in plain.out
     assert "-> somebody took away" in plain.out
-    assert plain.fault == "the database is not sound: append-only"
+    assert plain.fault == "the database is not sound: append-only, schema"
     found = department.here(monkeypatch, capsys, "database", "health", "--json")
     assert found.code == 7
     assert json.loads(found.out)["grade"] == "FAIL"

@@ -15,10 +15,10 @@ from pathlib import Path
 
 sys.path.insert(0, str(Path(__file__).resolve().parents[1]))
 
-from department import recorded  # noqa: E402 - the path to it is set above
+from department import recorded
 
-from featherlog.actions.database import status  # noqa: E402 - as above
-from featherlog.errors import StoreError  # noqa: E402 - as above
+from featherlog.actions.database import status
+from featherlog.errors import StoreError
 
 DAY = "2026-03-02"
 

@@ -11,15 +11,16 @@ import subprocess
 import sys
 from dataclasses import dataclass
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Self
 
 import pytest
 from department import THIGH, add_course, build, recorded
 from sqlalchemy import func, select
 
-from featherlog.store import comparing, ledger
+from featherlog.store import ledger
 from featherlog.store.engine import open_engine, reading, sqlite_file
 from featherlog.store.tables import delivery
+from featherlog.store.verify import verify
 
 if TYPE_CHECKING:
     from collections.abc import Callable
@@ -59,7 +60,7 @@ class Recorders:
         )
         assert self._line() == "ready"
 
-    def __enter__(self) -> Recorders:
+    def __enter__(self) -> Self:
         return self
 
     def __exit__(self, *_: object) -> None:
@@ -116,8 +117,7 @@ def whole(url: str) -> None:
             query = select(func.count()).where(delivery.c.entry == entry.number)
             beams = len(entry.content.get("beams", ()))
             assert connection.execute(query).scalar_one() == beams
-        assert ledger.first_fault(connection) is None
-        assert comparing.first_difference(connection) is None
+        assert verify(connection).fault == ""
 
 
 def strike(url: str, trials: int, restart: Callable[[], None] | None = None) -> Figures:

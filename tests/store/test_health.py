@@ -20,7 +20,7 @@ from featherlog.store.ledger import append
 from featherlog.views.health import FAIL, OK, WARN, HealthLine
 
 NOW = datetime.fromisoformat("2025-03-10T08:00:00+01:00")
-ALIKE = {"database", "append-only", "schema", "ledger", "projections", "clock"}
+ALIKE = {"database", "purpose", "append-only", "schema", "ledger", "clock"}
 
 
 def lines(url: str, now: datetime = NOW) -> dict[str, HealthLine]:
@@ -77,7 +77,7 @@ def test_the_daily_role_is_no_owner(database_url: str) -> None:
         change(database_url, f"GRANT SELECT ON ALL TABLES IN SCHEMA public TO {role}")
         found = lines(f"{database_url}&options=-crole%3D{role}")
         assert found["role"].grade == OK
-        assert found["projections"].grade == OK
+        assert found["ledger"].grade == OK
     finally:
         change(database_url, f"DROP OWNED BY {role}", f"DROP ROLE {role}")
 
@@ -85,14 +85,31 @@ def test_the_daily_role_is_no_owner(database_url: str) -> None:
 def test_a_changed_projection_fails(database_url: str) -> None:
     tell(database_url, "2025-03-03T08:00:00+01:00")
     change(database_url, "UPDATE staff SET role = 'physician'")
+    found = lines(database_url)["ledger"]
+    assert found.grade == FAIL
+    assert "Person 0" in found.found
+
+
+@pytest.mark.parametrize("backend", ["sqlite"])
+def test_a_changed_trigger_fails(database_url: str) -> None:
+    name = "ledger_entry_no_update"
+    change(
+        database_url,
+        f"DROP TRIGGER {name}",
+        f"CREATE TRIGGER {name} BEFORE UPDATE ON ledger_entry BEGIN SELECT 1; END",
+    )
     found = lines(database_url)
-    assert (found["projections"].grade, found["ledger"].grade) == (FAIL, OK)
-    assert "Person 0" in found["projections"].found
+    assert (found["append-only"].grade, found["schema"].grade) == (OK, FAIL)
 
 
 def test_a_changed_table_fails(database_url: str) -> None:
     change(database_url, "DROP INDEX ix_delivery_course")
     assert lines(database_url)["schema"].grade == FAIL
+
+
+def test_a_purpose_that_is_not_known_fails(database_url: str) -> None:
+    change(database_url, "INSERT INTO store_property VALUES ('other', 'yes')")
+    assert lines(database_url)["purpose"].grade == FAIL
 
 
 @pytest.mark.parametrize("backend", ["sqlite"])

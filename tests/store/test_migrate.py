@@ -6,6 +6,7 @@ import stat
 from pathlib import Path
 
 import pytest
+import signed_story as story
 import store_scenario as scenario
 from alembic.autogenerate import compare_metadata
 from alembic.config import Config
@@ -94,8 +95,8 @@ def test_an_upgrade_of_a_current_database_does_nothing(database_url: str, tmp_pa
 
 @pytest.mark.parametrize("backend", ["sqlite"])
 def test_a_file_is_copied_beside_itself_before_its_schema_changes(database_url: str) -> None:
-    with writing(open_engine(database_url)) as connection:
-        written = [append(connection, draft) for draft in scenario.whole_story()]
+    people = story.everyone()
+    written = story.tell(database_url, [*story.opening(people), *story.course(people)])
     backup = downgrade(database_url, "base", lose_records=True)
     file = sqlite_file(database_url)
     assert backup is not None

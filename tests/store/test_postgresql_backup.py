@@ -8,14 +8,14 @@ import subprocess
 from typing import TYPE_CHECKING
 
 import pytest
-import store_scenario as scenario
+import signed_story as story
 from sqlalchemy import text
 
 from featherlog.actions.operations import restore
 from featherlog.errors import IntegrityError, RefusedError, StoreError
 from featherlog.store import postgresql_backup
-from featherlog.store.engine import migrating, open_engine, reading, writing
-from featherlog.store.ledger import append, entries
+from featherlog.store.engine import migrating, open_engine, reading
+from featherlog.store.ledger import entries
 from featherlog.store.postgresql_backup import back_up
 
 if TYPE_CHECKING:
@@ -27,9 +27,8 @@ needs_pg_dump = pytest.mark.skipif(not shutil.which("pg_dump"), reason="needs pg
 
 @pytest.fixture
 def told(database_url: str) -> str:
-    with writing(open_engine(database_url)) as connection:
-        for draft in scenario.whole_story():
-            append(connection, draft)
+    people = story.everyone()
+    story.tell(database_url, [*story.opening(people), *story.course(people)])
     return database_url
 
 
