@@ -87,8 +87,7 @@ def _text(junction: JunctionView, width: float) -> list[Flowable]:
         para(safe(f"JUNCTION {junction.junction}"), style.LEAD),
         para(safe(f"{junction.superior_field} | {junction.inferior_field}")),
         para(safe(what), style.SMALL),
-        space(3),
-        _gaps(junction.gaps, width),
+        *([space(3), _gaps(junction.gaps, width)] if junction.gaps else []),
     ]
 
 

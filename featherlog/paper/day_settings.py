@@ -10,7 +10,7 @@ from reportlab.lib.styles import ParagraphStyle
 from featherlog.paper import style
 from featherlog.paper.fonts import ITALIC, Markup, join, safe, strong
 from featherlog.paper.style import grid, para, shares
-from featherlog.words import STILL_CM, figure, meterset
+from featherlog.words import STILL_CM, figure, meterset, signed
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
@@ -170,10 +170,10 @@ def _beam_rows(beam: BeamView, *, part: bool, split: bool) -> list[list[Any]]:
 
 def _angle(now_deg: float, before_deg: float | None) -> list[Any]:
     if before_deg is None or not _turns(now_deg, before_deg):
-        return [para(safe(figure(now_deg)), style.VALUE)]
+        return [para(safe(signed(now_deg)), style.VALUE)]
     return [
-        para(safe(f"{figure(before_deg)}→"), style.SMALL_RIGHT),
-        para(strong(figure(now_deg)), style.VALUE),
+        para(safe(f"{signed(before_deg)}→"), style.SMALL_RIGHT),
+        para(strong(signed(now_deg)), style.VALUE),
     ]
 
 
@@ -209,6 +209,6 @@ def _jaw_cells(jaws: tuple[JawView, ...]) -> list[Any]:
 
 def _jaw(jaw: JawView) -> Markup:
     if jaw.previous_cm is not None and _changed((jaw,)):
-        old = safe(f"{jaw.jaw}{_SPACE}{figure(jaw.previous_cm)} →")
-        return Markup(f'{old} <font size="{_NEW_VALUE_PT}">{strong(figure(jaw.cm))}</font>')
-    return safe(f"{jaw.jaw}{_SPACE}{figure(jaw.cm)}")
+        old = safe(f"{jaw.jaw}{_SPACE}{signed(jaw.previous_cm)} →")
+        return Markup(f'{old} <font size="{_NEW_VALUE_PT}">{strong(signed(jaw.cm))}</font>')
+    return safe(f"{jaw.jaw}{_SPACE}{signed(jaw.cm)}")

@@ -18,6 +18,7 @@ from featherlog.words import (
     THIS_FRACTION_ONLY,
     figure,
     meterset,
+    signed,
 )
 
 if TYPE_CHECKING:
@@ -63,10 +64,11 @@ def strings(record: Any) -> Iterator[str]:
 
 def numbers(view: DayView) -> Iterator[str]:
     for beam in (beam for field in view.fields for beam in field.beams):
-        yield from map(figure, (beam.gantry_deg, beam.collimator_deg, beam.couch_deg, beam.ssd_cm))
+        yield from map(figure, (beam.gantry_deg, beam.ssd_cm))
+        yield from map(signed, (beam.collimator_deg, beam.couch_deg))
         yield meterset(beam.to_deliver_mu)
-        yield from (squeezed(f"{jaw.jaw} {figure(jaw.cm)}") for jaw in beam.jaws if not jaw.words)
-        yield from (f"{figure(jaw.previous_cm)}→{figure(jaw.cm)}" for jaw in beam.jaws if jaw.words)
+        yield from (squeezed(f"{jaw.jaw} {signed(jaw.cm)}") for jaw in beam.jaws if not jaw.words)
+        yield from (f"{signed(jaw.previous_cm)}→{signed(jaw.cm)}" for jaw in beam.jaws if jaw.words)
     for gap in (gap for junction in view.junctions for gap in junction.gaps):
         yield accepted(gap)
 
@@ -243,7 +245,7 @@ def test_a_fraction_of_one_step_names_no_step(shift_day: DayView) -> None:
 def test_a_changed_angle_shows_its_old_value(step_day: DayView) -> None:
     text = whole_text(shift_sheet(step_day))
     assert "−7.6→−7.1" in text
-    assert "5.0→5.5" in text
+    assert "+5.0→+5.5" in text
     assert text.count("7.1→") == 0  # the other lateral does not turn
 
 
