@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 import msgspec
@@ -49,6 +49,7 @@ def add_staff(database: str | None, *, newcomer: Signer, role: str, by: Signer) 
     if role not in words.ROLES:
         raise InputError(f"--role is {role!r}, but must be one of {', '.join(words.ROLES)}")
     name = required("NAME", newcomer.name, "who it is")
+    newcomer = replace(newcomer, name=name)
     with at_desk(database) as desk:
         first = _is_first(desk, name, role, by.name)
     unlocked = None if first else unlock(database, Act.ADD_STAFF, by)
@@ -129,6 +130,7 @@ def restore_administrator(
     """
     reason = required("--reason", reason, "why the administrator is restored")
     name = required("NAME", owner.name, "who it is")
+    owner = replace(owner, name=name)
     if name in (by.name, verified_by.name):
         raise RefusedError(f"{name} cannot restore themselves; two others must sign")
     with at_desk(database) as desk:

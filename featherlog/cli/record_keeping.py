@@ -48,6 +48,13 @@ def verify(
         show_json(found)
     elif not found.fault:
         show(f"The ledger fits together: {found.entries} entries, {found.signatures} signatures.")
+        if found.unsigned:
+            show(
+                wrapped(
+                    f"{found.unsigned} entries bear no signature: wrong passphrases, and all from "
+                    "before the first key."
+                )
+            )
         show(f"ledger head {found.head or 'none'}")
         if head is None:
             show("Its end was not compared with an earlier head (--head).")

@@ -96,8 +96,10 @@ class People:
         if not signatures:
             yield "it is not signed"
             return
-        for signature in signatures:
-            yield from self._signatory_faults(entry, signature)
+        # A new key vouches for itself, last, and for nobody else.
+        owners = signatures[-1:] if entry.kind in _WITH_NEW_KEY else ()
+        for signature in signatures[: len(signatures) - len(owners)]:
+            yield from self._signatory_faults(signature)
         first = signatures[0]
         if (first.who, first.role) != (entry.who, entry.role):
             yield f"it is made by {entry.who} ({entry.role}), but signed by {first.who} first"
@@ -108,12 +110,8 @@ class People:
         if entry.kind in _TREATMENT:
             yield from _treatment_faults(entry.content, signatures)
 
-    def _signatory_faults(self, entry: Entry, signature: Signature) -> Iterator[str]:
-        known = self._known.get(signature.who)
-        allowed = {(known.role, known.key)} if known else set()
-        if entry.kind in _WITH_NEW_KEY and signature.who == entry.content["name"]:
-            allowed.add((self._role_after(entry), entry.content["key"]["public"]))
-        if (signature.role, signature.key) not in allowed:
+    def _signatory_faults(self, signature: Signature) -> Iterator[str]:
+        if self._known.get(signature.who) != _Person(signature.role, signature.key):
             yield f"{signature.who} had another key or role than it is signed with"
 
     def _act_faults(self, act: Act, signatures: tuple[Signature, ...]) -> Iterator[str]:
@@ -134,7 +132,8 @@ class People:
         """The new key signs last, which shows that its owner can open it."""
         *others, owner = signatures
         content = entry.content
-        if (owner.who, owner.key) != (content["name"], content["key"]["public"]):
+        expected = (content["name"], self._role_after(entry), content["key"]["public"])
+        if (owner.who, owner.role, owner.key) != expected:
             yield f"the new key of {content['name']} did not sign it"
         if not self.keys_exist:
             if content["name"] != entry.who or self._role_after(entry) != ADMINISTRATOR:

@@ -14,7 +14,7 @@ from sqlalchemy import func, insert, select
 from featherlog.errors import IntegrityError
 from featherlog.signing.keys import verify as holds
 from featherlog.store import projection
-from featherlog.store.authority import People
+from featherlog.store.authority import ACTS, UNSIGNED, People
 from featherlog.store.comparing import differences, scratch_database
 from featherlog.store.entry import FIRST_HASH, Kind, read_signatures, signed_by, text_to_sign
 from featherlog.store.ledger import chain_fault, entries, row_of
@@ -38,11 +38,13 @@ class Verified:
     """What a walk over the whole ledger found; ``fault`` is empty where everything fits.
 
     ``fault_entry`` is the number of the first entry that does not fit, None where there is none or
-    where entries are missing at the end. ``signatures`` counts those that hold.
+    where entries are missing at the end. ``signatures`` counts those that hold, ``unsigned`` the
+    entries without any: wrong passphrases, and everything from before the first key.
     """
 
     entries: int
     signatures: int
+    unsigned: int
     head: str
     fault_entry: int | None
     fault: str
@@ -90,7 +92,8 @@ class _Walk:
         self._anew = anew
         self._earlier = earlier
         self._people, self._courses = People(), Courses()
-        self._number, self._hash, self._signatures = 0, FIRST_HASH, 0
+        self._number, self._hash = 0, FIRST_HASH
+        self._signatures, self._unsigned = 0, 0
 
     def fault(self, entry: Entry, number: int) -> str | None:
         """Return what does not fit at this entry, or take it in and return None."""
@@ -109,7 +112,7 @@ class _Walk:
     def found(self, number: int | None, fault: str) -> Verified:
         """Return what the walk came to."""
         head = f"{self._number}:{self._hash}" if self._number else ""
-        return Verified(self._number, self._signatures, head, number, fault)
+        return Verified(self._number, self._signatures, self._unsigned, head, number, fault)
 
     def cut_tail(self) -> str | None:
         """Return what is missing against the earlier head once all entries were seen."""
@@ -121,6 +124,8 @@ class _Walk:
         )
 
     def _content_fault(self, entry: Entry) -> str | None:
+        if entry.kind not in ACTS and entry.kind not in UNSIGNED:
+            return "this program does not know its kind"
         signatures = read_signatures(entry.signatures)
         if signatures is None:
             return "its signatures cannot be read"
@@ -134,6 +139,7 @@ class _Walk:
             self._people.see(entry)
             self._courses.see(entry)
             self._signatures += len(signatures)
+            self._unsigned += not signatures
             fault = self._project(entry)
         return fault
 

@@ -244,6 +244,9 @@ def test_a_ledger_that_was_changed_is_told(department: Program) -> None:
             connection.execute(f'DROP TRIGGER "{name}"')
         connection.execute("UPDATE ledger_entry SET who = 'Elm Rook' WHERE number = 3")
     connection.close()
+    verified = department.start("ledger", "verify", "--json")
+    assert (verified.code, verified.json["fault"]) == (7, verified.fault)
+    assert verified.json["fault_entry"] == 3
     came = department.start("database", "status", "--json")
     assert (came.code, came.json["first_fault"]) == (7, came.fault)
     assert came.fault.startswith("Ledger entry 3 (staff added, 2026-02-27T09:00:00+01:00) was ")

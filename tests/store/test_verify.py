@@ -88,11 +88,11 @@ def test_a_sound_ledger_fits(database_url: str) -> None:
     entries = story.tell(database_url, [*OPENING, *COURSE])
     signatures = sum(len(one.signers) for one in (*OPENING, *COURSE))
     head = f"{HERE}:{entries[-1].hash}"
-    assert looked(database_url) == Verified(HERE, signatures, head, None, "")
+    assert looked(database_url) == Verified(HERE, signatures, 0, head, None, "")
 
 
 def test_an_empty_ledger_fits(database_url: str) -> None:
-    assert looked(database_url) == Verified(0, 0, "", None, "")
+    assert looked(database_url) == Verified(0, 0, 0, "", None, "")
 
 
 def test_a_ledger_from_before_there_were_keys_fits(database_url: str) -> None:
@@ -106,7 +106,8 @@ def test_a_ledger_from_before_there_were_keys_fits(database_url: str) -> None:
         ledger.append(connection, scenario.staff(role="administrator"))
     first = told(scenario.draft(Kind.KEY_REPLACED, finch.content, course=None), finch)
     story.tell(database_url, [first])
-    assert (looked(database_url).fault, looked(database_url).signatures) == ("", 1)
+    found = looked(database_url)
+    assert (found.fault, found.signatures, found.unsigned) == ("", 1, 5)
     with writing(open_engine(database_url)) as connection:
         ledger.append(connection, scenario.machine())
     assert "does not fit: it is not signed" in looked(database_url).fault
@@ -300,6 +301,22 @@ CASES = {
     "a key replaced by a colleague": (
         [told(KEY, TEAL_, NEW_PLOVER)],
         "Maple Teal has the role therapist and may not replace a key",
+    ),
+    "a key replaced by itself": (
+        [told(KEY, NEW_PLOVER, NEW_PLOVER)],
+        "Ash Plover had another key or role",
+    ),
+    "a key replaced by nobody": (
+        [told(KEY, NEW_PLOVER)],
+        "one person who is administrator must sign to replace a key",
+    ),
+    "a new key in a role of one's own": (
+        [told(KEY, HERON_, replace(NEW_PLOVER, role="physicist"))],
+        "the new key of Ash Plover did not sign it",
+    ),
+    "an administrator who restores themselves": (
+        [told(RESTORED, Person("Elm Rook", "physicist"), CRANE_, ROOK)],
+        "Elm Rook had another key or role",
     ),
     "a person who adds themselves": (
         [joins(ROOK)],
