@@ -7,11 +7,13 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 import pytest
-from department import BREAST, THIGH, treated
+from department import ADMINISTRATOR, BREAST, STAFF, THIGH, by, moment, treated
 
 from featherlog.actions.database import status, upgrade
 from featherlog.actions.departures import list_departures
+from featherlog.actions.desk import practice_time
 from featherlog.actions.operations import health
+from featherlog.actions.staff import list_staff, replace_key
 from featherlog.actions.today import today
 from featherlog.errors import StoreError
 from featherlog.store.backup import restore
@@ -57,9 +59,19 @@ def test_it_is_opened_upgraded_and_used(golden_url: str, request: pytest.Fixture
     assert kinds == [(2, "other position"), (3, "not confirmed"), (3, "meterset short")]
     assert today(golden_url, BREAST).fraction == 2
 
+    _give_keys(golden_url)
     done = treated(golden_url, THIGH, "2026-03-05")
     assert (done.fraction, done.complete, done.next_fraction) == (3, True, 4)
     assert status(golden_url).first_fault == ""
+
+
+def _give_keys(url: str) -> None:
+    """Give everyone a key, the administrator first, where nobody has one yet."""
+    if any(person.key for person in list_staff(url)):
+        return
+    with practice_time(moment("2026-03-05")):
+        for name in STAFF:
+            replace_key(url, owner=by(name), reason="the first key", by=by(ADMINISTRATOR))
 
 
 @pytest.mark.parametrize("backend", ["sqlite"])
