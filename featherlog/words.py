@@ -19,7 +19,6 @@ RECORD_CAUTION = (
     "The department's own treatment record is the record of truth; this ledger stands beside it."
 )
 DEMO_NOTICE = "PRACTICE DATABASE - FICTIONAL PATIENTS - NOT FOR TREATMENT"
-STOP_AND_CALL = "STOP. Do not treat. Call the physicist."
 THIS_FRACTION_ONLY = "Valid for this fraction only."
 RELATIVE_ONLY = "relative only: no reference reading of the table yet"
 
@@ -38,6 +37,19 @@ ROLES = (PHYSICIST, THERAPIST, PHYSICIAN, ADMINISTRATOR)
 
 # A move smaller than this is noise of floating point, not something to set.
 STILL_CM = 5e-4
+
+
+def stop_and_call(role: str, contact: str = "") -> str:
+    """Say whom a refusal calls: a role, with the department's contact where it has named one."""
+    return f"STOP. Do not treat. Call the {role}{f': {contact}' if contact else ''}."
+
+
+STOP_AND_CALL = stop_and_call(PHYSICIST)
+
+
+def relative_only_since(why: str, at: str) -> str:
+    """Say that table moves are relative only because an earlier read-out no longer holds."""
+    return f"relative only: {why} ({at}) and the table was not read since"
 
 
 MINUS = "−"

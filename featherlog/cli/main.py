@@ -9,7 +9,15 @@ from typing import Annotated
 import typer
 
 from featherlog import __version__
-from featherlog.cli import chart_round, console, department, physicist, record_keeping, setup
+from featherlog.cli import (
+    chart_round,
+    console,
+    department,
+    observe,
+    physicist,
+    record_keeping,
+    setup,
+)
 from featherlog.cli.output import remark, show, write_any_terminal
 from featherlog.errors import FeatherlogError
 
@@ -22,7 +30,7 @@ app = typer.Typer(
     context_settings={"help_option_names": ["-h", "--help"]},
     epilog="Example: featherlog demo",
 )
-for module in (console, physicist, chart_round, record_keeping, department, setup):
+for module in (console, observe, physicist, chart_round, record_keeping, department, setup):
     module.register(app)
 
 
