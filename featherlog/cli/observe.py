@@ -26,14 +26,15 @@ table_app = typer.Typer(
     help="Read the table's figures, from which all its targets follow.",
     no_args_is_help=True,
     rich_markup_mode=None,
-    epilog='Example: featherlog table read FH-2041 "upper thigh" --lateral 0.3 '
+    # The mark keeps the example on one line, to be copied.
+    epilog='\b\nExample: featherlog table read FH-2041 "upper thigh" --lateral 0.3 '
     '--longitudinal 101.2 --vertical -12 --by "Ash Plover" --with "Maple Teal"',
 )
 note_app = typer.Typer(
     help="Note what happens around the treatment and is no departure.",
     no_args_is_help=True,
     rich_markup_mode=None,
-    epilog='Example: featherlog note imager-out FH-2041 --reason "tube fault" --by "Ash Plover"',
+    epilog='\b\nExample: featherlog note imager-out FH-2041 --reason "tube fault" --by "Ash Plover"',
 )
 
 Field = Annotated[str, typer.Option("--field", metavar="NAME", help="The field.")]
