@@ -119,7 +119,8 @@ def stop_reasons(stored: Stored) -> tuple[str, ...]:
     labels = last_positions(stored.plan, stored.states, due)
     if shift_of(labels, due.position or "") != "yes":
         return ()
-    return unequal_sides(stored.plan, stored.states, due.next_fraction)
+    percent = stored.machine.tolerances.meterset_percent
+    return unequal_sides(stored.plan, stored.states, due.next_fraction, percent)
 
 
 def shift_of(last: Mapping[str, str], position: str) -> str:

@@ -125,7 +125,7 @@ class TestShift:
         assert (view.status, view.fraction) == ("stop", 6)
         assert view.stop_reasons == (
             "fraction 8 was begun and not finished",
-            "fields upper thigh and lower thigh have had 6.00 and 5.00 fractions",
+            "fields upper thigh and lower thigh have had 6 and 5 whole fractions",
         )
         [line] = [line for line in _due(department, "2026-03-04") if line.course == THIGH]
         assert line.attention.startswith("STOP: see this course; ")

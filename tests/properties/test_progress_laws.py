@@ -45,4 +45,4 @@ def test_position_counts_add_up_to_the_fractions_delivered(
     assert sum(counts.values()) == now.complete <= len(PLAN.fractions)
     assert now.complete == sum(had == 1 for _, had in begun.values())
     # Fields that were always treated together never stop a shift.
-    assert now.part_delivered or unequal_sides(PLAN, states, now.complete + 1) == ()
+    assert now.part_delivered or unequal_sides(PLAN, states, now.complete + 1, 2.0) == ()
