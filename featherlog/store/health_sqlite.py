@@ -44,7 +44,7 @@ def _own_statements() -> frozenset[tuple[str, ...]]:
 def _normal(rows: Iterable[Sequence[Any]]) -> frozenset[tuple[str, ...]]:
     # A migration that rebuilds a table writes its constraints in an order of chance.
     return frozenset(
-        (kind, name, table, *sorted(line.strip(" \t,") for line in (sql or "").splitlines()))
+        (kind, name, table, *sorted(line.rstrip(", ") for line in (sql or "").split("\n")))
         for kind, name, table, sql in rows
     )
 

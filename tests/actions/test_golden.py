@@ -27,7 +27,10 @@ GOLDEN = Path(__file__).parents[2] / "fixtures" / "golden"
 ALIKE = {"append-only", "schema", "ledger"}
 
 
-@pytest.fixture(params=REVISIONS)
+KEPT = sorted(file.stem for file in GOLDEN.glob("*.db"))
+
+
+@pytest.fixture(params=KEPT)
 def golden_url(request: pytest.FixtureRequest, backend: str, tmp_path: Path) -> Iterator[str]:
     """Give a copy of what this revision wrote, on either database."""
     if backend == "sqlite":
@@ -38,6 +41,12 @@ def golden_url(request: pytest.FixtureRequest, backend: str, tmp_path: Path) -> 
     with migrating(open_engine(url)) as connection:
         connection.exec_driver_sql(statements.replace("%", "%%"))
     yield url
+
+
+@pytest.mark.parametrize("ending", ["db", "sql"])
+def test_every_revision_but_the_last_is_kept(ending: str) -> None:
+    kept = {file.stem for file in GOLDEN.glob(f"*.{ending}")}
+    assert set(REVISIONS[:-1]) <= kept <= set(REVISIONS)
 
 
 def test_it_is_opened_upgraded_and_used(golden_url: str, request: pytest.FixtureRequest) -> None:
