@@ -121,6 +121,15 @@ def delivered_beams(rows: Iterable[DeliveryRow]) -> list[DeliveredBeam]:
 def departure_lines(rows: Iterable[DepartureRow]) -> tuple[DepartureLine, ...]:
     """Return departures as they are listed."""
     return tuple(
-        DepartureLine(row.number, row.fraction, row.kind, row.grade, row.detail, row.reason)
+        DepartureLine(
+            row.number,
+            row.fraction,
+            row.kind,
+            row.grade,
+            row.detail,
+            row.reason,
+            row.status,
+            row.decision or "",
+        )
         for row in rows
     )

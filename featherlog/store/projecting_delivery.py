@@ -49,7 +49,7 @@ def recorded(connection: Connection, entry: Entry) -> None:
 
 
 def explained(connection: Connection, entry: Entry) -> None:
-    """Close a departure with its reason."""
+    """Note the reason for a departure; it stays open until somebody decides on it."""
     number = entry.content["departure"]
     which = and_(departure.c.course == entry.course, departure.c.number == number)
     values = {
@@ -84,10 +84,10 @@ def _add_departures(connection: Connection, entry: Entry) -> None:
 
 
 def open_departures(connection: Connection, entry: Entry) -> int:
-    """Return how many departures of the entry's course nobody has explained or decided."""
+    """Return how many departures of the entry's course nobody has decided on."""
     query = (
         select(func.count())
         .where(departure.c.course == entry.course)
-        .where(departure.c.status == "open")
+        .where(departure.c.status.in_(("open", "explained")))
     )
     return connection.execute(query).scalar_one()

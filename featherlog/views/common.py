@@ -4,6 +4,10 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from featherlog.dose.departure_dose import PlaceDose
+
+__all__ = ["DepartureLine", "Heading", "PlaceDose"]
+
 
 @dataclass(frozen=True, slots=True)
 class Heading:
@@ -23,7 +27,12 @@ class Heading:
 
 @dataclass(frozen=True, slots=True)
 class DepartureLine:
-    """One departure as listed: ``grade`` is its kind of consequence, ``reason`` may be empty."""
+    """One departure as listed: ``grade`` is its kind of consequence, ``reason`` may be empty.
+
+    ``status`` is open, explained, decided, or corrected where its record was put right; it waits
+    for a decision until one of the last two. ``doses`` are its figures for ideal edges, ``flags``
+    name the department's reporting thresholds that they reach: nothing is classified.
+    """
 
     number: int
     fraction: int
@@ -31,3 +40,12 @@ class DepartureLine:
     grade: str
     detail: str
     reason: str
+    status: str = "open"
+    decision: str = ""
+    doses: tuple[PlaceDose, ...] = ()
+    flags: tuple[str, ...] = ()
+
+    @property
+    def undecided(self) -> bool:
+        """Tell whether somebody still has to decide on it."""
+        return self.status in ("open", "explained")

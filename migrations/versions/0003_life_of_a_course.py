@@ -45,9 +45,11 @@ def upgrade() -> None:
         )
         departure.drop_constraint(op.f("ck_departure_status"), type_="check")
         departure.create_check_constraint(op.f("ck_departure_status"), _one_of(_NOW))
+    _count_open("'open', 'explained'")
 
 
 def downgrade() -> None:
+    _count_open("'open'")
     with op.batch_alter_table("departure") as departure:
         departure.drop_constraint(op.f("ck_departure_status"), type_="check")
         departure.create_check_constraint(op.f("ck_departure_status"), _one_of(_BEFORE))
@@ -58,6 +60,14 @@ def downgrade() -> None:
     op.drop_column("course", "ended_reason")
     op.drop_column("course", "paused_reason")
     op.drop_table("event")
+
+
+def _count_open(states: str) -> None:
+    # A reason alone closed a departure before; now it stays open until somebody decides on it.
+    op.execute(
+        "UPDATE course SET open_departures = (SELECT count(*) FROM departure "  # noqa: S608 - our own words
+        f"WHERE departure.course = course.key AND departure.status IN ({states}))"
+    )
 
 
 def _one_of(allowed: tuple[str, ...]) -> str:

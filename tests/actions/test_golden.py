@@ -65,7 +65,7 @@ def test_it_is_opened_upgraded_and_used(golden_url: str, request: pytest.Fixture
     day = today(golden_url, THIGH)
     assert (day.fraction, day.position) == (3, "A")
     kinds = [(line.fraction, line.kind) for line in list_departures(golden_url, THIGH)]
-    assert kinds == [(2, "other position"), (3, "not confirmed"), (3, "meterset short")]
+    assert kinds == [(2, "other position"), (3, "meterset short"), (3, "not confirmed")]
     assert today(golden_url, BREAST).fraction == 2
 
     _give_keys(golden_url)

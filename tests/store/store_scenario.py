@@ -139,6 +139,11 @@ def explained(number: int = 1) -> Draft:
     return draft(Kind.DEPARTURE_EXPLAINED, {"departure": number, "reason": "marks were faint"})
 
 
+def decided(number: int = 1) -> Draft:
+    content = {"departure": number, "decision": "shares as they are"}
+    return draft(Kind.DEPARTURE_DECIDED, content)
+
+
 def paused() -> Draft:
     return draft(Kind.COURSE_PAUSED, {"reason": "fever"})
 
@@ -158,6 +163,7 @@ def whole_story() -> list[Draft]:
         confirmed(),
         recorded(reasons=("", "known")),
         explained(),
+        decided(),
         prepared(3, fractions=15),
         approved(3, fraction=2, position="B"),
         recorded(2, next_fraction=None, next_position=None, next_date=None, complete=True),

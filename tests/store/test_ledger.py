@@ -52,7 +52,7 @@ def test_the_entries_of_one_course_are_found(database_url: str) -> None:
     tell(database_url, *scenario.whole_story())
     with reading(open_engine(database_url)) as connection:
         numbers = [entry.number for entry in entries(connection, scenario.COURSE)]
-    assert numbers == [*range(5, 16), 22]
+    assert numbers == [*range(5, 17), 23]
 
 
 def test_a_sound_chain_has_no_fault(database_url: str) -> None:

@@ -149,7 +149,7 @@ def test_the_last_record_completes_the_course(database_url: str) -> None:
     assert (course.state, course.next_fraction) == ("complete", None)
 
 
-def test_departures_are_numbered_through_the_course_and_closed_by_a_reason(
+def test_departures_are_numbered_through_the_course_and_open_until_decided(
     database_url: str,
 ) -> None:
     course = course_after(
@@ -159,12 +159,13 @@ def test_departures_are_numbered_through_the_course_and_closed_by_a_reason(
         scenario.recorded(1, reasons=("", "known")),
         scenario.recorded(2, reasons=("",)),
     )
-    assert course.open_departures == 2
-    assert course_after(database_url, scenario.explained(3)).open_departures == 1
+    assert course.open_departures == 3
+    assert course_after(database_url, scenario.explained(3)).open_departures == 3
+    assert course_after(database_url, scenario.decided(2)).open_departures == 2
     with reading(open_engine(database_url)) as connection:
         found = queries.departures(connection, scenario.COURSE)
-    assert [(row.number, row.fraction, row.status, row.reason) for row in found] == [
-        (1, 1, "open", ""),
-        (2, 1, "explained", "known"),
-        (3, 2, "explained", "marks were faint"),
+    assert [(row.number, row.fraction, row.status, row.reason, row.decision) for row in found] == [
+        (1, 1, "open", "", None),
+        (2, 1, "decided", "known", "shares as they are"),
+        (3, 2, "explained", "marks were faint", None),
     ]
