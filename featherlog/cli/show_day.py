@@ -86,7 +86,7 @@ def _settings(view: DayView) -> Iterator[str]:
 
 
 def _junction(junction: JunctionView) -> Iterator[str]:
-    yield f"{junction.words} (offset from A: {words.signed(junction.offset_cm)} cm)"
+    yield wrapped(f"{junction.words} (offset from A: {words.signed(junction.offset_cm)} cm)")
     for gap in junction.gaps:
         yield (
             f"  expected gap on the {gap.side} skin {words.signed(gap.expected_cm, 2)} "
