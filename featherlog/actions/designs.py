@@ -9,13 +9,14 @@ import msgspec
 from featherlog import words
 from featherlog.actions.machines import machine_named
 from featherlog.actions.signing import signing_desk
-from featherlog.actions.stored import load_latest
+from featherlog.actions.stored import Stored, load, load_latest
 from featherlog.actions.typed import printable_everywhere, required
 from featherlog.errors import RefusedError
 from featherlog.exchange.design_file import named_machine, read_design
 from featherlog.policy import Act
-from featherlog.sequence.calendar import treatment_days
+from featherlog.sequence.calendar import next_date_after
 from featherlog.sequence.planning import plan_course
+from featherlog.sequence.revision import continued, revision_faults, unfinished_faults
 from featherlog.store import queries
 from featherlog.store.entry import Kind, content_hash
 
@@ -34,15 +35,17 @@ def prepare(
 ) -> tuple[str, int, Plan]:
     """Solve a design file and store it as the course's next revision.
 
+    Once treatment has begun the plan goes on from what was delivered (``sequence.revision``).
+
     Returns the course's key, the revision's number and the plan. Raises InputError for a faulty
-    file and RefusedError where the machine cannot deliver it, another revision waits, or treatment
-    has begun.
+    file and RefusedError where the machine cannot deliver it, another revision waits, the course
+    was ended, or the design cannot go on from what was delivered.
     """
     with signing_desk(database, Act.PREPARE, by, verified_by) as desk:
         machine = machine_named(desk, named_machine(file))
         course = read_design(file, machine)
         number = _next_revision(desk, course.key)
-        plan = plan_course(course, machine)
+        plan = _going_on(desk, course.key, plan_course(course, machine))
         parts = [msgspec.to_builtins(part) for part in (course, plan, machine)]
         printable_everywhere(parts[0])
         desk.append(
@@ -75,11 +78,22 @@ def _next_revision(desk: Desk, key: str) -> int:
             f"revision {row.revision} of course {key} is {latest.state} and waits; return it with "
             "`featherlog course return` before preparing another"
         )
-    if queries.deliveries(desk.connection, key):
-        raise RefusedError(
-            f"course {key} has delivered fractions; its design can no longer be replaced"
-        )
+    if row.ended_reason:
+        raise RefusedError(f"course {key} was ended: {row.ended_reason}")
     return row.revision + 1
+
+
+def _going_on(desk: Desk, key: str, plan: Plan) -> Plan:
+    """Return the plan with all that was delivered before; RefusedError names every fault."""
+    if not queries.deliveries(desk.connection, key):
+        return plan
+    stored = load(desk, key)
+    faults = [*revision_faults(stored.plan, plan, stored.states)]
+    if stored.approved:
+        faults += unfinished_faults(stored.states)
+    if faults:
+        raise RefusedError("; ".join(faults))
+    return continued(stored.plan, plan, stored.states)
 
 
 def check(
@@ -106,15 +120,15 @@ def approve(
 ) -> str:
     """Approve the latest revision, fixing its content; return its revision code.
 
-    Raises RefusedError where it was not checked, or its author approves it.
+    Raises RefusedError where it was not checked, its author approves it, or treatment went on since
+    it was prepared.
     """
     with signing_desk(database, Act.APPROVE, by, verified_by) as desk:
         revision = _latest(desk, key, "checked", become="approved")
         _refuse_author(desk, revision, "approve")
         stored = load_latest(desk, key)
+        _refuse_overtaken(stored)
         code = f"R{revision.number}-{revision.content_hash[:6].upper()}"
-        sequence = stored.course.sequence
-        first = max(sequence.start_date, desk.now.date())
         desk.append(
             Kind.DESIGN_APPROVED,
             {
@@ -122,12 +136,37 @@ def approve(
                 "code": code,
                 "next_fraction": stored.progress.next_fraction,
                 "next_position": stored.progress.position,
-                "next_date": next(treatment_days(sequence, first)).isoformat(),
+                "next_date": _next_date(desk, stored),
             },
             course=key,
             meaning=words.MEANING["approved"],
         )
     return code
+
+
+def _refuse_overtaken(stored: Stored) -> None:
+    """Refuse a revision of a course that was treated, or corrected, since it was prepared."""
+    key, revision = stored.row.key, stored.revision
+    if stored.row.approved_revision is None:
+        return  # all that was delivered was recorded under this very plan, or is part of it
+    since = [row for row in stored.deliveries if row.entry > revision.entry]
+    if since:
+        raise RefusedError(
+            f"fraction {since[-1].fraction} of {key} was recorded after revision {revision.number} "
+            "was prepared; return it and prepare it again"
+        )
+    unfinished = [*unfinished_faults(stored.states)]
+    if unfinished:
+        raise RefusedError("; ".join(unfinished))
+
+
+def _next_date(desk: Desk, stored: Stored) -> str | None:
+    if stored.progress.next_fraction is None:
+        return None
+    course, today = stored.course, desk.now.date()
+    given = {row.fraction for row in stored.deliveries if row.at[:10] == today.isoformat()}
+    given.discard(stored.progress.next_fraction)
+    return next_date_after(course.sequence, course.fractions_a_day, today, len(given)).isoformat()
 
 
 def send_back(

@@ -7,6 +7,16 @@ from typing import TYPE_CHECKING, Annotated
 
 import typer
 
+from featherlog.cli.deliveries import (
+    Again,
+    FieldPosition,
+    Fraction,
+    Meterset,
+    Position,
+    Table,
+    TreatedAt,
+    delivery,
+)
 from featherlog.cli.options import (
     By,
     ByFile,
@@ -20,7 +30,6 @@ from featherlog.cli.options import (
     SecondFile,
     VerifiedBy,
     named_numbers,
-    named_texts,
 )
 from featherlog.cli.output import remark, show, show_json, wrapped
 
@@ -124,23 +133,14 @@ def record(
     verified_by: VerifiedBy,
     passphrase_file: ByFile = None,
     second_file: SecondFile = None,
-    fraction: Annotated[
-        int | None,
-        typer.Option("--fraction", metavar="N", help="The fraction, when not the one due."),
-    ] = None,
-    position: Annotated[
-        str | None,
-        typer.Option("--position", metavar="LABEL", help="Where, when not as confirmed."),
-    ] = None,
-    field_position: Annotated[
-        list[str] | None,
-        typer.Option("--field-position", metavar="FIELD=LABEL", help="One field's own position."),
-    ] = None,
-    meterset: Annotated[
-        list[str] | None,
-        typer.Option("--meterset", metavar="BEAM=MU", help="MU delivered, when not all of it."),
-    ] = None,
+    fraction: Fraction = None,
+    position: Position = None,
+    field_position: FieldPosition = None,
+    meterset: Meterset = None,
     gap: Gaps = None,
+    table: Table = None,
+    treated_at: TreatedAt = None,
+    again: Again = False,
     reason: Annotated[
         str | None,
         typer.Option("--reason", metavar="TEXT", help="Why it differs, where it does."),
@@ -155,22 +155,24 @@ def record(
     \b
     Example: featherlog record FH-2041 --by "Ash Plover" --with "Maple Teal"
     """
-    from featherlog.actions.record import Delivery
     from featherlog.actions.record import record as action
     from featherlog.cli.passphrases import second, signer
 
-    delivery = Delivery(
+    told = delivery(
         fraction=fraction,
         position=position,
-        field_positions=named_texts(field_position, "--field-position"),
-        metersets_mu=named_numbers(meterset, "--meterset", "MU"),
-        gaps_cm=named_numbers(gap, "--gap", "cm"),
-        reason=reason or "",
+        field_position=field_position,
+        meterset=meterset,
+        gap=gap,
+        table=table,
+        treated_at=treated_at,
+        again=again,
+        reason=reason,
     )
     performer, verifier = signer(by, passphrase_file), second(verified_by, second_file)
-    result = action(database, course, by=performer, verified_by=verifier, delivery=delivery)
-    show_json(result) if json else show(_recorded_text(result))
-    if delivery.reason and not result.departures:
+    result = action(database, course, by=performer, verified_by=verifier, delivery=told)
+    show_json(result) if json else show(recorded_text(result))
+    if told.reason and not result.departures:
         remark("Nothing differs from the plan, so the reason was not kept.")
     if result.departures and not result.explained:
         remark(
@@ -182,7 +184,8 @@ def record(
         )
 
 
-def _recorded_text(result: Recorded) -> str:
+def recorded_text(result: Recorded) -> str:
+    """Return what a record or a correction came to."""
     where = ", ".join(f"{field} at {place}" for field, place in result.positions)
     state = _state(result)
     lines = [

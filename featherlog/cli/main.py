@@ -13,6 +13,7 @@ from featherlog.cli import (
     chart_round,
     console,
     department,
+    life,
     observe,
     physicist,
     record_keeping,
@@ -30,7 +31,7 @@ app = typer.Typer(
     context_settings={"help_option_names": ["-h", "--help"]},
     epilog="Example: featherlog demo",
 )
-for module in (console, observe, physicist, chart_round, record_keeping, department, setup):
+for module in (console, life, observe, physicist, chart_round, record_keeping, department, setup):
     module.register(app)
 
 

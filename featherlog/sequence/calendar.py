@@ -10,6 +10,7 @@ from featherlog.junction.design import Weekday
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
+    from datetime import datetime
 
     from featherlog.junction.design import SequencePattern
 
@@ -39,6 +40,15 @@ def project_dates(
     return tuple(day for day in days for _ in range(fractions_a_day))[:fractions]
 
 
+def too_soon(last_at: datetime, now: datetime, hours: float) -> float | None:
+    """Return the hours between two fractions, whichever came first, where they are too few.
+
+    None where at least ``hours`` lie between them. Both times bear their offset.
+    """
+    between = abs((now - last_at).total_seconds()) / 3600
+    return between if between < hours else None
+
+
 def next_date(
     sequence: SequencePattern, fractions_a_day: int, treated_on: date, treated_that_day: int
 ) -> date:
@@ -46,3 +56,15 @@ def next_date(
     if treated_that_day < fractions_a_day:
         return treated_on
     return next(treatment_days(sequence, treated_on + timedelta(days=1)))
+
+
+def next_date_after(
+    sequence: SequencePattern, fractions_a_day: int, today: date, treated_today: int
+) -> date:
+    """Return the projected date of the next fraction, which is never before today.
+
+    A day on which treatment has begun is good for as many fractions as the course has a day.
+    """
+    if treated_today:
+        return next_date(sequence, fractions_a_day, today, treated_today)
+    return next(treatment_days(sequence, max(today, sequence.start_date)))

@@ -12,10 +12,12 @@ from dataclasses import dataclass
 from itertools import pairwise
 from typing import TYPE_CHECKING
 
-from featherlog.words import figure
+from featherlog.sequence.calendar import too_soon
+from featherlog.words import figure, signed
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Mapping, Sequence
+    from datetime import datetime
 
     from featherlog.junction.plan import Plan
     from featherlog.sequence.progress import DeliveredBeam
@@ -46,19 +48,23 @@ class MeasuredGap:
 
 
 def position_departures(
-    plan: Plan, planned: str, field_position: Mapping[str, str]
+    plan: Plan, planned: str, field_position: Mapping[str, str], shares: Mapping[str, float]
 ) -> tuple[Departure, ...]:
-    """Return the departures of where the fields of one fraction were treated."""
+    """Return the departures of where the fields of one fraction were treated.
+
+    ``shares`` are the fractions that each position gets in the end, this one counted.
+    """
     given = set(field_position.values())
     if given <= {planned}:
         return ()
     if len(given) == 1:
         place = next(iter(given))
+        become = ", ".join(f"{label} {figure(share, least=0)}" for label, share in shares.items())
         return (
             Departure(
                 "other position",
                 COHERENT,
-                f"all fields treated at {place}, planned {planned}: the shares change",
+                f"all fields treated at {place}, planned {planned}: shares become {become}",
             ),
         )
     where = ", ".join(f"{field} at {place}" for field, place in field_position.items())
@@ -106,10 +112,31 @@ def meterset_departures(
             Departure(
                 kind,
                 MINOR,
-                f"beam {beam} has had {part * planned:.1f} of {planned:.1f} MU ({percent:+.1f} %)",
+                f"beam {beam} has had {figure(part * planned, 1, 1)} of {figure(planned, 1, 1)} MU "
+                f"({signed(percent, 1, 1)} %)",
             )
         )
     return tuple(found)
+
+
+def expected_gap_cm(
+    plan: Plan, junction: str, side: str, superior: str, inferior: str
+) -> float | None:
+    """Return the skin gap (cm, + gap) with the junction's two fields each at its own position.
+
+    Each edge lies its own part of the gap from the match point, which moves with the position: for
+    fields apart the gap is both parts and how far the match points are apart (derived). None where
+    that skin's gap is not known at one of the positions.
+    """
+    above, below = (plan.position(label).junction(junction) for label in (superior, inferior))
+    upper, lower = (
+        next((gap for gap in setting.skin_gaps if gap.side == side), None)
+        for setting in (above, below)
+    )
+    if upper is None or lower is None:
+        return None
+    parts = upper.superior_part_cm + lower.inferior_part_cm
+    return parts + above.offset_cm - below.offset_cm
 
 
 def gap_departures(gaps: Iterable[MeasuredGap]) -> tuple[Departure, ...]:
@@ -118,8 +145,8 @@ def gap_departures(gaps: Iterable[MeasuredGap]) -> tuple[Departure, ...]:
         Departure(
             "skin gap",
             MINOR,
-            f"gap on the {gap.side} skin at {gap.junction} measured {gap.gap_cm:+.2f} cm, expected "
-            f"{gap.expected_cm:+.2f} ± {gap.tolerance_cm:.2f} cm",
+            f"gap on the {gap.side} skin at {gap.junction} measured {signed(gap.gap_cm, 2)} cm, "
+            f"expected {signed(gap.expected_cm, 2)} ± {figure(gap.tolerance_cm, 2)} cm",
         )
         for gap in gaps
         if abs(gap.gap_cm - gap.expected_cm) > gap.tolerance_cm + _NOISE
@@ -132,27 +159,98 @@ def order_departures(
     """Return the departures of which fraction was recorded and whether it was confirmed before."""
     found = []
     if not approved:
-        found.append(
-            Departure("not approved", MINOR, f"fraction {fraction} was treated before approval")
-        )
+        found.append(_minor("not approved", f"fraction {fraction} was treated before approval"))
     if fraction > prescribed:
-        found.append(
-            Departure(
-                "extra fraction",
-                MINOR,
-                f"fraction {fraction} is beyond the {prescribed} prescribed",
-            )
-        )
+        beyond = f"fraction {fraction} is beyond the {prescribed} prescribed"
+        found.append(_minor("extra fraction", beyond))
     elif fraction != expected:
         due = "no fraction was due" if expected is None else f"fraction {expected} was due"
-        found.append(Departure("fraction order", MINOR, f"fraction {fraction} recorded, {due}"))
+        found.append(_minor("fraction order", f"fraction {fraction} recorded, {due}"))
     if not confirmed:
-        found.append(
-            Departure(
-                "not confirmed", MINOR, f"fraction {fraction} was treated without a confirmation"
-            )
-        )
+        without = f"fraction {fraction} was treated without a confirmation"
+        found.append(_minor("not confirmed", without))
     return tuple(found)
+
+
+def again_departures(fraction: int, delivered: Iterable[DeliveredBeam]) -> tuple[Departure, ...]:
+    """Return the departure of what was delivered of a fraction that was complete already."""
+    given = ", ".join(
+        f"{row.beam} {figure(row.meterset_mu)} MU" for row in delivered if row.meterset_mu
+    )
+    detail = f"fraction {fraction} was complete and was delivered again: {given}"
+    return (_minor("extra delivery", detail),)
+
+
+def halt_departures(fraction: int, halted: str) -> tuple[Departure, ...]:
+    """Return the departure of a treatment while the course was ``halted``: paused or ended."""
+    if not halted:
+        return ()
+    return (
+        _minor("not to be treated", f"fraction {fraction} was treated with the course {halted}"),
+    )
+
+
+def interval_departures(
+    fraction: int, at: datetime, others: Iterable[tuple[int, datetime]], hours: float
+) -> tuple[Departure, ...]:
+    """Return the departure of a fraction too near to another one, with the nearest one's figures.
+
+    ``others`` are the number and time of every delivery; ``hours`` is the least interval.
+    """
+    near = [
+        (between, number, when)
+        for number, when in others
+        if number != fraction and (between := too_soon(when, at, hours)) is not None
+    ]
+    if not near:
+        return ()
+    between, number, when = min(near)
+    order = "after" if when <= at else "before"
+    detail = (
+        f"fraction {fraction} was treated {figure(between)} h {order} fraction {number}, at least "
+        f"{figure(hours)} h are asked"
+    )
+    return (_minor("interval too short", detail),)
+
+
+def table_departures(
+    plan: Plan,
+    readings_cm: Mapping[str, float],
+    field_position: Mapping[str, str],
+    tolerance_cm: float,
+) -> tuple[Departure, ...]:
+    """Return where the table moved otherwise between two fields than their isocentres lie apart.
+
+    ``readings_cm`` are longitudinal readings of one session by field: only differences count, for
+    image guidance shifts all of them alike.
+    """
+    planned = {name: _table_cm(plan, name, field_position[name]) for name in readings_cm}
+    found = []
+    for first, second in pairwise(readings_cm):
+        moved = readings_cm[second] - readings_cm[first]
+        asked = planned[second] - planned[first]
+        if abs(moved - asked) > tolerance_cm + _NOISE:
+            found.append(
+                _minor(
+                    "table",
+                    f"from {first} to {second} the table moved {signed(moved)} cm "
+                    f"(longitudinal), planned {signed(asked)} ± {figure(tolerance_cm)} cm",
+                )
+            )
+    return tuple(found)
+
+
+def _table_cm(plan: Plan, field: str, label: str) -> float:
+    """Return a field's longitudinal table value at a position, from the first field's at A."""
+    at_a, here = (
+        next(one for one in position.fields if one.field == field)
+        for position in (plan.positions[0], plan.position(label))
+    )
+    return at_a.table_from_first_field_cm[1] + here.table_from_a_cm[1]
+
+
+def _minor(kind: str, detail: str) -> Departure:
+    return Departure(kind, MINOR, detail)
 
 
 def beams_by_field(delivered: Sequence[DeliveredBeam]) -> dict[str, str]:

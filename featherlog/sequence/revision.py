@@ -12,7 +12,7 @@ from typing import TYPE_CHECKING
 from featherlog.junction.plan import Plan
 
 if TYPE_CHECKING:
-    from collections.abc import Iterable, Iterator, Mapping
+    from collections.abc import Iterator, Mapping
 
     from featherlog.junction.plan import BeamSetting, PositionSettings
     from featherlog.sequence.progress import FractionState
@@ -26,9 +26,9 @@ def continued(old: Plan, new: Plan, states: Mapping[int, FractionState]) -> Plan
 
     ``states`` are the fractions begun so far. Use ``revision_faults`` first.
     """
-    treated = treated_labels(states.values())
+    bound = bound_labels(old, states)
     known = {position.label for position in new.positions}
-    kept = tuple(p for p in old.positions if p.label in treated and p.label not in known)
+    kept = tuple(p for p in old.positions if p.label in bound and p.label not in known)
     fractions = tuple(
         old.fraction(f.number) if f.number in states and f.number <= len(old.fractions) else f
         for f in new.fractions
@@ -37,37 +37,52 @@ def continued(old: Plan, new: Plan, states: Mapping[int, FractionState]) -> Plan
 
 
 def revision_faults(old: Plan, new: Plan, states: Mapping[int, FractionState]) -> Iterator[str]:
-    """Yield a sentence for every reason why a revised plan cannot go on from what was delivered."""
+    """Yield a sentence for every reason why a revised plan cannot go on from what was delivered.
+
+    See ``unfinished_faults`` for fractions that must be finished first.
+    """
     if _beams(old.positions[0]) != _beams(new.positions[0]):
         yield (
             "a course that has begun keeps its fields and beams, in their order; other fields are "
             "another course"
         )
         return
-    for label in sorted(treated_labels(states.values())):
+    for label in sorted(bound_labels(old, states)):
         if any(position.label == label for position in new.positions) and not _same_place(
             old.position(label), new.position(label)
         ):
             yield (
-                f"position {label} has been treated with other settings; give the new position a "
-                "label of its own"
+                f"position {label} of the fractions begun so far has other settings; give the new "
+                "position a label of its own"
             )
-    last = max(states)
+    last = max(states, default=0)
     if last > len(new.fractions):
         yield (
             f"fraction {last} has been treated, but the revised design prescribes only "
             f"{len(new.fractions)}"
         )
+
+
+def unfinished_faults(states: Mapping[int, FractionState]) -> Iterator[str]:
+    """Yield a sentence for every fraction that was begun under an approved plan and not finished.
+
+    Its remainder belongs to the plan it was begun under.
+    """
     for state in states.values():
         if not state.complete:
             yield f"fraction {state.number} was begun and not finished; finish it before revising"
 
 
-def treated_labels(states: Iterable[FractionState]) -> set[str]:
-    """Return every position at which some field was treated."""
-    return {
-        label for state in states for labels in state.field_positions.values() for label in labels
+def bound_labels(old: Plan, states: Mapping[int, FractionState]) -> set[str]:
+    """Return every position at which a fraction begun so far was planned, or some field treated."""
+    treated = {
+        label
+        for state in states.values()
+        for labels in state.field_positions.values()
+        for label in labels
     }
+    begun = [old.fraction(number) for number in states if number <= len(old.fractions)]
+    return treated | {step.position for fraction in begun for step in fraction.steps}
 
 
 def _beams(position: PositionSettings) -> list[tuple[str, str]]:

@@ -2,13 +2,14 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
-from sqlalchemy import and_, delete, insert, update
+from sqlalchemy import and_, delete, insert, select, update
 
 from featherlog.store import projecting_delivery
 from featherlog.store.changes import change_course, change_one
-from featherlog.store.tables import delivery, departure, event, observation
+from featherlog.store.tables import course, delivery, departure, event, observation
 
 if TYPE_CHECKING:
     from sqlalchemy import Connection
@@ -80,12 +81,20 @@ def machine_changed(connection: Connection, entry: Entry) -> None:
 def corrected(connection: Connection, entry: Entry) -> None:
     """Put a corrected record in the place of the one it corrects; the ledger keeps both."""
     noted(connection, entry)
-    number = entry.content["corrects"]
+    content = entry.content
+    number = content["corrects"]
     for table in (delivery, observation):
         connection.execute(delete(table).where(table.c.entry == number))
     replaced = and_(departure.c.course == entry.course, departure.c.entry == number)
     connection.execute(update(departure).where(replaced).values(status="corrected"))
-    projecting_delivery.recorded(connection, entry)
+    # Who signs a correction need not have treated.
+    performer, verifier = content.get("treated_by", (content["performer"], content["verifier"]))
+    treated = content | {"performer": performer, "verifier": verifier}
+    projecting_delivery.recorded(connection, replace(entry, content=treated))
+    if not content["after"]["complete"]:
+        query = select(course.c.approved_revision).where(course.c.key == entry.course)
+        if connection.execute(query).scalar() is not None:
+            change_course(connection, entry, state="approved")
 
 
 def decided(connection: Connection, entry: Entry) -> None:

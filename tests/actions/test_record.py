@@ -52,7 +52,9 @@ def test_as_confirmed_nothing_differs(department: Program) -> None:
 def test_all_fields_elsewhere_are_coherent(department: Program) -> None:
     done = treated(department.database, THIGH, "2026-03-02", position="B")
     assert _kinds(done) == [COHERENT]
-    assert done.departures[0].detail == "all fields treated at B, planned A: the shares change"
+    assert done.departures[0].detail == (
+        "all fields treated at B, planned A: shares become A 4, B 6, C 5"
+    )
 
 
 def test_naming_every_field_is_the_same_as_the_position(department: Program) -> None:

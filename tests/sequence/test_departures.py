@@ -30,13 +30,16 @@ def at(brain: str, upper: str, lower: str) -> dict[str, str]:
 
 @pytest.mark.parametrize("where", [at("B", "B", "B"), {"UPPER": "B"}, {}])
 def test_fields_where_they_were_planned_are_no_departure(plan: Plan, where: dict[str, str]) -> None:
-    assert position_departures(plan, "B", where) == ()
+    assert position_departures(plan, "B", where, {}) == ()
 
 
 def test_fields_together_at_another_position_change_only_the_shares(plan: Plan) -> None:
-    (found,) = position_departures(plan, "B", at("A", "A", "A"))
+    shares = {"A": 6, "B": 4, "C": 3.5}
+    (found,) = position_departures(plan, "B", at("A", "A", "A"), shares)
     assert found == Departure(
-        "other position", COHERENT, "all fields treated at A, planned B: the shares change"
+        "other position",
+        COHERENT,
+        "all fields treated at A, planned B: shares become A 6, B 4, C 3.5",
     )
 
 
@@ -52,7 +55,7 @@ def test_fields_together_at_another_position_change_only_the_shares(plan: Plan) 
 def test_a_field_left_behind_leaves_a_strip_one_step_wide(
     plan: Plan, where: dict[str, str], strips: tuple[str | None, ...]
 ) -> None:
-    (found,) = position_departures(plan, "B", where)
+    (found,) = position_departures(plan, "B", where, {})
     assert (found.kind, found.grade) == ("fields apart", INCOHERENT)
     places = ", ".join(f"{field} at {place}" for field, place in where.items())
     shown = "; ".join(
@@ -65,7 +68,7 @@ def test_a_field_left_behind_leaves_a_strip_one_step_wide(
 
 def test_the_wrong_direction_leaves_a_strip_two_steps_wide() -> None:
     either_way = plan_course(spine(offsets_cm=(0.0, -1.0, 1.0)), machine())
-    (found,) = position_departures(either_way, "B", at("B", "B", "C"))
+    (found,) = position_departures(either_way, "B", at("B", "B", "C"), {})
     assert "a strip of 2.0 cm at J2 got twice the dose of this fraction" in found.detail
 
 
@@ -77,7 +80,7 @@ def test_only_fields_that_received_meterset_have_a_position(plan: Plan) -> None:
 def test_a_meterset_beyond_tolerance_is_named_with_its_figures() -> None:
     found = meterset_departures({"u": 0.4, "l": 1.03, "b": 1.0}, dict.fromkeys("ulb", 200.0), 2.0)
     assert found == (
-        Departure("meterset short", MINOR, "beam u has had 80.0 of 200.0 MU (-60.0 %)"),
+        Departure("meterset short", MINOR, "beam u has had 80.0 of 200.0 MU (−60.0 %)"),
         Departure("meterset over", MINOR, "beam l has had 206.0 of 200.0 MU (+3.0 %)"),
     )
 
