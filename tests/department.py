@@ -54,9 +54,10 @@ def build(database: str) -> None:
             approve(database, key, by=by(PHYSICIAN), verified_by=by(CHECKER))
 
 
-def add_course(database: str, key: str) -> None:
-    """Prepare, check and approve one more course, like the thigh's in all but its key."""
+def add_course(database: str, key: str, fractions: int = 15) -> None:
+    """Prepare, check and approve one more course, like the thigh's in all but key and length."""
     text = (SCENARIO / DESIGNS[THIGH]).read_text(encoding="utf-8").replace(THIGH, key)
+    text = text.replace("fractions = 15", f"fractions = {fractions}")
     with TemporaryDirectory() as folder, practice_time(moment("2026-02-27")):
         design = Path(folder) / "design.toml"
         design.write_text(text, encoding="utf-8")
