@@ -8,6 +8,7 @@ from featherlog import words
 from featherlog.cli.output import WIDTH, rule, table, wrapped
 from featherlog.cli.show_day import heading_lines
 from featherlog.cli.show_dose import dose_lines
+from featherlog.junction import phrases
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
@@ -105,10 +106,12 @@ def _beam_row(beam: BeamSetting) -> tuple[str, ...]:
 def _turned_beams(position: PositionSettings) -> Iterator[str]:
     for beam in (beam for field in position.treated for beam in field.beams):
         if beam.exact_couch_deg or beam.exact_collimator_deg:
+            beside = phrases.angles_beside_set(beam)
             yield wrapped(
                 f"{beam.beam}, before rounding: collimator "
                 f"{words.signed(beam.exact_collimator_deg, 4, 4)}, couch "
                 f"{words.signed(beam.exact_couch_deg, 4, 4)} degrees"
+                f"{f'; {beside}' if beside else ''}"
             )
 
 
@@ -143,13 +146,10 @@ def _junction(junction: JunctionSetting) -> Iterator[str]:
     if junction.gap_without_overlap_cm is not None:
         without = words.signed(junction.gap_without_overlap_cm, 3, 3)
         yield f"  skin gap that removes it {without} cm"
-    yield "  mismatch, worst beam pair (+ gap, − overlap):"
+    yield "  mismatch, worst beam pair and the worst of the other sign (+ gap, − overlap):"
     yield from (f"    {line}" for line in _mismatches(junction).splitlines())
-    yield wrapped(
-        f"worst with both jaws off by their tolerance {words.signed(junction.if_jaws_off_cm, 2)} "
-        f"cm, with all angles off too {words.signed(junction.if_all_off_cm, 2)} cm",
-        "  ",
-    )
+    for what, change in phrases.plays(junction):
+        yield wrapped(f"with {what} by their tolerance: {change}", "  ")
 
 
 def _mismatches(junction: JunctionSetting) -> str:
@@ -158,8 +158,8 @@ def _mismatches(junction: JunctionSetting) -> str:
             place.place,
             words.signed(place.x_cm),
             words.signed(place.y_cm),
-            words.signed(place.exact_cm, 3, 3),
-            words.signed(place.rounded_cm, 3, 3),
+            phrases.mismatch(place.exact_cm),
+            phrases.mismatch_as_set(place),
         )
         for place in junction.mismatches
     ]
@@ -196,6 +196,8 @@ def _blocks(lines: tuple[BlockLine, ...]) -> str:
 
 def _hand_checks(view: SolutionView) -> Iterator[str]:
     yield "Hand check, before rounding: textbook formula beside the exact value"
+    if not view.hand_checks:
+        yield phrases.NO_FORMULA
     for check in view.hand_checks:
         yield wrapped(f"{check.position}: {check.subject}: {check.formula}")
         yield wrapped(

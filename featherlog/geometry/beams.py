@@ -23,7 +23,15 @@ MOST_EDGE_TILT_DEG = 30.0
 
 
 class GeometryError(ValueError):
-    """A beam cannot do what is asked of it for a geometric reason, said in its message."""
+    """Beams cannot do what is asked of them for geometric reasons, one message for each.
+
+    ``fixed`` is true where one of them holds wherever the junctions are put.
+    """
+
+    def __init__(self, *messages: str, fixed: bool = False) -> None:
+        super().__init__("; ".join(messages))
+        self.messages = messages
+        self.fixed = fixed
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -90,7 +98,8 @@ class BeamFrame:
         if tilt > MOST_EDGE_TILT_DEG:
             raise GeometryError(
                 f"no jaw faces the junction within {MOST_EDGE_TILT_DEG:.0f} degrees: the nearest "
-                f"is turned {tilt:.1f} degrees from the junction axis"
+                f"is turned {tilt:.1f} degrees from the junction axis",
+                fixed=True,
             )
         return axis, side
 

@@ -83,8 +83,11 @@ def _couch_angle(
     a, b = normal[0] * sine, -normal[1] * sine
     c = height - normal[2] * cosine
     reach = math.hypot(a, b)
-    if reach < 1e-9 or abs(c) > reach * (1 + 1e-12):  # noqa: PLR2004 - noise of gantry 0 and 180
-        raise GeometryError("no couch angle puts its source in the neighbour's edge plane")
+    still = reach < 1e-9  # noqa: PLR2004 - noise of gantry 0 and 180, whose source no turn moves
+    if still or abs(c) > reach * (1 + 1e-12):
+        raise GeometryError(
+            "no couch angle puts its source in the neighbour's edge plane", fixed=still
+        )
     middle, half = math.atan2(b, a), math.acos(max(-1.0, min(1.0, c / reach)))
     roots = sorted(
         (signed_angle(math.degrees(angle)) for angle in (middle - half, middle + half)), key=abs

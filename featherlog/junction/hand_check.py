@@ -8,10 +8,11 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
-from itertools import pairwise
+from itertools import pairwise, product
 from typing import TYPE_CHECKING
 
 from featherlog.geometry.frames import patient_from_beam
+from featherlog.junction.design import Technique
 from featherlog.junction.machine import Jaw
 from featherlog.junction.points import OUTWARD
 
@@ -32,8 +33,15 @@ OVERLAP_RULE = "overlap = (j1 / SAD1 − j2 / SAD2) × (depth of structure − m
 COLLIMATOR_RULE = "collimator ≈ atan(neighbour's jaw toward the junction / SAD)"
 COUCH_RULE = "couch ≈ atan(own jaw toward the junction after turning / SAD)"
 COLLIMATOR_EXACT = "tan(collimator) = (neighbour's jaw / SAD) / cos(couch)"
+COUCH_EXACT = "tan(couch) = (own jaw after turning / SAD) / cos(collimator)"
+HALF_BEAM_RULE = (
+    "mismatch ≈ δ / SAD × (s1 − s2), δ the junction's distance from the beam axis, s the distance "
+    "past the isocentre along the superior (1) and inferior (2) field's beam, less the match "
+    "point's"
+)
 KHAN = "Khan, The Physics of Radiation Therapy, adjacent fields (from memory)"
 SIMILAR = "similar triangles"
+DIVERGENCE = "derived from the divergence of two beams of one isocentre and SAD"
 SAGITTAL = "derived; a lateral beam against a neighbour in the sagittal plane"
 
 
@@ -81,6 +89,7 @@ def _junction(
                 entry = entry_depth(course, junction, setting, beam)
                 yield from _jaw(junction, label, beam, setting, entry=entry, jaw=jaw)
     if turned is None and not junction.separation_cm:
+        yield from _half_beam(course, junction, label, setting, fields)
         pair = _square_pair(course, junction, fields)
         if pair is not None:
             yield from _gaps(junction, label, setting, pair)
@@ -195,6 +204,52 @@ def _overlap(
     )
 
 
+def _half_beam(
+    course: Course,
+    junction: Junction,
+    label: str,
+    setting: JunctionSetting,
+    fields: tuple[FieldSetting, FieldSetting],
+) -> Iterator[HandCheck]:
+    """Yield what half beams of different gantry angles leave, where it is worst.
+
+    An edge through the match point at δ from the axis lies at δ·(SAD + s)/(SAD + s_match): to first
+    order δ/SAD times how much farther past the isocentre than the match point it is looked at.
+    """
+    beams = [beam for field in fields for beam in field.beams]
+    at, sads = {beam.isocentre_cm for beam in beams}, {beam.sad_cm for beam in beams}
+    gantries = {round(beam.gantry_deg % 360.0, 6) for beam in beams}
+    new = not any(field.earlier_course for field in fields)
+    half = new and junction.technique is Technique.HALF_BEAM and all(map(_straight, beams))
+    if not half or len(at) > 1 or len(sads) > 1 or len(gantries) == 1:
+        return
+    place = max(setting.mismatches, key=lambda each: abs(each.exact_cm))
+    (isocentre,), (sad,) = at, sads
+    delta = setting.match_point_cm[2] - isocentre[2]
+
+    def past(beam: BeamSetting) -> float:
+        toward = patient_from_beam(course.patient_position, beam.gantry_deg, 0.0, 0.0)[:, 2]
+        x, y, _ = setting.match_point_cm
+        return float(toward[0] * (x - place.x_cm) + toward[1] * (y - place.y_cm))
+
+    pairs = [
+        (past(above), past(below), above, below)
+        for above, below in product(fields[0].beams, fields[1].beams)
+    ]
+    sign = math.copysign(delta, place.exact_cm * delta)  # of the pairs, the one that is worst there
+    s1, s2, above, below = max(pairs, key=lambda pair: sign * (pair[0] - pair[1]))
+    yield HandCheck(
+        label,
+        f"{above.beam} and {below.beam} at {place.place} (x {place.x_cm:.1f}, y {place.y_cm:.1f})",
+        HALF_BEAM_RULE,
+        f"{delta:.3f} / {sad:.1f} × ({s1:.3f} − {s2:.3f})",
+        delta / sad * (s1 - s2),
+        place.exact_cm,
+        "cm",
+        DIVERGENCE,
+    )
+
+
 def _turned(
     junction: Junction, label: str, field: FieldSetting, neighbour: FieldSetting, end: str
 ) -> Iterator[HandCheck]:
@@ -202,41 +257,49 @@ def _turned(
     matched = next(beam for beam in neighbour.beams if beam.beam == wanted)
     theirs = matched.superior_jaw if end == "inferior" else matched.inferior_jaw
     j_theirs = abs(matched.exact_jaw_cm[theirs])
+    neighbours = f"{j_theirs:.3f} / {matched.sad_cm:.1f}", j_theirs / matched.sad_cm
     for beam in field.beams:
         own = beam.inferior_jaw if end == "inferior" else beam.superior_jaw
         j_own = abs(beam.exact_jaw_cm[own])
+        owns = f"{j_own:.3f} / {beam.sad_cm:.1f}", j_own / beam.sad_cm
         collimator, couch = abs(beam.exact_collimator_deg), abs(beam.exact_couch_deg)
-        yield HandCheck(
-            label,
-            f"{beam.beam}, collimator angle",
-            COLLIMATOR_RULE,
-            f"atan({j_theirs:.3f} / {matched.sad_cm:.1f})",
-            math.degrees(math.atan(j_theirs / matched.sad_cm)),
-            collimator,
-            "degrees",
-            KHAN,
+        yield _angle(
+            label, f"{beam.beam}, collimator angle", COLLIMATOR_RULE, neighbours, collimator
         )
-        yield HandCheck(
-            label,
-            f"{beam.beam}, couch angle",
-            COUCH_RULE,
-            f"atan({j_own:.3f} / {beam.sad_cm:.1f})",
-            math.degrees(math.atan(j_own / beam.sad_cm)),
-            couch,
-            "degrees",
-            KHAN,
-        )
+        yield _angle(label, f"{beam.beam}, couch angle", COUCH_RULE, owns, couch)
         if _lateral(beam) and _sagittal(matched):
-            yield HandCheck(
+            yield _angle(
                 label,
                 f"{beam.beam}, collimator angle",
                 COLLIMATOR_EXACT,
-                f"atan({j_theirs:.3f} / {matched.sad_cm:.1f} / cos {couch:.3f}°)",
-                math.degrees(math.atan(j_theirs / matched.sad_cm / math.cos(math.radians(couch)))),
+                neighbours,
                 collimator,
-                "degrees",
-                SAGITTAL,
+                over=couch,
             )
+            yield _angle(
+                label, f"{beam.beam}, couch angle", COUCH_EXACT, owns, couch, over=collimator
+            )
+
+
+def _angle(
+    label: str,
+    subject: str,
+    formula: str,
+    ratio: tuple[str, float],
+    exact_deg: float,
+    *,
+    over: float | None = None,
+) -> HandCheck:
+    """Return an angle by its tangent: a ratio, over the cosine of another angle where given."""
+    numbers, tangent = ratio
+    if over is not None:
+        numbers += f" / cos {over:.3f}°"
+        tangent /= math.cos(math.radians(over))
+    source = KHAN if over is None else SAGITTAL
+    by_formula = math.degrees(math.atan(tangent))
+    return HandCheck(
+        label, subject, formula, f"atan({numbers})", by_formula, exact_deg, "degrees", source
+    )
 
 
 def _toward(beam: BeamSetting, jaw: Jaw) -> float:

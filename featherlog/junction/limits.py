@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from featherlog.geometry.beams import GeometryError
 from featherlog.junction.borders import border_settings
-from featherlog.junction.design import EdgesBy
+from featherlog.junction.design import Angles, EdgesBy
 from featherlog.junction.machine import Jaw
+from featherlog.junction.placing import turned_fields
 from featherlog.junction.rounding import place_rounded
 from featherlog.words import signed
 
@@ -24,22 +26,53 @@ _COARSE_CM = 0.25
 _FINE_CM = 0.01
 
 
-def limit_faults(task: Task, chain: Chain) -> tuple[str, ...]:
-    """Return one sentence for every limit that the placed fields pass."""
+@dataclass(frozen=True, slots=True)
+class Fault:
+    """What keeps a position from being set, in words; ``fixed`` when it does at every offset."""
+
+    text: str
+    fixed: bool = False
+
+
+def geometry_faults(error: GeometryError) -> tuple[Fault, ...]:
+    """Return what keeps beams from being placed, one fault for each."""
+    return tuple(Fault(message, error.fixed) for message in error.messages)
+
+
+def limit_faults(task: Task, chain: Chain) -> tuple[Fault, ...]:
+    """Return every limit that the placed fields pass."""
+    following = {
+        field
+        for field, junction in turned_fields(task.course).items()
+        if task.course.junctions[junction].angles is Angles.RECOMPUTED
+    }
     limits = (
         fault
-        for field in chain
+        for index, field in enumerate(chain)
         if field.field.earlier is None
         for beam in field.beams
-        for fault in (*_jaw_faults(task.machine, beam), *_angle_faults(task.machine, beam))
+        for fault in (
+            *_jaw_faults(task.machine, beam),
+            *_angle_faults(task.machine, beam, turned=index in following),
+        )
     )
     return (*limits, *_border_faults(task, chain))
 
 
-def _border_faults(task: Task, chain: Chain) -> Iterator[str]:
+def way_out(task: Task, position: Position, faults: tuple[Fault, ...]) -> str:
+    """Say what would be allowed instead of a faulty position, or that no offset would be."""
+    first = task.course.positions[0]
+    if position is first:
+        return f"position {first.label} is where offsets are measured from: change the design"
+    if any(fault.fixed for fault in faults):
+        return "no offset is admissible: change the design"
+    return nearest_admissible(task, position)
+
+
+def _border_faults(task: Task, chain: Chain) -> Iterator[Fault]:
     for border in border_settings(task.course, chain):
         if border.short_cm > task.machine.steps.jaw_cm:
-            yield (
+            yield Fault(
                 f"the {border.end} border would be left uncovered by {border.short_cm:.2f} cm "
                 f"between its lateral limits"
             )
@@ -90,30 +123,36 @@ def _offset(value_cm: float) -> str:
     return f"{signed(value_cm, 2, 6)} cm"
 
 
-def _jaw_faults(machine: Machine, placed: PlacedBeam) -> Iterator[str]:
+def _jaw_faults(machine: Machine, placed: PlacedBeam) -> Iterator[Fault]:
     settings = placed.jaws
+    ends = (placed.superior.jaw, placed.inferior.jaw)
     for jaw, value in settings.items():
         travel = machine.jaw_travel_cm[jaw]
-        ends = (placed.superior.jaw, placed.inferior.jaw)
         if jaw in ends and placed.beam.edges_by is EdgesBy.LEAVES:
             continue  # a leaf edge stands inside jaws that belong to the plan
         if not travel.holds(value):
-            yield (
+            yield Fault(
                 f"jaw {jaw} of beam {placed.beam.name} would stand at {signed(value, 2)} cm, "
-                f"beyond its travel {_range(travel)} cm"
+                f"beyond its travel {_range(travel)} cm",
+                fixed=jaw not in ends,
             )
     for low, high in ((Jaw.X1, Jaw.X2), (Jaw.Y1, Jaw.Y2)):
         opening = settings[high] - settings[low]
         if opening <= 0:
-            yield f"jaws {low} and {high} of beam {placed.beam.name} would close on each other"
+            yield Fault(
+                f"jaws {low} and {high} of beam {placed.beam.name} would close on each other",
+                fixed=low not in ends,
+            )
         elif opening > machine.largest_opening_cm + 1e-9:
-            yield (
+            yield Fault(
                 f"jaws {low} and {high} of beam {placed.beam.name} would open {opening:.2f} cm, "
-                f"wider than {machine.largest_opening_cm:.2f} cm"
+                f"wider than {machine.largest_opening_cm:.2f} cm",
+                fixed=low not in ends,
             )
 
 
-def _angle_faults(machine: Machine, placed: PlacedBeam) -> Iterator[str]:
+def _angle_faults(machine: Machine, placed: PlacedBeam, *, turned: bool) -> Iterator[Fault]:
+    """Yield every angle out of range; those of a ``turned`` beam follow the junction."""
     beam = placed.beam
     for name, value, allowed in (
         ("gantry", beam.gantry_deg, machine.gantry_deg),
@@ -122,9 +161,10 @@ def _angle_faults(machine: Machine, placed: PlacedBeam) -> Iterator[str]:
     ):
         # 270 and -90 degrees are one angle, whichever way a machine's range is written.
         if not any(allowed.holds(value + turn) for turn in (-360.0, 0.0, 360.0)):
-            yield (
+            yield Fault(
                 f"{name} angle of beam {beam.name} is {value:.1f} degrees, outside "
-                f"{_range(allowed)} degrees"
+                f"{_range(allowed)} degrees",
+                fixed=name == "gantry" or not turned,
             )
 
 

@@ -14,7 +14,7 @@ import numpy as np
 from featherlog.junction.pairs import pair_mismatches, worst
 from featherlog.junction.placing import stated_points
 from featherlog.junction.plan import JunctionSetting, Mismatch, SkinGap
-from featherlog.junction.play import worst_if_off
+from featherlog.junction.play import play_if_off
 from featherlog.junction.points import OPPOSITE, OUTWARD, point_at_depth
 
 if TYPE_CHECKING:
@@ -57,23 +57,31 @@ def junction_setting(
         match_depth_cm=match_depth_cm,
         skin_gaps=gaps,
         mismatches=tuple(
-            Mismatch(
-                name,
-                point[0],
-                point[1],
-                worst(pair_mismatches(*exact, point)),
-                worst(pair_mismatches(*rounded, point)),
-            )
+            _mismatch(name, point, exact, rounded)
             for name, across in points.items()
             for point in across
         ),
         rounding_cm=_rounding(points, exact, rounded),
-        depth_below_skin_cm=match_depth_cm + skin_rise(junction, offset_cm),
+        depth_below_skin_cm=match_depth_cm
+        + skin_rise(junction, match_point_cm[2] - junction.skin_point_cm[2]),
         separation_cm=junction.separation_cm,
-        if_jaws_off_cm=worst_if_off(points, rounded, patient, tolerances, angles=False),
-        if_all_off_cm=worst_if_off(points, rounded, patient, tolerances, angles=True),
         three_field_overlap_cm=overlap,
         gap_without_overlap_cm=removed,
+        if_jaws_off=play_if_off(points, rounded, patient, tolerances, everything=False),
+        if_all_off=play_if_off(points, rounded, patient, tolerances, everything=True),
+    )
+
+
+def _mismatch(place: str, point: Point, exact: Pair, rounded: Pair) -> Mismatch:
+    as_set = pair_mismatches(*rounded, point)
+    return Mismatch(
+        place=place,
+        x_cm=point[0],
+        y_cm=point[1],
+        exact_cm=worst(pair_mismatches(*exact, point)),
+        rounded_cm=worst(as_set),
+        least_cm=min(as_set),
+        most_cm=max(as_set),
     )
 
 
@@ -143,7 +151,7 @@ def _gap(
     if depth is None:
         return None
     slope = math.tan(math.radians(junction.skin_slope_deg or 0.0)) if depth == 0 else 0.0
-    upper, lower = ([beam for beam in field.beams if _lights(beam, side)] for field in pair)
+    upper, lower = ([beam for beam in field.beams if lights(beam, side)] for field in pair)
     parts = [
         (
             _on_skin(junction, depth, slope, above.inferior_edge) - match_z_cm,
@@ -165,7 +173,8 @@ def _on_skin(junction: Junction, depth_cm: float, slope: float, edge: EdgePlane)
     return start + (flat - start) / (1 - tilt)
 
 
-def _lights(beam: PlacedBeam, side: Side) -> bool:
+def lights(beam: PlacedBeam, side: Side) -> bool:
+    """Tell whether a beam meets the skin of a side steeply enough to mark its edges there."""
     axis, sign = OUTWARD[side]
     return bool(sign * beam.frame.toward_source[axis] > _LEAST_LIGHT)
 

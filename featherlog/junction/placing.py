@@ -9,7 +9,9 @@ neighbour's edge plane.
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
-from typing import TYPE_CHECKING
+from functools import partial
+from statistics import fmean
+from typing import TYPE_CHECKING, TypeVar
 
 from featherlog.geometry.beams import BeamFrame, GeometryError, beam_frame
 from featherlog.geometry.matching import turn_onto
@@ -19,7 +21,7 @@ from featherlog.junction.machine import Jaw
 from featherlog.junction.points import across, places, point_at_depth
 
 if TYPE_CHECKING:
-    from collections.abc import Callable, Mapping
+    from collections.abc import Callable, Iterable, Mapping
 
     from featherlog.geometry.patient import Point
     from featherlog.junction.design import Beam, Course, Field, Junction
@@ -122,16 +124,23 @@ def place_unturned(task: Task, offset_cm: Mapping[str, float], moves_cm: list[fl
     """Return every field with its jaws by the point rule, no field turned yet.
 
     ``offset_cm`` gives each junction's offset by name and ``moves_cm`` each field's isocentre move.
-    Raises GeometryError, naming the beam, where no jaw can do it.
+    Raises GeometryError, naming every such beam, where no jaw can do it.
     """
-    return tuple(
+    faults: list[GeometryError] = []
+    chain = tuple(
         PlacedField(
             field,
             move,
-            tuple(_placed(task, beam, index, offset_cm, move) for beam in field.beams),
+            _each(
+                field.beams,
+                partial(_placed, task, index=index, offset_cm=offset_cm, move_cm=move),
+                faults,
+            ),
         )
         for index, (field, move) in enumerate(zip(task.course.fields, moves_cm, strict=True))
     )
+    _raise_all(faults)
+    return chain
 
 
 def turn_fields(
@@ -145,25 +154,45 @@ def turn_fields(
     """Return the chain with each turned field turned onto its neighbour as that now stands.
 
     ``angle`` rounds the angles of a turn; ``held`` gives those of beams whose junction holds them.
-    Raises GeometryError, naming the beam, where no angle within the machine's range can do it.
+    Raises GeometryError, naming every such beam, where no angle within the machine's range can do
+    it.
     """
     fields = list(chain)
+    faults: list[GeometryError] = []
+
+    def turned(placed: PlacedBeam, match: _Match) -> PlacedBeam:
+        kept = (held or {}).get(placed.beam.name)
+        angles = kept or _angles(task, placed, match.plane, angle)
+        return _turn(task, placed, match, offset_cm, angles)
+
     for index, junction_index in turned_fields(task.course).items():
         match = _match(task.course, fields, index, junction_index)
-        fields[index] = replace(
-            fields[index],
-            beams=tuple(
-                _turn(
-                    task,
-                    placed,
-                    match,
-                    offset_cm,
-                    (held or {}).get(placed.beam.name) or _angles(task, placed, match.plane, angle),
-                )
-                for placed in fields[index].beams
-            ),
-        )
+        beams = _each(fields[index].beams, partial(turned, match=match), faults)
+        fields[index] = replace(fields[index], beams=beams)
+    _raise_all(faults)
     return tuple(fields)
+
+
+_Item = TypeVar("_Item")
+
+
+def _each(
+    beams: Iterable[_Item], place: Callable[[_Item], PlacedBeam], faults: list[GeometryError]
+) -> tuple[PlacedBeam, ...]:
+    """Place every beam that can be; what keeps the others from it is added to ``faults``."""
+    placed = []
+    for beam in beams:
+        try:
+            placed.append(place(beam))
+        except GeometryError as error:
+            faults.append(error)
+    return tuple(placed)
+
+
+def _raise_all(faults: list[GeometryError]) -> None:
+    if faults:
+        messages = dict.fromkeys(message for fault in faults for message in fault.messages)
+        raise GeometryError(*messages, fixed=any(fault.fixed for fault in faults))
 
 
 def turned_index(course: Course, index: int) -> int | None:
@@ -182,6 +211,30 @@ def turned_fields(course: Course) -> dict[int, int]:
 def match_point(junction: Junction, depth_cm: float, offset_cm: float) -> Point:
     """Return the match point (cm), moved along the axis by the offset at constant x and y."""
     return point_at_depth(junction, depth_cm, junction.skin_point_cm[2] + offset_cm)
+
+
+def meeting_point(task: Task, index: int, offset_cm: Mapping[str, float]) -> Point:
+    """Return the point (cm) where the edges of a junction are to meet.
+
+    It is the match point moved by the offset. Beside a field of an earlier course, which never
+    moves, it lies on that field's edge: the mean of its beams' edges, or the edge that a turned
+    neighbour is turned onto.
+    """
+    junction = task.course.junctions[index]
+    x, y, z = match_point(junction, task.depth_cm[junction.name], offset_cm[junction.name])
+    for other, end in ((index, End.INFERIOR), (index + 1, End.SUPERIOR)):
+        field = task.course.fields[other]
+        if field.earlier is not None:
+            beams = field.beams if junction.turned_field is None else [_matched(junction, field)]
+            placed = (_placed(task, beam, other, offset_cm, 0.0) for beam in beams)
+            z = fmean(each.edge(end).z_at(x, y) for each in placed)
+    return (x, y, z)
+
+
+def _matched(junction: Junction, neighbour: Field) -> Beam:
+    """Return the beam of a field onto whose edge its neighbour is turned: the first, or named."""
+    wanted = junction.matched_beam or neighbour.beams[0].name
+    return next(beam for beam in neighbour.beams if beam.name == wanted)
 
 
 def separation_part(course: Course, index: int, end: End) -> float:
@@ -211,13 +264,11 @@ def _placed(
     task: Task, beam: Beam, index: int, offset_cm: Mapping[str, float], move_cm: float
 ) -> PlacedBeam:
     frame = _frame(task, beam, move_cm, beam.collimator_deg, beam.couch_deg)
+    targets = {end: _target(task, index, end, offset_cm) for end in (End.SUPERIOR, End.INFERIOR)}
     try:
-        ends = {
-            end: _end(frame, _target(task, index, end, offset_cm), end, move_cm)
-            for end in (End.SUPERIOR, End.INFERIOR)
-        }
+        ends = {end: _end(frame, target, end, move_cm) for end, target in targets.items()}
     except GeometryError as error:
-        raise GeometryError(f"beam {beam.name}: {error}") from error
+        raise GeometryError(f"beam {beam.name}: {error}", fixed=error.fixed) from error
     return PlacedBeam(
         beam, frame, beam.collimator_deg, beam.couch_deg, ends[End.SUPERIOR], ends[End.INFERIOR]
     )
@@ -245,15 +296,9 @@ def _target(task: Task, index: int, end: End, offset_cm: Mapping[str, float]) ->
         return course.inferior_border
     if (earlier := course.fields[index].earlier) is not None:
         return Border(reach_cm=earlier.junction_reach_cm)
-    place_ = index - 1 if end is End.SUPERIOR else index
-    junction = course.junctions[place_]
-    x, y, z = match_point(junction, task.depth_cm[junction.name], offset_cm[junction.name])
-    other = index - 1 if end is End.SUPERIOR else index + 1
-    if course.fields[other].earlier is not None:
-        # An earlier course's field never moves: the new edge is placed against its edge.
-        placed = _placed(task, course.fields[other].beams[0], other, offset_cm, 0.0)
-        z = placed.edge(OTHER_END[end]).z_at(x, y)
-    return (x, y, z + separation_part(course, place_, end))
+    place = index - 1 if end is End.SUPERIOR else index
+    x, y, z = meeting_point(task, place, offset_cm)
+    return (x, y, z + separation_part(course, place, end))
 
 
 def _end(frame: BeamFrame, target: Point | Border, end: End, move_cm: float) -> FieldEnd:
@@ -288,9 +333,8 @@ def _match(course: Course, fields: list[PlacedField], index: int, junction_index
     end = End.SUPERIOR if index > junction_index else End.INFERIOR
     theirs = OTHER_END[end]
     neighbour = fields[junction_index if end is End.SUPERIOR else junction_index + 1]
-    wanted = course.junctions[junction_index].matched_beam or neighbour.beams[0].beam.name
-    beam = next(placed for placed in neighbour.beams if placed.beam.name == wanted)
-    plane = beam.edge(theirs)
+    matched = _matched(course.junctions[junction_index], neighbour.field)
+    plane = next(placed for placed in neighbour.beams if placed.beam is matched).edge(theirs)
     apart = separation_part(course, junction_index, end) - separation_part(
         course, junction_index, theirs
     )
@@ -314,7 +358,7 @@ def _angles(
             couch_range_deg=(allowed.low, allowed.high),
         )
     except GeometryError as error:
-        raise GeometryError(f"beam {placed.beam.name}: {error}") from error
+        raise GeometryError(f"beam {placed.beam.name}: {error}", fixed=error.fixed) from error
     return angle(turn.collimator_deg), angle(turn.couch_deg)
 
 

@@ -22,7 +22,9 @@ class BeamSetting:
     ``jaw_cm`` is what the machine is set to, ``exact_jaw_cm`` what the geometry asks for before
     rounding. ``superior_jaw`` and ``inferior_jaw`` name the jaws that form the two ends, and
     ``superior_edge`` and ``inferior_edge`` are their planes after rounding. Exact angles are those
-    of a turned beam before rounding. ``edges_by`` says whether jaws or leaves form the two ends.
+    of a turned beam before anything is rounded; those ``_beside_set`` are solved against the
+    neighbour as set, and only then rounded. ``edges_by`` says whether jaws or leaves form the two
+    ends.
     """
 
     beam: str
@@ -44,6 +46,8 @@ class BeamSetting:
     exact_collimator_deg: float
     exact_couch_deg: float
     edges_by: str
+    collimator_beside_set_deg: float | None = None
+    couch_beside_set_deg: float | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -86,26 +90,53 @@ class SkinGap:
 
 @dataclass(frozen=True, slots=True)
 class Mismatch:
-    """The mismatch at one point, worst over beam pairs, before and after rounding (+ gap)."""
+    """The mismatch at one point (+ gap), worst over beam pairs, before and after rounding.
+
+    ``least_cm`` and ``most_cm`` are the least and greatest of any beam pair after rounding: one
+    pair may overlap where another gaps.
+    """
 
     place: str
     x_cm: float
     y_cm: float
     exact_cm: float
     rounded_cm: float
+    least_cm: float | None = None
+    most_cm: float | None = None
+
+    @property
+    def opposite_cm(self) -> float | None:
+        """Return the farthest mismatch of the other sign; None where every pair has one sign."""
+        if self.least_cm is None or self.most_cm is None:
+            return None
+        other = self.least_cm if self.rounded_cm > 0 else self.most_cm
+        return other if other * self.rounded_cm < 0 else None
+
+
+@dataclass(frozen=True, slots=True)
+class Play:
+    """By how much (cm, ±) the mismatch may differ from the one as set, settings being off.
+
+    ``at_match_depth_cm`` is the worst at the match depth, ``worst_cm`` at any stated point.
+    """
+
+    at_match_depth_cm: float
+    worst_cm: float
 
 
 @dataclass(frozen=True, slots=True)
 class JunctionSetting:
     """One junction at one position.
 
-    ``match_depth_cm`` is the depth at position A and ``depth_below_skin_cm`` the depth here, which
-    differs on a sloping skin. ``separation_cm`` is the planned gap (+) at the match point.
-    ``if_jaws_off_cm`` and ``if_all_off_cm`` are the worst mismatch when both fields' jaws, or jaws
-    and all angles, are off by the machine's tolerance the worst way. ``rounding_cm`` is the worst
-    change of any beam pair's mismatch that rounding makes.
-    ``three_field_overlap_cm`` is the length at the critical depth covered by more beams than
-    either field has, and ``gap_without_overlap_cm`` the skin gap that would remove it.
+    ``match_point_cm`` is where the edges meet: the match point moved by the offset, or the edge of
+    an earlier course's field, which never moves. ``match_depth_cm`` is the depth at position A and
+    ``depth_below_skin_cm`` the depth here, which differs on a sloping skin. ``separation_cm`` is
+    the planned gap (+) at the match point. ``rounding_cm`` is the worst change of any beam pair's
+    mismatch that rounding makes. ``three_field_overlap_cm`` is the length at the critical depth
+    covered by more beams than either field has, and ``gap_without_overlap_cm`` the skin gap that
+    would remove it. ``if_jaws_off`` and ``if_all_off`` say what becomes of the mismatch as set when
+    both fields' jaws, or jaws, all angles and the table under a field moved by the couch, are off
+    by the machine's tolerance the worst way.
     """
 
     junction: str
@@ -117,10 +148,10 @@ class JunctionSetting:
     rounding_cm: float
     depth_below_skin_cm: float
     separation_cm: float
-    if_jaws_off_cm: float
-    if_all_off_cm: float
     three_field_overlap_cm: float | None
     gap_without_overlap_cm: float | None
+    if_jaws_off: Play | None = None
+    if_all_off: Play | None = None
 
 
 @dataclass(frozen=True, slots=True)

@@ -44,11 +44,9 @@ def place_rounded(task: Task, offset_cm: Mapping[str, float]) -> Chain:
     """Return every field as the machine can be set; errors as ``place_exact``."""
     exact = place_exact(task, offset_cm)
     steps = task.machine.steps
-    moves = [to_step(field.moved_cm, steps.table_cm) for field in exact]
-    chain = _round_neighbours(task, place_unturned(task, offset_cm, moves))
     turned = turn_fields(
         task,
-        chain,
+        _neighbours_set(task, offset_cm),
         offset_cm,
         angle=lambda value: to_step(value, steps.angle_deg),
         held=_held(task, offset_cm, place_rounded),
@@ -59,6 +57,23 @@ def place_rounded(task: Task, offset_cm: Mapping[str, float]) -> Chain:
     for index in range(len(task.course.junctions)):
         fields[index : index + 2] = _round_junction(task, index, exact, fields, offset_cm)
     return tuple(fields)
+
+
+def place_beside_set(task: Task, offset_cm: Mapping[str, float]) -> Chain:
+    """Return every turned field solved against its neighbour as set, and not yet rounded.
+
+    Its edges are those of no machine: only the angles are of use, to see what rounding the
+    neighbour does to them. Errors as ``place_exact``.
+    """
+    chain = _neighbours_set(task, offset_cm)
+    return turn_fields(task, chain, offset_cm, held=_held(task, offset_cm, place_beside_set))
+
+
+def _neighbours_set(task: Task, offset_cm: Mapping[str, float]) -> Chain:
+    """Return the fields, none turned, with table moves and neighbours of turned fields rounded."""
+    step = task.machine.steps.table_cm
+    moves = [to_step(field_move(field, offset_cm), step) for field in task.course.fields]
+    return _round_neighbours(task, place_unturned(task, offset_cm, moves))
 
 
 def field_move(field: Field, offset_cm: Mapping[str, float]) -> float:

@@ -9,12 +9,12 @@ from featherlog.geometry.beams import GeometryError
 from featherlog.geometry.frames import table_move
 from featherlog.junction.borders import border_settings
 from featherlog.junction.design import Technique
-from featherlog.junction.limits import limit_faults, nearest_admissible
-from featherlog.junction.mismatch import entrance_gap, junction_setting, skin_rise
-from featherlog.junction.placing import Task, match_point
+from featherlog.junction.limits import geometry_faults, limit_faults, way_out
+from featherlog.junction.mismatch import entrance_gap, junction_setting, lights, skin_rise
+from featherlog.junction.placing import Task, meeting_point
 from featherlog.junction.plan import BeamSetting, FieldSetting, PositionSettings
 from featherlog.junction.points import OUTWARD
-from featherlog.junction.rounding import place_exact, place_rounded
+from featherlog.junction.rounding import place_beside_set, place_exact, place_rounded
 
 if TYPE_CHECKING:
     from featherlog.junction.design import Course, Junction, Position
@@ -26,7 +26,7 @@ def solve(course: Course, machine: Machine) -> tuple[PositionSettings, ...]:
     """Return the settings of every position of a design on a machine.
 
     Raises RefusedError naming, for every position that the machine cannot deliver, the limit, the
-    value and the nearest admissible offset.
+    value and the nearest admissible offset, or that no offset is.
     """
     try:
         task = Task(course, machine, match_depths(course, machine))
@@ -39,10 +39,10 @@ def solve(course: Course, machine: Machine) -> tuple[PositionSettings, ...]:
             chain = place_rounded(task, position.offset_cm)
             faults = limit_faults(task, chain)
         except GeometryError as error:
-            faults = (str(error),)
+            faults = geometry_faults(error)
         if faults:
-            hint = nearest_admissible(task, position)
-            refusals += [f"position {position.label}: {fault}; {hint}" for fault in faults]
+            hint = way_out(task, position, faults)
+            refusals += [f"position {position.label}: {fault.text}; {hint}" for fault in faults]
         else:
             settings.append(_position_settings(task, position, chain))
     refusals += _unlit_gaps(course, settings[:1])
@@ -108,9 +108,7 @@ def _position_settings(task: Task, position: Position, chain: Chain) -> Position
         junction_setting(
             junction,
             offset_cm=position.offset_cm[junction.name],
-            match_point_cm=match_point(
-                junction, task.depth_cm[junction.name], position.offset_cm[junction.name]
-            ),
+            match_point_cm=meeting_point(task, index, position.offset_cm),
             match_depth_cm=task.depth_cm[junction.name],
             exact=(exact[index], exact[index + 1]),
             rounded=(chain[index], chain[index + 1]),
@@ -119,16 +117,19 @@ def _position_settings(task: Task, position: Position, chain: Chain) -> Position
         )
         for index, junction in enumerate(course.junctions)
     )
+    beside = place_beside_set(task, position.offset_cm)
     fields = tuple(
-        _field_setting(course, position, placed, wanted, chain[0])
-        for placed, wanted in zip(chain, exact, strict=True)
+        _field_setting(course, position, ways, chain[0])
+        for ways in zip(chain, exact, beside, strict=True)
     )
     return PositionSettings(position.label, fields, junctions, border_settings(course, chain))
 
 
 def _field_setting(
-    course: Course, position: Position, placed: PlacedField, wanted: PlacedField, first: PlacedField
+    course: Course, position: Position, ways: tuple[PlacedField, ...], first: PlacedField
 ) -> FieldSetting:
+    """Return the setting of a field placed three ways: as set, exactly, and beside what is set."""
+    placed = ways[0]
     field = placed.field
     here, there = placed.beams[0].isocentre_cm, first.beams[0].isocentre_cm
     step = (here[0] - there[0], here[1] - there[1], here[2] - there[2])
@@ -139,8 +140,8 @@ def _field_setting(
         table_from_a_cm=table_move(course.patient_position, (0.0, 0.0, placed.moved_cm)),
         table_from_first_field_cm=table_move(course.patient_position, step),
         beams=tuple(
-            _beam_setting(course, placed, got, want, position)
-            for got, want in zip(placed.beams, wanted.beams, strict=True)
+            _beam_setting(course, position, placed, beams)
+            for beams in zip(*(way.beams for way in ways), strict=True)
         ),
         dose_per_fraction_gy=field.dose_per_fraction_gy,
         earlier_course=field.earlier.label if field.earlier else "",
@@ -149,9 +150,11 @@ def _field_setting(
 
 
 def _beam_setting(
-    course: Course, field: PlacedField, got: PlacedBeam, want: PlacedBeam, position: Position
+    course: Course, position: Position, field: PlacedField, ways: tuple[PlacedBeam, ...]
 ) -> BeamSetting:
+    got, want, beside = ways
     beam = got.beam
+    turned = any(junction.turned_field == field.field.name for junction in course.junctions)
     return BeamSetting(
         beam=beam.name,
         energy=beam.energy,
@@ -160,7 +163,7 @@ def _beam_setting(
         collimator_deg=got.collimator_deg,
         couch_deg=got.couch_deg,
         isocentre_cm=got.isocentre_cm,
-        ssd_cm=beam.ssd_cm - _skin_rise(course, field, got),
+        ssd_cm=beam.ssd_cm - _nearer_skin(course, field, got),
         meterset_mu=position.meterset_mu.get(beam.name, 0.0),
         jaw_cm=got.jaws,
         exact_jaw_cm=want.jaws,
@@ -172,18 +175,23 @@ def _beam_setting(
         exact_collimator_deg=want.collimator_deg,
         exact_couch_deg=want.couch_deg,
         edges_by=beam.edges_by.value,
+        collimator_beside_set_deg=beside.collimator_deg if turned else None,
+        couch_beside_set_deg=beside.couch_deg if turned else None,
     )
 
 
-def _skin_rise(course: Course, field: PlacedField, placed: PlacedBeam) -> float:
-    """Return how far (cm) the skin under a beam rises when a sloping skin is moved under it.
+def _nearer_skin(course: Course, field: PlacedField, placed: PlacedBeam) -> float:
+    """Return by how much (cm) a beam's SSD falls when a sloping skin is moved under it.
 
-    The isocentre's height stays, so the SSD falls by the same; only beams that enter the sloping
-    skin see it.
+    The isocentre's height stays. The skin is a plane that rises by its slope toward the head, met
+    by the beam axis: per cm of rise under the axis 1 / (toward · outward - slope · toward_z), which
+    is 1 / cos of the angle between them where the axis runs across the junction axis. Only beams
+    that enter the sloping skin see it.
     """
     junction = next((j for j in course.junctions if j.name == field.field.follows), None)
-    if junction is None:
+    if junction is None or not lights(placed, junction.entrance):
         return 0.0
     axis, sign = OUTWARD[junction.entrance]
-    facing = sign * float(placed.frame.toward_source[axis])
-    return max(0.0, facing) * skin_rise(junction, field.moved_cm)
+    toward = placed.frame.toward_source
+    facing = float(sign * toward[axis] - skin_rise(junction, 1.0) * toward[2])
+    return skin_rise(junction, field.moved_cm) / facing if facing > 0 else 0.0

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
+from featherlog.junction.phrases import NO_FORMULA
 from featherlog.paper import style
 from featherlog.paper.day_settings import TICK
 from featherlog.paper.fonts import join, safe, strong
@@ -27,8 +28,7 @@ _DECIMALS = 4
 def hand_check_table(checks: Sequence[HandCheck], width: float) -> list[Flowable]:
     """Return every check under its formula; all values are before rounding."""
     if not checks:
-        words = "No textbook formula applies to this geometry; check it by other means."
-        return [*section("HAND CHECK"), para(safe(words))]
+        return [*section("HAND CHECK"), para(safe(NO_FORMULA))]
     groups = [
         (_formula(formula, group[0]), [_check(check) for check in group])
         for formula, group in _by_formula(checks).items()

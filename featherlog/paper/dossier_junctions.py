@@ -5,6 +5,7 @@ from __future__ import annotations
 from itertools import groupby
 from typing import TYPE_CHECKING, Any
 
+from featherlog.junction.phrases import mismatch, mismatch_as_set, plays
 from featherlog.paper import style
 from featherlog.paper.fonts import Markup, join, safe, strong
 from featherlog.paper.layout import space
@@ -46,14 +47,11 @@ def _facts(setting: JunctionSetting) -> list[Markup]:
     ]
     if setting.separation_cm:
         lines.append(safe(f"planned separation {signed(setting.separation_cm)} cm"))
-    worst = (
-        ("largest change by rounding", setting.rounding_cm),
-        ("worst with both fields' jaws off", setting.if_jaws_off_cm),
-        ("worst with jaws and all angles off", setting.if_all_off_cm),
+    changes = (
+        ("largest change by rounding", f"{mismatch(setting.rounding_cm)} cm"),
+        *((f"with {what} by their tolerance", change) for what, change in plays(setting)),
     )
-    return lines + [
-        join(" ", [safe(what), strong(_mismatch(cm)), safe("cm")]) for what, cm in worst
-    ]
+    return lines + [join(" ", [safe(what), strong(change)]) for what, change in changes]
 
 
 def _gaps(gaps: tuple[SkinGap, ...], tolerance_cm: float, width: float) -> Flowable:
@@ -95,12 +93,8 @@ def _mismatches(setting: JunctionSetting, width: float) -> Table:
                     safe("" if number else place),
                     safe(figure(each.x_cm)),
                     safe(figure(each.y_cm)),
-                    safe(_mismatch(each.exact_cm)),
-                    strong(_mismatch(each.rounded_cm)),
+                    safe(mismatch(each.exact_cm)),
+                    strong(mismatch_as_set(each)),
                 ]
             )
-    return ruled(heads, rows, width, (44, 18, 18, 22, 24), numbers_from=1)
-
-
-def _mismatch(value_cm: float) -> str:
-    return signed(value_cm, 3, 3)
+    return ruled(heads, rows, width, (42, 16, 16, 21, 31), numbers_from=1)

@@ -6,6 +6,7 @@ from typing import TYPE_CHECKING, Any
 
 from reportlab.platypus import KeepTogether
 
+from featherlog.junction.phrases import angles_beside_set
 from featherlog.paper import style
 from featherlog.paper.dossier_junctions import junction_setting
 from featherlog.paper.fonts import join, safe, strong
@@ -74,6 +75,8 @@ def _beam(beam: BeamSetting) -> list[Any]:
     name = [para(strong(beam.beam)), para(safe(beam.energy), style.SMALL)]
     if _by_leaves(beam):
         name.append(para(safe(_LEAVES), style.SMALL))
+    if beside := angles_beside_set(beam):
+        name.append(para(safe(beside), style.SMALL))
     return [
         name,
         para(safe(figure(beam.gantry_deg)), style.VALUE),

@@ -9,7 +9,9 @@ import numpy as np
 
 from featherlog.junction.design import Angles, Technique
 from featherlog.junction.hand_check import JAW_RULE, hand_checks
+from featherlog.junction.rounding import to_step
 from featherlog.sequence.pattern import evener_blocks, weighted_shares
+from featherlog.words import figure
 
 if TYPE_CHECKING:
     from collections.abc import Iterator, Sequence
@@ -26,7 +28,7 @@ def warnings(
     fractions: Sequence[PlannedFraction],
 ) -> tuple[str, ...]:
     """Return one sentence for everything about a solved design that wants a second look."""
-    found = [*_uneven_shares(fractions)]
+    found = [*_uneven_shares(fractions), *_not_settable(course, machine)]
     for junction in course.junctions:
         found += _skin_slope(junction)
         found += _gap_against_step(course, junction, settings)
@@ -39,7 +41,9 @@ def warnings(
 
 def _uneven_shares(fractions: Sequence[PlannedFraction]) -> Iterator[str]:
     counts = weighted_shares(fractions)
-    if max(counts.values()) - min(counts.values()) < _EVEN:
+    # Whole fractions that do not divide by the positions leave some of them one more.
+    least = 1.0 if len(fractions) % len(counts) else 0.0
+    if max(counts.values()) - min(counts.values()) < least + _EVEN:
         return
     shown = ", ".join(f"{label} {count:g}" for label, count in counts.items())
     yield f"shares are uneven: {shown} of {len(fractions)} fractions{_better(fractions)}"
@@ -56,6 +60,31 @@ def _better(fractions: Sequence[PlannedFraction]) -> str:
         return ""
     shown = ", ".join(f"{block.position} {block.last - block.first + 1}" for block in better)
     return f"; as many shift days with blocks of {shown} would be more even"
+
+
+def _not_settable(course: Course, machine: Machine) -> Iterator[str]:
+    """Name what is typed in the design, and so never rounded, between the machine's steps."""
+    turned = {junction.turned_field for junction in course.junctions}
+    steps = machine.steps
+    for field in (field for field in course.fields if field.earlier is None):
+        for beam in field.beams:
+            typed = [("gantry angle", beam.gantry_deg, steps.angle_deg, "degrees")]
+            if field.name not in turned:  # a turned field's are solved and rounded
+                typed += [
+                    ("collimator angle", beam.collimator_deg, steps.angle_deg, "degrees"),
+                    ("couch angle", beam.couch_deg, steps.angle_deg, "degrees"),
+                ]
+            typed += [("side jaw", value, steps.jaw_cm, "cm") for value in beam.side_jaws_cm]
+            for what, value, step, unit in typed:
+                if abs(to_step(value, step) - value) > _NOISE:
+                    yield (
+                        f"beam {beam.name}: {what} {figure(value, 1, 4)} {unit} cannot be set in "
+                        f"the machine's steps of {figure(step, 1, 4)} {unit}"
+                    )
+
+
+# Typed decimals are off by less than this.
+_NOISE = 1e-9
 
 
 def _skin_slope(junction: Junction) -> Iterator[str]:

@@ -134,8 +134,6 @@ def half_beam_position(label: str, offset_cm: float, gap_cm: float = 0.0) -> Pos
         rounding_cm=0.0,
         depth_below_skin_cm=MATCH_DEPTH_CM,
         separation_cm=0.0,
-        if_jaws_off_cm=0.0,
-        if_all_off_cm=0.0,
         three_field_overlap_cm=None,
         gap_without_overlap_cm=None,
     )

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from math import radians, tan
 from typing import TYPE_CHECKING
 
 import pytest
@@ -11,6 +12,7 @@ from spine_course import FFS, HFS, beam, course, field, junction, machine, reach
 
 from featherlog.dose.amounts import delivered_amounts, earlier_amounts, planned_amounts
 from featherlog.junction.design import EarlierCourse, Technique
+from featherlog.junction.hand_check import JAW_RULE, hand_checks
 from featherlog.junction.machine import Jaw, Range, Steps
 from featherlog.junction.solve import solve
 from featherlog.sequence.planning import plan_course
@@ -69,6 +71,55 @@ def test_the_new_edge_meets_the_old_one_at_the_match_depth(
     ]
     toward = 1 if earlier_above else -1
     assert edges[0] - edges[1] == pytest.approx(toward * separation_cm, abs=1e-9)
+
+
+def old_edge_z(y_cm: float) -> float:
+    """Return where the old edge lies, 7 cm below its axis at z 7.3, y -1: similar triangles."""
+    return 7.3 - 7.0 * (100.0 - 1.0 - y_cm) / 100.0
+
+
+@pytest.mark.parametrize("separation_cm", [0.0, 0.3])
+def test_the_match_point_lies_on_the_old_edge(separation_cm: float) -> None:
+    between = replace(BETWEEN, separation_cm=separation_cm, borne_by="NEW", thickness_cm=16.0)
+    of = against(between)
+    found = solve(of, machine())[0].junction("J")
+    assert found.match_point_cm == pytest.approx((0.0, -5.0, old_edge_z(-5.0)))
+    assert found.match_point_cm[2] != pytest.approx(0.0, abs=0.01)
+    # The old field's part of the gap runs from there to where its edge meets the skin.
+    (gap,) = found.skin_gaps
+    assert gap.superior_part_cm == pytest.approx(old_edge_z(0.0) - old_edge_z(-5.0))
+    assert gap.superior_part_cm + gap.inferior_part_cm == pytest.approx(gap.expected_cm)
+
+
+def test_an_old_edge_away_from_the_design_is_no_fault_of_the_new_jaw() -> None:
+    of = against()
+    old, new = of.fields
+    of = replace(of, fields=(old, replace(new, beams=(replace(new.beams[0], ssd_cm=97.0),))))
+    (found,) = (
+        check for check in hand_checks(of, solve(of, machine())) if check.formula == JAW_RULE
+    )
+    assert found.by_formula == pytest.approx(found.exact, abs=1e-9)
+    assert not [said for said in plan_course(of, machine()).warnings if "disagree" in said]
+
+
+def test_the_depth_on_a_slope_is_that_of_the_old_edge() -> None:
+    of = against(replace(BETWEEN, skin_slope_deg=10.0))
+    found = solve(of, machine())[0].junction("J")
+    rise = tan(radians(10.0)) * old_edge_z(-5.0)
+    assert found.depth_below_skin_cm == pytest.approx(5.0 + rise)
+
+
+def test_opposed_old_beams_are_met_at_their_mean() -> None:
+    old = (beam("old back", 180, (0, -1, 7.3)), beam("old front", 0, (0, -1, 7.3)))
+    of = against()
+    of = replace(of, fields=(field("OLD", *old, earlier=GIVEN), of.fields[1]))
+    (settings,) = solve(of, machine())
+    # One edge spreads with depth as the other closes: their mean is that of the isocentre plane.
+    mean = 7.3 - 7.0
+    found = settings.junction("J")
+    assert found.match_point_cm[2] == pytest.approx(mean)
+    at_match = next(place for place in found.mismatches if place.place == "match depth")
+    assert (at_match.least_cm, at_match.most_cm) == pytest.approx((-0.28, 0.28), abs=1e-5)
 
 
 def test_the_old_field_never_moves_is_never_rounded_and_never_limited() -> None:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import replace
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import pytest
 from spine_course import FFS, HFP, HFS, beam, junction, machine, pair, spine
@@ -12,8 +12,10 @@ from featherlog.junction.design import Side, Technique
 from featherlog.junction.hand_check import (
     COLLIMATOR_EXACT,
     COLLIMATOR_RULE,
+    COUCH_EXACT,
     COUCH_RULE,
     GAP_RULE,
+    HALF_BEAM_RULE,
     JAW_RULE,
     OVERLAP_RULE,
     HandCheck,
@@ -28,7 +30,7 @@ if TYPE_CHECKING:
     from featherlog.geometry.patient import PatientPosition
     from featherlog.junction.design import Course
 
-EXACT = {JAW_RULE, GAP_RULE, OVERLAP_RULE, COLLIMATOR_EXACT}
+EXACT = {JAW_RULE, GAP_RULE, OVERLAP_RULE, COLLIMATOR_EXACT, COUCH_EXACT}
 
 
 def checks(of: Course, formulas: Collection[str] = EXACT) -> list[HandCheck]:
@@ -52,8 +54,8 @@ def test_exact_formulas_give_what_the_edge_planes_give(
     position: PatientPosition, upper_follows: str | None
 ) -> None:
     found = checks(deep_spine(position, upper_follows=upper_follows))
-    # At three positions: three spine edges, one gap, two laterals.
-    assert len(found) == 3 * (3 + 1 + 2)
+    # At three positions: three spine edges, one gap, two angles of two laterals.
+    assert len(found) == 3 * (3 + 1 + 2 * 2)
     for check in found:
         assert check.by_formula == pytest.approx(check.exact, abs=1e-6), check
 
@@ -127,7 +129,7 @@ def test_oblique_beams_have_the_textbook_angles_alone_and_they_are_degrees_off()
         [beam("l", 180, (0, 0, -14), ssd_cm=100.0)],
         junction("J", (0, 0, 0), 5.0, turned_field="UPPER"),
     )
-    assert checks(of, {COLLIMATOR_EXACT}) == []
+    assert checks(of, {COLLIMATOR_EXACT, COUCH_EXACT}) == []
     (couch,) = checks(of, {COUCH_RULE})
     assert abs(couch.by_formula - couch.exact) > 2.0
 
@@ -142,8 +144,10 @@ def test_the_jaws_of_the_textbook_angles_are_those_that_face_the_junction(turned
         *(laterals, spine_beam)[::up],
         junction("J", (0, 0, 0), 5.0, turned_field=turned),
     )
-    (exact,) = checks(of, {COLLIMATOR_EXACT})
-    assert exact.by_formula == pytest.approx(exact.exact, abs=1e-6)
+    exact = checks(of, {COLLIMATOR_EXACT, COUCH_EXACT})
+    assert len(exact) == 2
+    for check in exact:
+        assert check.by_formula == pytest.approx(check.exact, abs=1e-6)
     for check in checks(of, {COLLIMATOR_RULE, COUCH_RULE}):
         assert check.by_formula == pytest.approx(check.exact, abs=0.25)
 
@@ -175,6 +179,49 @@ def test_the_gap_rule_is_not_offered_where_no_beam_enters_squarely(gantry: float
         "J", (0, 0, 0), 5.0, thickness_cm=16.0, technique=Technique.HALF_BEAM, critical_depth_cm=8.0
     )
     assert checks(pair(*fields, between), {GAP_RULE, OVERLAP_RULE}) == []
+
+
+def half_beams(
+    *gantries: float, depth_cm: float = 4.0, offset_cm: float = 2.0, **more: Any
+) -> Course:
+    """Give half beams of one isocentre 4 cm deep, moved; the first is the upper field's."""
+    upper, *lower = (beam(f"g{at:g}", at, (0, -4, 0), ssd_cm=96.0) for at in gantries)
+    half = junction("J", (0, 0, 0), depth_cm, technique=Technique.HALF_BEAM, **more)
+    return pair([upper], lower, half, offsets_cm=(0.0, offset_cm))
+
+
+def test_opposed_half_beams_part_by_the_offset_times_their_distances_past_the_isocentre() -> None:
+    first, moved = checks(half_beams(0, 180, lateral_limits_cm=(0, 0)), {HALF_BEAM_RULE})
+    assert (first.by_formula, first.exact) == (0.0, 0.0)
+    # On the posterior skin: 4 cm past the isocentre from the front, 4 cm short of it from behind.
+    assert moved.subject == "g0 and g180 at entrance skin (x 0.0, y 0.0)"
+    assert moved.numbers == "2.000 / 100.0 × (4.000 − -4.000)"
+    assert (moved.by_formula, moved.exact) == pytest.approx((0.16, 0.16))
+
+
+@pytest.mark.parametrize("gantries", [(350, 305, 125), (10, 235, 55), (180, 0)])
+@pytest.mark.parametrize("offset_cm", [0.5, -0.5])
+@pytest.mark.parametrize("depth_cm", [4.0, 9.0])
+def test_half_beams_of_different_gantry_by_hand_to_first_order(
+    gantries: tuple[float, ...], offset_cm: float, depth_cm: float
+) -> None:
+    # With the match point off the isocentre the rest is of second order: a tenth at 10 cm.
+    of = half_beams(*gantries, depth_cm=depth_cm, offset_cm=offset_cm, thickness_cm=18.0)
+    _, moved = checks(of, {HALF_BEAM_RULE})
+    assert abs(moved.exact) > 0.02
+    assert moved.by_formula == pytest.approx(moved.exact, rel=0.1)
+
+
+def test_half_beams_without_a_formula_of_their_own() -> None:
+    one_gantry = half_beams(180, 180, lateral_limits_cm=(0, 0))
+    planned = half_beams(0, 180, separation_cm=0.2)
+    upper, lower = half_beams(0, 180).fields
+    two_isocentres = replace(
+        half_beams(0, 180),
+        fields=(upper, replace(lower, beams=(beam("g180", 180, (0, -4, -1)),))),
+    )
+    for of in (one_gantry, planned, two_isocentres):
+        assert checks(of, {HALF_BEAM_RULE}) == []
 
 
 def test_ssd_skin_and_isocentre_that_disagree_are_warned_of_once() -> None:

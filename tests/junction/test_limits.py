@@ -3,19 +3,25 @@
 from __future__ import annotations
 
 import re
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
 import pytest
 from spine_course import FFS, HFS, beam, junction, machine, pair, spine
 
 from featherlog.errors import RefusedError
+from featherlog.junction import limits
 from featherlog.junction.design import Technique
 from featherlog.junction.machine import Jaw, Machine, Range, Steps
+from featherlog.junction.rounding import place_rounded
 from featherlog.junction.solve import solve
 from featherlog.words import MINUS, signed
 
 if TYPE_CHECKING:
+    from collections.abc import Mapping
+
     from featherlog.junction.design import Course
+    from featherlog.junction.placing import Chain, Task
 
 MILLIMETRE = Steps(jaw_cm=0.1, table_cm=0.1, angle_deg=1.0)
 
@@ -131,6 +137,107 @@ def test_a_field_whose_jaws_face_no_junction_is_refused_by_its_beam() -> None:
         "position A: beam u: no jaw faces the junction within 30 degrees: the nearest is turned "
         "45.0 degrees from the junction axis"
     )
+
+
+AT_A = "position A is where offsets are measured from: change the design"
+NOWHERE = "no offset is admissible: change the design"
+
+
+def test_position_a_is_not_told_to_move_from_where_it_is_measured() -> None:
+    on = machine_with(MILLIMETRE, Jaw.Y2, -20.0, 10.0)
+    lines = refusal(spine(offsets_cm=(0.0, -2.0)), on).splitlines()
+    at_a = [line for line in lines if line.startswith("position A")]
+    assert at_a
+    assert all(line.endswith(f"; {AT_A}") for line in at_a)
+    assert not any("nearest" in line for line in at_a)
+
+
+def test_every_beam_that_faces_no_junction_is_named() -> None:
+    of = pair(
+        [beam("u", 180, (0, -5, 9), collimator_deg=45)],
+        [beam("l", 180, (0, -5, -9), collimator_deg=50), beam("fine", 0, (0, -5, -9))],
+        junction("J", (0, 0, 0), 5.0),
+    )
+    assert [line.split(": no jaw")[0] for line in refusal(of, machine()).splitlines()] == [
+        "position A: beam u",
+        "position A: beam l",
+    ]
+
+
+def test_every_beam_that_cannot_be_turned_is_named() -> None:
+    laterals = [beam(name, gantry, (0, -8, 9)) for name, gantry in (("left", 90), ("right", 270))]
+    between = junction("J", (0, 0, 0), 5.0, turned_field="UPPER")
+    of = pair(laterals, [beam("l", 180, (0, 0, -14))], between)
+    lines = refusal(of, machine(couch_deg=(-1, 1))).splitlines()
+    assert [line.split(": the couch")[0] for line in lines] == [
+        "position A: beam left",
+        "position A: beam right",
+    ]
+
+
+def counted(monkeypatch: pytest.MonkeyPatch) -> list[object]:
+    """Count how often a position is placed to look for an offset."""
+    asked: list[object] = []
+
+    def place(task: Task, offset_cm: Mapping[str, float]) -> Chain:
+        asked.append(offset_cm)
+        return place_rounded(task, offset_cm)
+
+    monkeypatch.setattr(limits, "place_rounded", place)
+    return asked
+
+
+def with_beams(
+    *, side_jaws_cm: tuple[float, float] = (-5.0, 5.0), gantry_deg: float = 180.0
+) -> Course:
+    beams = [
+        replace(beam(name, gantry_deg, (0, -5, z)), side_jaws_cm=side_jaws_cm)
+        for name, z in (("u", 9), ("l", -9))
+    ]
+    return pair(beams[:1], beams[1:], junction("J", (0, 0, 0), 5.0), offsets_cm=(0.0, -1.0))
+
+
+@pytest.mark.parametrize(
+    ("of", "on"),
+    [
+        (with_beams(gantry_deg=190.0), machine(gantry_deg=(0, 185))),
+        (with_beams(side_jaws_cm=(-5.0, 5.0)), machine(travel={Jaw.X1: Range(-4, 0)})),
+        (with_beams(side_jaws_cm=(6.0, 5.0)), machine()),
+        (with_beams(side_jaws_cm=(-50.0, 50.0)), machine()),
+    ],
+    ids=["gantry", "side jaw", "side jaws closed", "side jaws too wide"],
+)
+def test_what_no_offset_changes_starts_no_search(
+    of: Course, on: Machine, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    asked = counted(monkeypatch)
+    lines = refusal(of, on).splitlines()
+    assert {line[9] for line in lines} == {"A", "B"}
+    assert all(line.endswith(AT_A if line[9] == "A" else NOWHERE) for line in lines)
+    assert asked == []
+
+
+def test_a_source_that_no_couch_turn_moves_starts_no_search(
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    between = junction("J", (0, 0, 0), 5.0, turned_field="UPPER")
+    of = pair(
+        [beam("vertex", 180, (0, -8, 9))],
+        [beam("l", 180, (0, 0, -14))],
+        between,
+        offsets_cm=(0.0, -1.0),
+    )
+    asked = counted(monkeypatch)
+    assert refusal(of, machine()).splitlines()[1].endswith(NOWHERE)
+    assert asked == []
+
+
+def test_an_angle_that_follows_the_junction_starts_a_search() -> None:
+    # The couch of the laterals turns by about 0.6 degrees for each cm.
+    on = machine(steps=MILLIMETRE, couch_deg=(-5.6, 5.6))
+    message = refusal(spine(offsets_cm=(0.0, -3.0)), on)
+    assert "position B: beam left lateral: the couch would have to turn to" in message
+    assert "the nearest admissible offset is" in message
 
 
 def test_a_collimator_at_90_matches_with_its_x_jaws() -> None:

@@ -1,6 +1,9 @@
+from math import asin, atan, cos, degrees, radians
+
 import pytest
 from spine_course import beam, junction, machine, pair, spine
 
+from featherlog.junction.design import Angles
 from featherlog.junction.machine import Jaw, Steps
 from featherlog.junction.rounding import to_step
 from featherlog.junction.solve import solve
@@ -64,3 +67,32 @@ def test_a_tie_goes_to_the_gap(upper: float, lower: float, set_to: float) -> Non
     (settings,) = solve(course, machine(steps=Steps(0.1, 0.1, 1.0)))
     assert settings.fields[1].beams[0].jaw_cm[Jaw.Y2] == set_to
     assert settings.junction("J").rounding_cm == pytest.approx(0.05, abs=0.003)
+
+
+@pytest.mark.parametrize("angles", Angles)
+def test_the_angles_against_the_neighbour_as_set_stand_beside_the_exact_ones(
+    angles: Angles,
+) -> None:
+    of = spine(offsets_cm=(0.0,), angles=angles)
+    (settings,) = solve(of, machine(steps=Steps(0.1, 0.1, 1.0)))
+    laterals, upper, _ = settings.fields
+    assert upper.beams[0].jaw_cm[Jaw.Y2] == 13.3
+    # The laterals' sources, 8 cm in front of the back, lie in the edge as set.
+    edge_z = -14 + 13.3 * (100 + 8) / 100
+    couch = degrees(asin((9 - edge_z) / 100))
+    collimator = degrees(atan(13.3 / 100 / cos(radians(couch))))
+    left, right = laterals.beams
+    for lateral, sign in ((left, 1), (right, -1)):
+        assert lateral.couch_beside_set_deg == pytest.approx(sign * couch)
+        assert lateral.collimator_beside_set_deg == pytest.approx(-sign * collimator)
+        assert abs(lateral.couch_beside_set_deg or 0.0) == pytest.approx(4.95, abs=0.01)
+        assert abs(lateral.exact_couch_deg) == pytest.approx(4.9335, abs=1e-4)
+    assert upper.beams[0].couch_beside_set_deg is None
+
+
+def test_held_angles_against_the_neighbour_as_set_are_those_of_the_first_position() -> None:
+    of = spine(offsets_cm=(0.0, -1.0), angles=Angles.HELD)
+    first, second = solve(of, machine(steps=Steps(0.1, 0.1, 1.0)))
+    for before, now in zip(first.fields[0].beams, second.fields[0].beams, strict=True):
+        assert now.couch_beside_set_deg == before.couch_beside_set_deg
+        assert now.collimator_beside_set_deg == before.collimator_beside_set_deg

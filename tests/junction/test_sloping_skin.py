@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from math import cos, radians, tan
+from math import cos, radians, sin, tan
 
 import pytest
 from spine_course import beam, junction, machine, pair
@@ -82,6 +82,49 @@ def test_a_couch_move_is_along_the_axis_only_and_changes_the_ssd(slope_deg: floa
     assert settings.junction("J").depth_below_skin_cm == pytest.approx(DEPTH + rise)
     assert settings.junction("J").match_depth_cm == DEPTH
     assert settings.fields[0].table_from_a_cm == (0, 2.0, 0)
+
+
+def axis_meets_skin(gantry_deg: float, couch_deg: float, slope_deg: float, move_cm: float) -> float:
+    """Return the distance from source to sloping back along a beam axis, by bisection.
+
+    Head first supine, isocentre on the axis of the back 8 cm deep, moved along the patient.
+    """
+    tilt = radians(gantry_deg)
+    turn = radians(couch_deg)
+    # The source as the patient sees it: right-handed turns about the vertical, then the gantry.
+    source = (
+        SAD * sin(tilt) * cos(turn),
+        -8.0 - SAD * cos(tilt),
+        UPPER_Z + move_cm - SAD * sin(tilt) * sin(turn),
+    )
+    isocentre = (0.0, -8.0, UPPER_Z + move_cm)
+    near, far = 0.0, 2 * SAD
+    for _ in range(80):
+        middle = (near + far) / 2
+        _, y, z = (a + (b - a) * middle / SAD for a, b in zip(source, isocentre, strict=True))
+        outside = y > tan(radians(slope_deg)) * z
+        near, far = (middle, far) if outside else (near, middle)
+    return near
+
+
+@pytest.mark.parametrize("gantry_deg", [180.0, 150.0, 215.0])
+@pytest.mark.parametrize("couch_deg", [0.0, 20.0])
+@pytest.mark.parametrize("slope_deg", [12.0, -20.0])
+def test_the_ssd_of_an_oblique_beam_runs_to_where_its_axis_meets_the_slope(
+    gantry_deg: float, couch_deg: float, slope_deg: float
+) -> None:
+    move = -2.0
+    before, after = (axis_meets_skin(gantry_deg, couch_deg, slope_deg, by) for by in (0.0, move))
+    oblique = beam("u", gantry_deg, (0, -8, UPPER_Z), couch_deg=couch_deg, ssd_cm=before)
+    of = pair(
+        [oblique],
+        [beam("l", 180, (0, 0, LOWER_Z))],
+        junction("J", (0, 0, 0), DEPTH, skin_slope_deg=slope_deg),
+        follows="J",
+        offsets_cm=(0.0, move),
+    )
+    (found,) = solve(of, machine())[1].fields[0].beams
+    assert found.ssd_cm == pytest.approx(after, abs=1e-9)
 
 
 def test_fields_moved_by_their_jaws_keep_their_ssd_on_a_slope() -> None:

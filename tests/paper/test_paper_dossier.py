@@ -10,6 +10,7 @@ from solved_views import HASH, by_leaves, craniospinal, opposed_pair, solved, wi
 
 from featherlog.errors import InputError
 from featherlog.junction.design import Pattern
+from featherlog.junction.phrases import angles_beside_set, mismatch_as_set
 from featherlog.paper.dossier import dossier
 from featherlog.paper.style import MARGIN_PT, PAGE_SIZES, SMALLEST_PT
 from featherlog.words import DEMO_NOTICE, figure, meterset, signed
@@ -57,9 +58,16 @@ def left_over(view: SolutionView) -> Iterator[str]:
             yield f"{gap.side}{figure(gap.exact_cm, 3, 3)}{figure(gap.expected_cm)}"
         for each in junction.mismatches:
             numbers = f"{figure(each.x_cm)}{figure(each.y_cm)}"
-            yield f"{numbers}{signed(each.exact_cm, 3, 3)}{signed(each.rounded_cm, 3, 3)}"
-        yield f"bothfields'jawsoff{signed(junction.if_jaws_off_cm, 3, 3)}cm"
-        yield f"allanglesoff{signed(junction.if_all_off_cm, 3, 3)}cm"
+            as_set = squeezed(mismatch_as_set(each))
+            yield f"{numbers}{signed(each.exact_cm, 3, 3)}{as_set}"
+        assert junction.if_jaws_off is not None
+        assert junction.if_all_off is not None
+        for what, off in (
+            ("jawsofbothfields", junction.if_jaws_off),
+            ("jaws,allanglesandmovedtables", junction.if_all_off),
+        ):
+            at, worst = figure(off.at_match_depth_cm, 2), figure(off.worst_cm, 2)
+            yield f"with{what}offbytheirtolerance±{at}cmatthematchdepth,±{worst}cmatworst"
 
 
 @pytest.mark.parametrize("page_size", ["A4", "letter"])
@@ -187,6 +195,27 @@ def test_a_field_of_an_earlier_course_is_never_set(dose_view: DoseView) -> None:
 def test_what_is_left_at_each_junction_is_stated_everywhere(view: SolutionView) -> None:
     text = whole_text(dossier(view))
     assert [fact for fact in left_over(view) if fact not in text] == []
+
+
+def test_a_gap_and_an_overlap_at_one_point_are_both_stated(pair_view: SolutionView) -> None:
+    # Opposed pairs gap between their front beams where their back beams overlap.
+    places = [place for p in pair_view.positions for j in p.junctions for place in j.mismatches]
+    both = [place for place in places if place.opposite_cm is not None]
+    text = whole_text(dossier(pair_view))
+    assert both
+    for place in both:
+        assert f"{signed(place.rounded_cm, 3, 3)},{signed(place.opposite_cm, 3, 3)}" in text
+
+
+def test_angles_against_the_neighbour_as_set_stand_beside_the_turned_beams(
+    spine_view: SolutionView,
+) -> None:
+    said = [
+        angles_beside_set(beam) for p in spine_view.positions for f in p.treated for beam in f.beams
+    ]
+    text = whole_text(dossier(spine_view))
+    assert any(said)
+    assert all(squeezed(words) in text for words in said)
 
 
 def test_the_sequence_names_blocks_shares_and_shift_days(spine_view: SolutionView) -> None:

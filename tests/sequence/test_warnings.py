@@ -5,13 +5,15 @@ from __future__ import annotations
 from dataclasses import replace
 from typing import TYPE_CHECKING
 
-from spine_course import beam, junction, machine, pair, reach, sequence, spine
+import pytest
+from spine_course import beam, field, junction, machine, pair, reach, sequence, spine
 
-from featherlog.junction.design import Angles, Pattern, Technique
+from featherlog.junction.design import Angles, EarlierCourse, Pattern, Technique
+from featherlog.junction.machine import Steps
 from featherlog.sequence.planning import plan_course
 
 if TYPE_CHECKING:
-    from featherlog.junction.design import Course, Junction
+    from featherlog.junction.design import Course, Field, Junction
 
 # A skin gap of 4·(10 + 10)/100 = 0.8 cm.
 BETWEEN = junction("J", (0, 0, 0), 4.0)
@@ -49,6 +51,60 @@ def test_uneven_shares() -> None:
         "shares are uneven: A 10, B 6, C 5 of 21 fractions; as many shift days with blocks of "
         "A 4, B 4, C 7, A 3, B 3 would be more even"
     )
+
+
+@pytest.mark.parametrize(("labels", "fractions"), [("AB", 15), ("ABC", 13), ("ABC", 14)])
+def test_shares_as_even_as_whole_fractions_can_be(labels: str, fractions: int) -> None:
+    offsets = [-float(number) for number in range(len(labels))]
+    of = two_fields(BETWEEN, *offsets)
+    phase = replace(of.phases[0], fractions=fractions)
+    daily = sequence(Pattern.DAILY, labels, None)
+    assert said(replace(of, phases=(phase,), sequence=daily)) == ()
+
+
+def test_shares_that_could_be_more_even_though_every_five_fractions_is_usual() -> None:
+    of = two_fields(BETWEEN, 0.0, -1.0, -2.0)
+    (found,) = said(replace(of, phases=(replace(of.phases[0], fractions=13),)))
+    assert found == (
+        "shares are uneven: A 5, B 5, C 3 of 13 fractions; as many shift days with blocks of "
+        "A 5, B 4, C 4 would be more even"
+    )
+
+
+def test_shares_of_split_fractions_within_one_that_could_be_equal() -> None:
+    near = replace(sequence(Pattern.SPLIT, "AB", None), weights=(0.49, 0.51))
+    (found,) = said(replace(two_fields(BETWEEN, 0.0, -1.0), sequence=near))
+    assert found == "shares are uneven: A 9.8, B 10.2 of 20 fractions"
+
+
+def on_millimetres(*fields: Field, turned: str | None = None) -> list[str]:
+    between = junction("J", (0, 0, 0), 4.0, turned_field=turned)
+    of = replace(two_fields(between), fields=fields)
+    steps = Steps(jaw_cm=0.1, table_cm=0.1, angle_deg=0.5)
+    return [each for each in plan_course(of, machine(steps=steps)).warnings if "steps" in each]
+
+
+def test_what_is_typed_between_the_steps_of_the_machine() -> None:
+    typed = replace(
+        beam("u", 180.2, (0, -4, 10), collimator_deg=0.25, couch_deg=0.1, ssd_cm=96.0),
+        side_jaws_cm=(-5.05, 5.0),
+    )
+    lower = field("LOWER", beam("l", 180.5, (0, -4, -10), ssd_cm=96.0))
+    assert on_millimetres(field("UPPER", typed), lower) == [
+        "beam u: gantry angle 180.2 degrees cannot be set in the machine's steps of 0.5 degrees",
+        "beam u: collimator angle 0.25 degrees cannot be set in the machine's steps of 0.5 degrees",
+        "beam u: couch angle 0.1 degrees cannot be set in the machine's steps of 0.5 degrees",
+        "beam u: side jaw −5.05 cm cannot be set in the machine's steps of 0.1 cm",
+    ]
+
+
+def test_angles_that_are_solved_and_fields_that_are_not_set_need_no_steps() -> None:
+    lateral = beam("lateral", 90, (0, -8, 9), collimator_deg=0.25, ssd_cm=92.0)
+    lower = field("LOWER", beam("l", 180, (0, -4, -10), ssd_cm=96.0))
+    assert on_millimetres(field("UPPER", lateral), lower, turned="UPPER") == []
+    old = EarlierCourse("2029", dose_gy=30.0, fractions=15, junction_reach_cm=7.0)
+    upper = field("UPPER", beam("u", 180.2, (0, -4, 7), ssd_cm=96.0), earlier=old)
+    assert on_millimetres(upper, lower) == []
 
 
 def test_a_skin_slope_that_is_not_entered() -> None:
