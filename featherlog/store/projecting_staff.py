@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from sqlalchemy import and_, delete, insert, select, update
+from sqlalchemy import and_, bindparam, delete, insert, select, update
 
 from featherlog.errors import IntegrityError
 from featherlog.store.entry import canonical, signed_by
@@ -14,6 +14,11 @@ if TYPE_CHECKING:
     from sqlalchemy import Connection
 
     from featherlog.store.entry import Entry
+
+# Built once, as it runs with every entry.
+_FORGET = delete(failed_signing).where(
+    failed_signing.c.name.in_(bindparam("names", expanding=True))
+)
 
 
 def added(connection: Connection, entry: Entry) -> None:
@@ -57,7 +62,7 @@ def signing_failed(connection: Connection, entry: Entry) -> None:
 def signed(connection: Connection, entry: Entry) -> None:
     """Forget the wrong passphrases of everyone who signed."""
     if names := signed_by(entry):
-        connection.execute(delete(failed_signing).where(failed_signing.c.name.in_(names)))
+        connection.execute(_FORGET, {"names": names})
 
 
 def policy_set(connection: Connection, entry: Entry) -> None:
