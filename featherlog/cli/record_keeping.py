@@ -51,8 +51,8 @@ def verify(
         if found.unsigned:
             show(
                 wrapped(
-                    f"Entries without a signature: {found.unsigned} (wrong passphrases, and all from "
-                    "before the first key)."
+                    f"Entries without a signature: {found.unsigned} (wrong passphrases, and all "
+                    "from before the first key)."
                 )
             )
         show(f"ledger head {found.head or 'none'}")
