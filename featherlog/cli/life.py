@@ -61,7 +61,7 @@ def correct(
     Both versions stay in the ledger.
 
     \b
-    Example: featherlog correct FH-2041 44 --void --reason slip --by "Ash Plover" --with "Maple Teal"
+    Example: featherlog correct FH-2041 9 --void --reason slip --by "Ash Plover" --with "Maple Teal"
     """
     from featherlog.actions.corrections import correct as action
     from featherlog.cli.console import recorded_text

@@ -13,7 +13,7 @@ from itertools import pairwise
 from typing import TYPE_CHECKING
 
 from featherlog.sequence.calendar import too_soon
-from featherlog.words import figure, signed
+from featherlog.words import figure, meterset, signed
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Mapping, Sequence
@@ -175,7 +175,7 @@ def order_departures(
 def again_departures(fraction: int, delivered: Iterable[DeliveredBeam]) -> tuple[Departure, ...]:
     """Return the departure of what was delivered of a fraction that was complete already."""
     given = ", ".join(
-        f"{row.beam} {figure(row.meterset_mu)} MU" for row in delivered if row.meterset_mu
+        f"{row.beam} {meterset(row.meterset_mu)} MU" for row in delivered if row.meterset_mu
     )
     detail = f"fraction {fraction} was complete and was delivered again: {given}"
     return (_minor("extra delivery", detail),)

@@ -1,11 +1,17 @@
 from dataclasses import replace
-from datetime import date
+from datetime import date, datetime, timedelta
 
 import pytest
 from spine_course import sequence
 
 from featherlog.junction.design import Weekday
-from featherlog.sequence.calendar import is_treatment_day, next_date, project_dates
+from featherlog.sequence.calendar import (
+    is_treatment_day,
+    next_date,
+    next_date_after,
+    project_dates,
+    too_soon,
+)
 
 # 3 March 2031 is a Monday.
 MONDAY, TUESDAY, FRIDAY, SATURDAY = (date(2031, 3, day) for day in (3, 4, 7, 8))
@@ -58,3 +64,32 @@ def test_the_date_after_a_fraction(
     a_day: int, treated_on: date, treated: int, expected: date
 ) -> None:
     assert next_date(sequence(), a_day, treated_on, treated) == expected
+
+
+@pytest.mark.parametrize(
+    ("today", "treated_today", "expected"),
+    [
+        (date(2031, 2, 27), 0, MONDAY),
+        (FRIDAY, 0, FRIDAY),
+        (FRIDAY, 1, NEXT_MONDAY),
+        (SATURDAY, 0, NEXT_MONDAY),
+    ],
+)
+def test_the_next_date_is_neither_past_nor_before_the_start(
+    today: date, treated_today: int, expected: date
+) -> None:
+    assert next_date_after(sequence(), 1, today, treated_today) == expected
+
+
+@pytest.mark.parametrize(
+    ("hours", "too_few"), [(5.5, 5.5), (-5.5, 5.5), (6.0, None), (-6.0, None), (30.0, None)]
+)
+def test_hours_between_fractions_count_whichever_came_first(
+    hours: float, too_few: float | None
+) -> None:
+    """Across the change to summer time as well: each time bears its own offset."""
+    last = datetime.fromisoformat("2031-03-30T01:30:00+01:00")
+    now = (last + timedelta(hours=hours)).astimezone(
+        datetime.fromisoformat("2031-03-30T12:00:00+02:00").tzinfo
+    )
+    assert too_soon(last, now, 6.0) == too_few

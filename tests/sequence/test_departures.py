@@ -1,5 +1,7 @@
 from __future__ import annotations
 
+from datetime import datetime, timedelta
+from itertools import product
 from typing import TYPE_CHECKING
 
 import pytest
@@ -12,11 +14,16 @@ from featherlog.sequence.departures import (
     MINOR,
     Departure,
     MeasuredGap,
+    again_departures,
     beams_by_field,
+    expected_gap_cm,
     gap_departures,
+    halt_departures,
+    interval_departures,
     meterset_departures,
     order_departures,
     position_departures,
+    table_departures,
 )
 from featherlog.sequence.planning import plan_course
 
@@ -120,3 +127,66 @@ def test_the_order_of_fractions(
 def test_what_was_treated_without_confirmation_or_approval() -> None:
     found = order_departures(2, 2, 6, confirmed=False, approved=False)
     assert [each.kind for each in found] == ["not approved", "not confirmed"]
+
+
+@pytest.mark.parametrize(("upper", "lower"), list(product("ABC", repeat=2)))
+def test_the_gap_of_fields_apart_is_where_their_edges_are(
+    plan: Plan, upper: str, lower: str
+) -> None:
+    """On the skin at y = 0: where the upper field's lower edge is, less the lower's upper edge."""
+    above, below = plan.position(upper).fields[1].beams[0], plan.position(lower).fields[2].beams[0]
+    ends = (above.inferior_edge, below.superior_edge)
+    z = [edge.offset_cm / edge.normal[2] for edge in ends]
+    found = expected_gap_cm(plan, "J2", "posterior", upper, lower)
+    assert found == pytest.approx(z[0] - z[1], abs=1e-6)
+
+
+def test_a_skin_whose_gap_is_not_known_has_none_to_expect(plan: Plan) -> None:
+    assert expected_gap_cm(plan, "J2", "anterior", "A", "B") is None
+
+
+NOON = datetime.fromisoformat("2031-03-03T12:00:00+01:00")
+
+
+@pytest.mark.parametrize(
+    ("others", "detail"),
+    [
+        ({3: -6.0}, None),
+        ({4: -1.0}, None),
+        ({3: -5.5, 2: -26.0}, "5.5 h after fraction 3, at least 6.0 h are asked"),
+        ({3: -5.5, 5: 2.25}, "2.25 h before fraction 5, at least 6.0 h are asked"),
+    ],
+)
+def test_the_interval_to_the_nearest_other_fraction(
+    others: dict[int, float], detail: str | None
+) -> None:
+    times = [(number, NOON + timedelta(hours=hours)) for number, hours in others.items()]
+    found = [departure.detail for departure in interval_departures(4, NOON, times, 6.0)]
+    assert found == ([f"fraction 4 was treated {detail}"] if detail else [])
+
+
+def test_the_table_is_compared_by_differences(plan: Plan) -> None:
+    """The isocentres of the spine fields lie 30 cm apart, those of brain and upper spine 23."""
+    where = at("A", "A", "A")
+    readings = {"BRAIN": 81.0, "UPPER": 104.1, "LOWER": 134.1}
+    assert table_departures(plan, readings, where, 0.2) == ()
+    (found,) = table_departures(plan, readings | {"LOWER": 133.0}, where, 0.2)
+    assert found == Departure(
+        "table",
+        MINOR,
+        "from UPPER to LOWER the table moved +28.9 cm (longitudinal), planned +30.0 ± 0.2 cm",
+    )
+
+
+def test_what_was_delivered_again_is_told_beam_by_beam(plan: Plan) -> None:
+    (found,) = again_departures(3, deliver(plan, 3, part=0.5, BRAIN=None))
+    assert (
+        found.detail
+        == "fraction 3 was complete and was delivered again: upper 50.5 MU, lower 50.5 MU"
+    )
+
+
+@pytest.mark.parametrize("halted", ["", "paused", "ended"])
+def test_a_course_that_was_not_to_be_treated(halted: str) -> None:
+    found = [departure.detail for departure in halt_departures(3, halted)]
+    assert found == ([f"fraction 3 was treated with the course {halted}"] if halted else [])
