@@ -148,8 +148,8 @@ def _junction(junction: JunctionSetting) -> Iterator[str]:
         yield f"  skin gap that removes it {without} cm"
     yield "  mismatch, worst beam pair and the worst of the other sign (+ gap, − overlap):"
     yield from (f"    {line}" for line in _mismatches(junction).splitlines())
-    for what, change in phrases.plays(junction):
-        yield wrapped(f"with {what} by their tolerance: {change}", "  ")
+    changes = [f"    {what}: {change}" for what, change in phrases.plays(junction)]
+    yield from ["  changes of the mismatch as set, off by tolerance:", *changes] if changes else []
 
 
 def _mismatches(junction: JunctionSetting) -> str:
@@ -201,7 +201,7 @@ def _hand_checks(view: SolutionView) -> Iterator[str]:
     for check in view.hand_checks:
         yield wrapped(f"{check.position}: {check.subject}: {check.formula}")
         yield wrapped(
-            f"{check.numbers} = {check.by_formula:.4f}; exact {check.exact:.4f} {check.unit} "
-            f"({check.source})",
+            f"{check.numbers} = {words.figure(check.by_formula, 4, 4)}; exact "
+            f"{words.figure(check.exact, 4, 4)} {check.unit} ({check.source})",
             "    ",
         )

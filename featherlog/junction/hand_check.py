@@ -15,6 +15,7 @@ from featherlog.geometry.frames import patient_from_beam
 from featherlog.junction.design import Technique
 from featherlog.junction.machine import Jaw
 from featherlog.junction.points import OUTWARD
+from featherlog.words import figure
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
@@ -35,9 +36,8 @@ COUCH_RULE = "couch ≈ atan(own jaw toward the junction after turning / SAD)"
 COLLIMATOR_EXACT = "tan(collimator) = (neighbour's jaw / SAD) / cos(couch)"
 COUCH_EXACT = "tan(couch) = (own jaw after turning / SAD) / cos(collimator)"
 HALF_BEAM_RULE = (
-    "mismatch ≈ δ / SAD × (s1 − s2), δ the junction's distance from the beam axis, s the distance "
-    "past the isocentre along the superior (1) and inferior (2) field's beam, less the match "
-    "point's"
+    "mismatch ≈ δ / SAD × (s1 − s2), δ the junction off the axis, s the distance past the isocentre "
+    "along the superior (1) and inferior (2) beam, less the match point's"
 )
 KHAN = "Khan, The Physics of Radiation Therapy, adjacent fields (from memory)"
 SIMILAR = "similar triangles"
@@ -240,10 +240,11 @@ def _half_beam(
     s1, s2, above, below = max(pairs, key=lambda pair: sign * (pair[0] - pair[1]))
     yield HandCheck(
         label,
-        f"{above.beam} and {below.beam} at {place.place} (x {place.x_cm:.1f}, y {place.y_cm:.1f})",
+        f"{above.beam} and {below.beam} at {place.place} "
+        f"(x {figure(place.x_cm)}, y {figure(place.y_cm)})",
         HALF_BEAM_RULE,
-        f"{delta:.3f} / {sad:.1f} × ({s1:.3f} − {s2:.3f})",
-        delta / sad * (s1 - s2),
+        f"{figure(delta, 3, 3)} / {sad:.1f} × ({figure(s1, 3, 3)} − ({figure(s2, 3, 3)}))",
+        delta / sad * (s1 - s2) + 0.0,
         place.exact_cm,
         "cm",
         DIVERGENCE,

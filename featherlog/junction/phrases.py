@@ -32,17 +32,17 @@ def mismatch(value_cm: float) -> str:
 
 
 def plays(junction: JunctionSetting) -> Iterator[tuple[str, str]]:
-    """Yield what is off by its tolerance, and by how much the mismatch as set may then differ.
+    """Yield what is off by its tolerance, and how far that may change the mismatch as set.
 
     Nothing of a plan that was stored before this was worked out.
     """
     for what, play in (
-        ("jaws of both fields off", junction.if_jaws_off),
-        ("jaws, all angles and moved tables off", junction.if_all_off),
+        ("jaws", junction.if_jaws_off),
+        ("jaws, all angles, moved tables", junction.if_all_off),
     ):
         if play is not None:
             at_match, worst = (figure(cm, 2) for cm in (play.at_match_depth_cm, play.worst_cm))
-            yield what, f"±{at_match} cm at the match depth, ±{worst} cm at worst"
+            yield what, f"±{at_match} cm at match depth, ±{worst} cm at worst"
 
 
 def angles_beside_set(beam: BeamSetting) -> str:

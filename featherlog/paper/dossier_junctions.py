@@ -49,7 +49,7 @@ def _facts(setting: JunctionSetting) -> list[Markup]:
         lines.append(safe(f"planned separation {signed(setting.separation_cm)} cm"))
     changes = (
         ("largest change by rounding", f"{mismatch(setting.rounding_cm)} cm"),
-        *((f"with {what} by their tolerance", change) for what, change in plays(setting)),
+        *((f"change, off by tolerance: {what}", change) for what, change in plays(setting)),
     )
     return lines + [join(" ", [safe(what), strong(change)]) for what, change in changes]
 

@@ -195,7 +195,7 @@ def test_opposed_half_beams_part_by_the_offset_times_their_distances_past_the_is
     assert (first.by_formula, first.exact) == (0.0, 0.0)
     # On the posterior skin: 4 cm past the isocentre from the front, 4 cm short of it from behind.
     assert moved.subject == "g0 and g180 at entrance skin (x 0.0, y 0.0)"
-    assert moved.numbers == "2.000 / 100.0 × (4.000 − -4.000)"
+    assert moved.numbers == "2.000 / 100.0 × (4.000 − (−4.000))"
     assert (moved.by_formula, moved.exact) == pytest.approx((0.16, 0.16))
 
 

@@ -55,8 +55,8 @@ def test_how_far_settings_may_move_the_match_is_said_either_way() -> None:
         settings.junctions[0], if_jaws_off=Play(0.2, 0.236), if_all_off=Play(0.5, 0.671)
     )
     assert list(plays(known)) == [
-        ("jaws of both fields off", "±0.20 cm at the match depth, ±0.24 cm at worst"),
-        ("jaws, all angles and moved tables off", "±0.50 cm at the match depth, ±0.67 cm at worst"),
+        ("jaws", "±0.20 cm at match depth, ±0.24 cm at worst"),
+        ("jaws, all angles, moved tables", "±0.50 cm at match depth, ±0.67 cm at worst"),
     ]
     assert list(plays(replace(known, if_jaws_off=None, if_all_off=None))) == []
 

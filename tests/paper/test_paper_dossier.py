@@ -63,11 +63,11 @@ def left_over(view: SolutionView) -> Iterator[str]:
         assert junction.if_jaws_off is not None
         assert junction.if_all_off is not None
         for what, off in (
-            ("jawsofbothfields", junction.if_jaws_off),
-            ("jaws,allanglesandmovedtables", junction.if_all_off),
+            ("jaws", junction.if_jaws_off),
+            ("jaws,allangles,movedtables", junction.if_all_off),
         ):
             at, worst = figure(off.at_match_depth_cm, 2), figure(off.worst_cm, 2)
-            yield f"with{what}offbytheirtolerance±{at}cmatthematchdepth,±{worst}cmatworst"
+            yield f"change,offbytolerance:{what}±{at}cmatmatchdepth,±{worst}cmatworst"
 
 
 @pytest.mark.parametrize("page_size", ["A4", "letter"])
