@@ -36,8 +36,8 @@ COUCH_RULE = "couch ≈ atan(own jaw toward the junction after turning / SAD)"
 COLLIMATOR_EXACT = "tan(collimator) = (neighbour's jaw / SAD) / cos(couch)"
 COUCH_EXACT = "tan(couch) = (own jaw after turning / SAD) / cos(collimator)"
 HALF_BEAM_RULE = (
-    "mismatch ≈ δ / SAD × (s1 − s2), δ the junction off the axis, s the distance past the isocentre "
-    "along the superior (1) and inferior (2) beam, less the match point's"
+    "mismatch ≈ δ / SAD × (s1 − s2), δ the junction off the axis, s the distance past the "
+    "isocentre along the superior (1) and inferior (2) beam, less the match point's"
 )
 KHAN = "Khan, The Physics of Radiation Therapy, adjacent fields (from memory)"
 SIMILAR = "similar triangles"
