@@ -27,18 +27,23 @@ if TYPE_CHECKING:
     from featherlog.views.common import DepartureLine
 
 _APART = "fields apart"
-_WHOLE_FIELDS = ("extra fraction", "meterset over", "meterset short")
+_WHOLE_FIELDS = ("extra fraction", "extra delivery", "meterset over", "meterset short")
+# Kinds that are not named here stand before the last.
 _SEVERITY = (
     _APART,
+    "not to be treated",
     "not approved",
     "extra fraction",
-    "missed fraction",
+    "extra delivery",
     "fraction order",
     "other position",
     "meterset over",
     "meterset short",
+    "table",
     "skin gap",
+    "interval too short",
 )
+_LEAST = "not confirmed"
 # A figure at its threshold reaches it, whatever binary fractions make of it.
 _NOISE = 1e-9
 
@@ -84,17 +89,19 @@ def explain(
 
 
 def _gravest(line: DepartureLine) -> tuple[bool, int, bool, int]:
-    rank = _SEVERITY.index(line.kind) if line.kind in _SEVERITY else len(_SEVERITY)
+    kinds = (*_SEVERITY, "", _LEAST)
+    rank = kinds.index(line.kind if line.kind in kinds else "")
     return (not line.undecided, rank, line.status != "open", line.number)
 
 
 def _with_figures(
     stored: Stored, line: DepartureLine, thresholds: ReportingThresholds
 ) -> DepartureLine:
-    # A corrected record's deliveries are no longer there to be measured.
-    if line.status == "corrected" or line.kind not in (_APART, *_WHOLE_FIELDS):
-        return line
     rows = delivered_beams(stored.deliveries)
+    # A corrected record's deliveries are no longer there to be measured.
+    gone = line.status == "corrected" or line.fraction not in stored.states
+    if gone or line.kind not in (_APART, *_WHOLE_FIELDS):
+        return line
     week = _same_week(stored, line.fraction)
     given = given_in(stored.plan, rows, line.fraction, week)
     doses = (

@@ -6,25 +6,33 @@ from itertools import pairwise
 from typing import TYPE_CHECKING
 
 from featherlog import words
+from featherlog.actions.departures import course_departures
 from featherlog.actions.desk import at_desk
 from featherlog.actions.dose import stored_dose
-from featherlog.actions.stored import delivered_beams, departure_lines, load
+from featherlog.actions.stored import delivered_beams, load
 from featherlog.actions.today import next_shift
+from featherlog.actions.week import week_view
 from featherlog.dose.amounts import delivered_amounts, earlier_amounts
-from featherlog.sequence.departures import INCOHERENT
 from featherlog.sequence.pattern import weighted_shares
-from featherlog.store import ledger, queries
-from featherlog.views.review import GridCell, GridRow, ReviewView, ShareLine, SidesLine
+from featherlog.sequence.strips import strip_counts
+from featherlog.store import ledger
+from featherlog.views.review import (
+    GridCell,
+    GridRow,
+    ReviewView,
+    ShareLine,
+    SidesLine,
+    StripLine,
+)
 
 if TYPE_CHECKING:
     from featherlog.actions.stored import Stored
     from featherlog.dose.amounts import Amounts
     from featherlog.junction.plan import FieldSetting
     from featherlog.sequence.progress import FractionState
-    from featherlog.views.common import DepartureLine
 
-# Sides of a junction count as equal within this dose, which rounding of metersets can make.
-_EQUAL_GY = 0.005
+# Sides of a junction count as equal within this part of a fraction: metersets are rounded.
+_EQUAL_FRACTIONS = 0.005
 
 
 def review(database: str | None, key: str) -> ReviewView:
@@ -35,25 +43,23 @@ def review(database: str | None, key: str) -> ReviewView:
     with at_desk(database) as desk:
         stored = load(desk, key)
         head = ledger.head(desk.connection)
-        departures = departure_lines(queries.departures(desk.connection, key))
+        departures = course_departures(desk, stored)
         return ReviewView(
             heading=stored.heading(demo=desk.demo),
             fractions=stored.course.fractions,
             delivered_fractions=stored.progress.complete,
-            departures=tuple(sorted(departures, key=_most_serious_first)),
+            departures=departures,
             shares=_shares(stored),
             sides=_sides(stored),
             grid=_grid(stored),
+            strips=_strips(stored),
+            week=week_view(desk, stored, departures),
             next_shift=next_shift(stored, desk.now.date()),
             dose=stored_dose(stored, demo=desk.demo),
             ledger_head=f"{head.number}:{head.hash[:12]}" if head else "",
             printed_at=desk.stamp,
             caution=f"{words.CAUTION} {words.RECORD_CAUTION}",
         )
-
-
-def _most_serious_first(line: DepartureLine) -> tuple[bool, bool, int]:
-    return (bool(line.reason), line.grade != INCOHERENT, line.number)
 
 
 def _shares(stored: Stored) -> tuple[ShareLine, ...]:
@@ -93,23 +99,33 @@ def _sides(stored: Stored) -> tuple[SidesLine, ...]:
 
 
 def _side(stored: Stored, junction: str, upper: FieldSetting, lower: FieldSetting) -> SidesLine:
-    above, below = (
-        sum(
-            dose_gy
-            for (_, beam), dose_gy in _amounts(stored).items()
-            if beam in [setting.beam for setting in field.beams]
-        )
-        for field in (upper, lower)
-    )
-    together = _in_step(stored, upper.field, lower.field)
+    above, below = _fractions(stored, upper), _fractions(stored, lower)
     return SidesLine(
         junction,
         upper.field,
+        _dose_gy(stored, upper),
         above,
         lower.field,
+        _dose_gy(stored, lower),
         below,
-        together and abs(above - below) <= _EQUAL_GY,
+        None
+        if above is None or below is None
+        else abs(above - below) <= _EQUAL_FRACTIONS and _in_step(stored, upper.field, lower.field),
     )
+
+
+def _fractions(stored: Stored, field: FieldSetting) -> float | None:
+    """Return how many fractions' worth of meterset a field has had; None where it was finished."""
+    if field.earlier_course:
+        return None
+    states = stored.states.values()
+    given = sum(state.parts[b.beam] * b.weight for state in states for b in field.beams)
+    return round(given, 6)
+
+
+def _dose_gy(stored: Stored, field: FieldSetting) -> float:
+    beams = {setting.beam for setting in field.beams}
+    return sum(gy for (_, beam), gy in _amounts(stored).items() if beam in beams)
 
 
 def _amounts(stored: Stored) -> Amounts:
@@ -124,6 +140,20 @@ def _in_step(stored: Stored, upper: str, lower: str) -> bool:
         state.field_positions.get(upper) == state.field_positions.get(lower)
         for state in stored.states.values()
         if upper in state.field_positions and lower in state.field_positions
+    )
+
+
+def _strips(stored: Stored) -> tuple[StripLine, ...]:
+    counted = strip_counts(stored.plan, delivered_beams(stored.deliveries))
+    return tuple(
+        StripLine(
+            strip.junction,
+            strip.low_cm,
+            strip.high_cm,
+            round(strip.expected, 3),
+            round(strip.covered, 3),
+        )
+        for strip in counted
     )
 
 

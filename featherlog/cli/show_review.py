@@ -8,6 +8,13 @@ from featherlog import words
 from featherlog.cli.output import rule, table, wrapped
 from featherlog.cli.show_day import heading_lines
 from featherlog.cli.show_dose import dose_lines
+from featherlog.views.review_words import (
+    STATUS,
+    departure_notes,
+    side_words,
+    strips_words,
+    week_words,
+)
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Iterator
@@ -22,16 +29,17 @@ def review_text(view: ReviewView) -> str:
 
 
 def departures_text(lines: Iterable[DepartureLine]) -> str:
-    """Return a list of departures, open ones marked."""
-    found = [
-        wrapped(
-            f"{line.number}. {'OPEN  ' if not line.reason else ''}fraction {line.fraction}, "
-            f"{line.kind} ({line.grade}): {line.detail}. "
-            f"{'Reason: ' + line.reason if line.reason else 'No reason given yet.'}"
-        )
-        for line in lines
-    ]
-    return "\n".join(found) or "No departures."
+    """Return a list of departures with their figures, those without a decision marked."""
+    return "\n".join(text for line in lines for text in _departure(line)) or "No departures."
+
+
+def _departure(line: DepartureLine) -> Iterator[str]:
+    yield wrapped(
+        f"{line.number}. {STATUS[line.status]}  fraction {line.fraction}, {line.kind} "
+        f"({line.grade}): {line.detail}. "
+        f"{'Reason: ' + line.reason if line.reason else 'No reason given yet.'}"
+    )
+    yield from (wrapped(note, "   ") for note in departure_notes(line))
 
 
 def _review(view: ReviewView) -> Iterator[str]:
@@ -40,23 +48,23 @@ def _review(view: ReviewView) -> Iterator[str]:
     yield rule()
     yield "Departures"
     yield departures_text(view.departures)
+    yield "Outstanding"
+    yield from (wrapped(f"- {text}") for text in view.week.outstanding or ("nothing",))
     yield rule()
     yield table(
         ("position", "planned", "planned so far", "delivered"),
         [(line.position, *_counts(line)) for line in view.shares],
         numeric="planned|planned so far|delivered",
     )
-    for side in view.sides:
-        equal = "equal" if side.equal else "NOT EQUAL"
-        yield wrapped(
-            f"{side.junction}: {side.superior_field} {side.superior_gy:.2f} Gy, "
-            f"{side.inferior_field} {side.inferior_gy:.2f} Gy: {equal}"
-        )
+    yield from (wrapped(side_words(side)) for side in view.sides)
+    yield from map(wrapped, strips_words(view.strips))
     if view.next_shift:
         yield (
             f"Next shift: fraction {view.next_shift.fraction}, to position "
             f"{view.next_shift.position}, projected {view.next_shift.projected_date}"
         )
+    yield rule()
+    yield from map(wrapped, week_words(view.week))
     yield rule()
     yield from _grid(view.grid)
     yield rule()

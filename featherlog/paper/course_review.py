@@ -8,10 +8,11 @@ from typing import TYPE_CHECKING, Any
 from featherlog.paper import style
 from featherlog.paper.departures import departure_line
 from featherlog.paper.dose_profiles import match_profiles
-from featherlog.paper.fonts import join, safe, strong
+from featherlog.paper.fonts import Markup, join, safe, strong
 from featherlog.paper.layout import SIGNED, Furniture, build_pdf, lines_to_fill, space
 from featherlog.paper.review_grid import fraction_grid, is_delivered
 from featherlog.paper.style import grid, para, shares
+from featherlog.views.review_words import strips_words, week_words
 from featherlog.words import RECORD_CAUTION, figure
 
 if TYPE_CHECKING:
@@ -23,6 +24,9 @@ if TYPE_CHECKING:
     from featherlog.views.review import ReviewView, ShareLine, SidesLine
 
 _GUTTER_PT = 12.0
+_AIR_PT = 4.0
+# Lower than a picture alone: twenty fractions, two junctions and a week fit one page.
+_PICTURE_PT = 118.0
 
 
 def course_review(view: ReviewView, page_size: PageSize = "A4") -> bytes:
@@ -49,7 +53,7 @@ def _story(view: ReviewView, width: float) -> list[Flowable]:
         space(6),
         *fraction_grid(view, width),
         space(4),
-        *match_profiles(view.dose, width),
+        *match_profiles(view.dose, width, picture_pt=_PICTURE_PT),
         space(4),
         _sign_off(width),
     ]
@@ -59,6 +63,7 @@ def _exceptions(view: ReviewView, width: float) -> Table:
     lines: list[Flowable] = [para(safe("EXCEPTIONS"), style.LEAD)]
     lines += [para(strong(text)) for text in _findings(view)]
     lines += map(departure_line, view.departures)
+    lines += [para(join(" ", [strong("Outstanding:"), safe(t)])) for t in view.week.outstanding]
     if len(lines) == 1:
         lines.append(para(safe("none")))
     box = ("BOX", (0, 0), (-1, -1), style.HEAVY_PT, "black")
@@ -69,7 +74,7 @@ def _findings(view: ReviewView) -> list[str]:
     unequal = [
         f"Junction {side.junction}: the two sides have not been given the same."
         for side in view.sides
-        if not side.equal
+        if side.equal is False
     ]
     unseen = [str(row.fraction) for row in view.grid if is_delivered(row) and not row.verifier]
     if unseen:
@@ -77,12 +82,20 @@ def _findings(view: ReviewView) -> list[str]:
     return unequal
 
 
+def _week(view: ReviewView, width: float) -> Table:
+    """Return strip counts and what came since the last sign-off, in small print."""
+    texts = (*strips_words(view.strips), "; ".join(week_words(view.week)))
+    table = grid([[para(safe(text), style.SMALL)] for text in texts], [width], padding=(2, 0))
+    table.hAlign = "LEFT"
+    return table
+
+
 def _given(view: ReviewView, width: float) -> Table:
     left, right = shares(width - _GUTTER_PT, 2, 3)
     cells = [
         [*_progress(view), space(3), _share_table(view.shares, left)],
         "",
-        _sides(view.sides, right),
+        [_sides(view.sides, right), space(3), _week(view, right - _AIR_PT)],
     ]
     return grid(
         [cells],
@@ -126,11 +139,17 @@ def _sides(lines: Sequence[SidesLine], width: float) -> Table:
             para(strong(line.junction)),
             _side(line.superior_field, line.superior_gy),
             _side(line.inferior_field, line.inferior_gy),
-            para(safe("yes") if line.equal else strong("NO")),
+            para(_equal(line.equal)),
         ]
         for line in lines
     ]
     return _ruled(rows, shares(width, 8, 10, 10, 4))
+
+
+def _equal(equal: bool | None) -> Markup:  # noqa: FBT001 - None is the third answer
+    if equal is None:
+        return safe("earlier course")
+    return safe("yes") if equal else strong("NO")
 
 
 def _side(field: str, dose_gy: float) -> Flowable:

@@ -45,17 +45,104 @@ class GridRow:
 
 @dataclass(frozen=True, slots=True)
 class SidesLine:
-    """Dose given by the field on each side of a junction so far, Gy at its own reference.
+    """What the field on each side of a junction has given so far: Gy, and fractions' worth.
 
-    ``equal`` is true only when both sides also stood at the same positions in every fraction.
+    ``equal`` compares fractions, for each field may have its own dose. It is true only when both
+    sides also stood at the same positions in every fraction, and None where one is a field of an
+    earlier course, which has no fractions to compare.
     """
 
     junction: str
     superior_field: str
     superior_gy: float
+    superior_fractions: float | None
     inferior_field: str
     inferior_gy: float
-    equal: bool
+    inferior_fractions: float | None
+    equal: bool | None
+
+
+@dataclass(frozen=True, slots=True)
+class ChangeLine:
+    """Entries of one kind since the last sign-off; ``words`` holds a phrase for each."""
+
+    kind: str
+    count: int
+    words: tuple[str, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class ReviewEvent:
+    """Something that happened beside the fractions; ``fraction`` None where it belongs to none."""
+
+    entry: int
+    at: str
+    kind: str
+    who: str
+    fraction: int | None
+    words: str
+
+
+@dataclass(frozen=True, slots=True)
+class StripLine:
+    """How often a strip between neighbouring match points was covered: a count, not a dose."""
+
+    junction: str
+    low_cm: float
+    high_cm: float
+    expected_count: float
+    covered_count: float
+
+
+@dataclass(frozen=True, slots=True)
+class BreakLine:
+    """Treatment days in a row without a fraction, from the first to the last (ISO 8601)."""
+
+    first_date: str
+    last_date: str
+    treatment_days: int
+
+
+@dataclass(frozen=True, slots=True)
+class PositionCheckLine:
+    """A position that the course was shifted to, and its physics check; empty while outstanding."""
+
+    position: str
+    first_fraction: int
+    checked_by: str
+    checked_at: str
+
+
+@dataclass(frozen=True, slots=True)
+class SignOffLine:
+    """The last review signed by a role, empty where there is none, and the entries since."""
+
+    role: str
+    who: str
+    at: str
+    entries_since: int
+
+
+@dataclass(frozen=True, slots=True)
+class WeekView:
+    """What a weekly review looks at beside the sums.
+
+    ``since`` is when a review was last signed, empty where none was. ``changes``,
+    ``image_shifts`` and ``events`` tell of what came after; ``outstanding`` says what still has to
+    be done, a sentence for each. ``reviewed_to`` is the course's last entry, which a signature
+    covers.
+    """
+
+    since: str
+    changes: tuple[ChangeLine, ...]
+    events: tuple[ReviewEvent, ...]
+    image_shifts: tuple[ReviewEvent, ...]
+    late_fractions: tuple[int, ...]
+    breaks: tuple[BreakLine, ...]
+    position_checks: tuple[PositionCheckLine, ...]
+    sign_offs: tuple[SignOffLine, ...]
+    outstanding: tuple[str, ...]
+    reviewed_to: int
 
 
 @dataclass(frozen=True, slots=True)
@@ -69,6 +156,8 @@ class ReviewView:
     shares: tuple[ShareLine, ...]
     sides: tuple[SidesLine, ...]
     grid: tuple[GridRow, ...]
+    strips: tuple[StripLine, ...]
+    week: WeekView
     next_shift: NextShift | None
     dose: DoseView
     ledger_head: str

@@ -21,7 +21,20 @@ from featherlog.views.day import (
     TableMoveView,
 )
 from featherlog.views.dose import DoseCurve, DoseFigures, DoseLine, DoseView, JunctionDose
-from featherlog.views.review import GridCell, GridRow, ReviewView, ShareLine, SidesLine
+from featherlog.views.review import (
+    BreakLine,
+    ChangeLine,
+    GridCell,
+    GridRow,
+    PositionCheckLine,
+    ReviewEvent,
+    ReviewView,
+    ShareLine,
+    SidesLine,
+    SignOffLine,
+    StripLine,
+    WeekView,
+)
 from featherlog.words import CAUTION, DOSE_CAUTION, jaw_move, table_move
 
 LABELS = ("A", "B", "C")
@@ -412,6 +425,34 @@ def grid_row(fraction: int, delivered: int) -> GridRow:
     )
 
 
+def week() -> WeekView:
+    """What came after a review that was signed on the first Friday."""
+    return WeekView(
+        since="2031-03-07T16:00:00+01:00",
+        changes=(
+            ChangeLine("fraction recorded", 2, ("fraction 6", "fraction 7")),
+            ChangeLine("departure explained", 1, ("departure 2: marks misread",)),
+        ),
+        events=(ReviewEvent(57, "2031-03-10", "marks redrawn", "Ash Plover", 6, "line B redrawn"),),
+        image_shifts=(
+            ReviewEvent(58, "2031-03-10", "image shift", "Ash Plover", 6, "lateral +0.2 cm"),
+        ),
+        late_fractions=(3,),
+        breaks=(BreakLine("2031-03-06", "2031-03-07", 2),),
+        position_checks=(PositionCheckLine("B", 6, "", ""),),
+        sign_offs=(
+            SignOffLine("physicist", "Rowan Finch", "2031-03-07T16:00:00+01:00", 9),
+            SignOffLine("physician", "", "", 60),
+            SignOffLine("therapist", "", "", 60),
+        ),
+        outstanding=(
+            "departure 3: no decision is signed",
+            "position B was first treated in fraction 6: physics check outstanding",
+        ),
+        reviewed_to=66,
+    )
+
+
 @pytest.fixture
 def review(heading: Heading, dose_view: DoseView) -> ReviewView:
     return ReviewView(
@@ -430,8 +471,13 @@ def review(heading: Heading, dose_view: DoseView) -> ReviewView:
             DepartureLine(3, 7, "part-delivered", "open", "Upper spine 40 % of its meterset", ""),
         ),
         shares=(ShareLine("A", 10, 5, 5), ShareLine("B", 5, 2, 2), ShareLine("C", 5, 0, 0)),
-        sides=(SidesLine("J1", "Cranial", 12.6, "Upper spine", 11.52, False),),
+        sides=(SidesLine("J1", "Cranial", 12.6, 7.0, "Upper spine", 11.52, 6.4, False),),
         grid=tuple(grid_row(fraction, 7) for fraction in range(1, 21)),
+        strips=(
+            StripLine("J1", -2.0, -1.0, 6.7, 6.7),
+            StripLine("J1", -1.0, 0.0, 6.7, 5.7),
+        ),
+        week=week(),
         next_shift=NextShift(11, "C", "2031-03-17"),
         dose=dose_view,
         ledger_head="418-3be1c07a",

@@ -8,7 +8,9 @@ from pdf_runs import font_files, overlapping, page_runs, page_texts, squeezed, w
 from featherlog.paper.course_review import course_review
 from featherlog.paper.review_grid import departs
 from featherlog.paper.style import MARGIN_PT, PAGE_SIZES, SMALLEST_PT
+from featherlog.views.common import PlaceDose
 from featherlog.views.review import GridCell, GridRow, ShareLine
+from featherlog.views.review_words import departure_notes, strips_words, week_words
 from featherlog.words import DEMO_NOTICE, RECORD_CAUTION
 
 if TYPE_CHECKING:
@@ -37,6 +39,7 @@ def test_exceptions_come_before_everything_else(review: ReviewView) -> None:
         "JunctionJ1:thetwosideshavenotbeengiventhesame.",
         "Noverifierisnamedforfraction4.",
         "UpperspinetreatedatA,plannedB(reason:marksmisread)",
+        "Outstanding:positionBwasfirsttreatedinfraction6:physicscheckoutstanding",
         "7of20fractionsdelivered",
     ]
     places = [text.index(words) for words in order]
@@ -46,7 +49,8 @@ def test_exceptions_come_before_everything_else(review: ReviewView) -> None:
 def test_an_uneventful_course_says_so(review: ReviewView) -> None:
     grid = tuple(replace(row, verifier=row.performer) for row in review.grid)
     sides = tuple(replace(side, equal=True) for side in review.sides)
-    calm = replace(review, departures=(), sides=sides, grid=grid)
+    week = replace(review.week, outstanding=())
+    calm = replace(review, departures=(), sides=sides, grid=grid, week=week)
     assert "EXCEPTIONSnone" in whole_text(course_review(calm))
 
 
@@ -62,6 +66,41 @@ def test_shares_sides_next_shift_and_figures_are_on_the_page(review: ReviewView)
     assert squeezed(review.dose.caution) in text
     assert "95%" in text
     assert "107%" in text
+
+
+def test_strip_counts_and_what_came_since_the_last_sign_off_are_on_the_page(
+    review: ReviewView,
+) -> None:
+    text = whole_text(course_review(review))
+    for words in (*strips_words(review.strips), *week_words(review.week)):
+        assert squeezed(words) in text
+    assert "z−1.0to0.0cm5.7of6.7" in text
+    assert "fractionrecorded(2):fraction6,7;" in text
+    assert "acountandnotadose" in text
+
+
+def test_a_departure_bears_its_figures_flags_and_decision(review: ReviewView) -> None:
+    dose = PlaceDose("strip at J1", 1.0, 0.0, 1.8, 0.0, -1.8, 21.6, 23.4, 92.3)
+    line = replace(
+        review.departures[0],
+        status="decided",
+        decision="shares stay",
+        doses=(dose,),
+        flags=("100.0 %, beyond the department's reporting threshold",),
+    )
+    text = whole_text(course_review(replace(review, departures=(line,))))
+    for words in departure_notes(line):
+        assert squeezed(words) in text
+    assert "1.0cmwide,0.00Gyinthisfraction(0%),21.60of23.40Gyinthecourse(92.3%)" in text
+    assert "Decision:sharesstay.decided." in text
+
+
+def test_a_side_of_an_earlier_course_is_no_exception(review: ReviewView) -> None:
+    (side,) = review.sides
+    earlier = replace(side, superior_fractions=None, equal=None)
+    text = whole_text(course_review(replace(review, sides=(earlier,))))
+    assert "earliercourse" in text
+    assert "thetwosideshavenotbeengiventhesame" not in text
 
 
 def test_the_grid_shows_planned_and_delivered_positions_and_who(review: ReviewView) -> None:
