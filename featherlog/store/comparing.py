@@ -8,32 +8,17 @@ from itertools import zip_longest
 from typing import TYPE_CHECKING, Any
 
 import sqlalchemy
-from sqlalchemy import StaticPool, Text, insert, select
+from sqlalchemy import StaticPool, Text, select
 
-from featherlog.store import ledger, projection
-from featherlog.store.tables import PROJECTIONS, ledger_entry, metadata
+from featherlog.store.tables import PROJECTIONS, metadata
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
 
     from sqlalchemy import Connection, Table
 
+
 _BATCH = 500
-
-
-def first_difference(connection: Connection) -> str | None:
-    """Return a sentence on the first row that the ledger did not make; None when all agree.
-
-    The database itself is only read. The ledger's chain is to be walked before.
-
-    Raises:
-        IntegrityError: an entry cannot be projected at all.
-    """
-    with scratch_database() as scratch:
-        _copy_ledger(connection, scratch)
-        for entry in ledger.entries(scratch):
-            projection.apply(scratch, entry)
-        return next((sentence for _, sentence in differences(connection, scratch)), None)
 
 
 def differences(live: Connection, made: Connection) -> Iterator[tuple[int, str]]:
@@ -57,12 +42,6 @@ def scratch_database() -> Iterator[Connection]:
             yield connection
     finally:
         engine.dispose()
-
-
-def _copy_ledger(connection: Connection, scratch: Connection) -> None:
-    rows = connection.execute(select(ledger_entry).order_by(ledger_entry.c.number))
-    for batch in rows.mappings().partitions(_BATCH):
-        scratch.execute(insert(ledger_entry), [dict(row) for row in batch])
 
 
 def _difference(live: Connection, made: Connection, table: Table) -> tuple[int, str] | None:
