@@ -110,6 +110,10 @@ def stop_reasons(stored: Stored) -> tuple[str, ...]:
     if not stored.approved:
         revision = stored.revision
         return (f"revision {revision.number} of this design is {revision.state}, not approved",)
+    if stored.row.ended_reason:
+        return (f"the course was ended: {stored.row.ended_reason}",)
+    if stored.row.paused_reason:
+        return (f"the course is paused: {stored.row.paused_reason}",)
     due = stored.progress
     if len(set(due.begun_at.values())) > 1:
         apart = _each(due.begun_at)

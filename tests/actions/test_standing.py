@@ -20,6 +20,7 @@ from department import (
 from program import SCENARIO
 
 from featherlog.actions.confirm import ReadBack, confirm
+from featherlog.actions.course_life import end, pause, release
 from featherlog.actions.designs import approve, check, prepare
 from featherlog.actions.desk import practice_time
 from featherlog.actions.today import today
@@ -131,3 +132,19 @@ def test_a_broken_beam_says_what_is_left_of_this_step(department: Program) -> No
     left = beams["PA lower"]
     assert (left.planned_mu, left.delivered_mu, left.to_deliver_mu) == (112.0, 40.0, 72.0)
     assert beams["AP upper"].to_deliver_mu == 0.0
+
+
+def test_a_paused_course_stops_and_goes_on_when_released(department: Program) -> None:
+    with practice_time(moment("2026-03-02")):
+        pause(department.database, THIGH, by=by(THERAPIST), reason="fever")
+    view = _view(department, "2026-03-02")
+    assert (view.status, view.stop_reasons) == ("stop", ("the course is paused: fever",))
+    with practice_time(moment("2026-03-03")):
+        release(department.database, THIGH, by=by(PHYSICIAN), reason="well again")
+    assert _view(department, "2026-03-03").status == "ready"
+
+
+def test_an_ended_course_stops(department: Program) -> None:
+    with practice_time(moment("2026-03-02")):
+        end(department.database, THIGH, by=by(PHYSICIAN), reason="patient's wish")
+    assert _view(department, "2026-03-03").stop_reasons == ("the course was ended: patient's wish",)
