@@ -9,6 +9,7 @@ import numpy as np
 
 from featherlog.junction.design import Angles, Technique
 from featherlog.junction.hand_check import JAW_RULE, hand_checks
+from featherlog.junction.pairs import worst as worst_of
 from featherlog.junction.rounding import to_step
 from featherlog.sequence.pattern import evener_blocks, weighted_shares
 from featherlog.words import figure
@@ -18,7 +19,7 @@ if TYPE_CHECKING:
 
     from featherlog.junction.design import Course, Junction
     from featherlog.junction.machine import Machine
-    from featherlog.junction.plan import BeamSetting, PlannedFraction, PositionSettings
+    from featherlog.junction.plan import BeamSetting, Mismatch, PlannedFraction, PositionSettings
 
 
 def warnings(
@@ -146,8 +147,8 @@ def _residual(
         if junction.technique is Technique.SKIN_GAP:
             # Off the match depth a gap or overlap belongs to the technique.
             places = tuple(place for place in places if place.place == "match depth")
-        worst = max(places, key=lambda place: abs(place.rounded_cm - junction.separation_cm))
-        residual = worst.rounded_cm - junction.separation_cm
+        left = [(_left_over(place, junction.separation_cm), place) for place in places]
+        residual, worst = max(left, key=lambda pair: abs(pair[0]))
         if abs(residual) > machine.tolerances.jaw_cm + 1e-9:
             what = "gap" if residual > 0 else "overlap"
             beyond = " beyond the planned separation" if junction.separation_cm else ""
@@ -158,6 +159,15 @@ def _residual(
                 f"{worst.y_cm:+.1f}), more than the jaw tolerance of "
                 f"{machine.tolerances.jaw_cm:.2f} cm"
             )
+
+
+def _left_over(place: Mismatch, separation_cm: float) -> float:
+    """Return the mismatch beyond the planned separation (cm), of the pair of beams it is worst for.
+
+    The pair farthest from a match need not be the one farthest from what was planned.
+    """
+    found = (place.rounded_cm, place.least_cm, place.most_cm)
+    return worst_of(value - separation_cm for value in found if value is not None)
 
 
 def _same_settings(course: Course, settings: Sequence[PositionSettings]) -> Iterator[str]:

@@ -149,6 +149,21 @@ def test_a_beam_turned_onto_an_old_edge_shares_its_plane() -> None:
         assert place.exact_cm == pytest.approx(0.0, abs=1e-9)
 
 
+def test_a_beam_turned_onto_one_of_two_old_beams_meets_it_at_that_edge() -> None:
+    between = junction("J", (0, 0, 0), 5.0, turned_field="NEW", matched_beam="old back")
+    old = (beam("old front", 0, (0, -1, 7.3)), beam("old back", 180, (0, -1, 7.3)))
+    of = course(
+        HFS,
+        (field("OLD", *old, earlier=GIVEN), field("NEW", beam("left", 90, (0, -8, -11)))),
+        (between,),
+        (reach(12.0), reach(12.0)),
+    )
+    (settings,) = solve(of, machine())
+    z = settings.junction("J").match_point_cm[2]
+    assert z == pytest.approx(old_edge_z(-5.0))
+    assert settings.fields[1].beams[0].superior_edge.z_at(0, -5) == pytest.approx(z, abs=1e-5)
+
+
 def test_its_dose_counts_once_and_it_is_never_due() -> None:
     between = replace(BETWEEN, technique=Technique.HALF_BEAM)
     plan = plan_course(against(between, 0.0, -1.0), machine())

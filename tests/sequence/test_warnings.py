@@ -216,6 +216,24 @@ def test_what_is_left_beside_a_planned_separation_is_named_as_such() -> None:
     assert any("cm beyond the planned separation at entrance skin" in each for each in found)
 
 
+def test_a_pair_short_of_the_planned_gap_is_not_hidden_by_one_that_keeps_it() -> None:
+    # Jaws at -2 and -2.4 cm, seen 4 cm past the isocentre and 4 cm before it: a gap of 0.22 cm,
+    # while the edges of the other pair keep 0.42.
+    half = junction(
+        "J",
+        (0, 0, 0),
+        4.0,
+        technique=Technique.HALF_BEAM,
+        lateral_limits_cm=(0, 0),
+        separation_cm=0.4,
+        borne_by="LOWER",
+    )
+    lower = [beam("l front", 0, (0, -4, 0)), beam("l back", 180, (0, -4, 0), ssd_cm=96.0)]
+    found = said(pair([beam("u", 0, (0, -4, 0))], lower, half, offsets_cm=(0.0, -2.0)))
+    (about,) = [each for each in found if "position B" in each and "tolerance" in each]
+    assert "overlap of 0.18 cm beyond the planned separation at entrance skin" in about
+
+
 def test_shares_of_split_fractions_are_counted_in_parts() -> None:
     even = replace(sequence(Pattern.SPLIT, "AB", None), weights=(1.0, 1.0))
     of = two_fields(BETWEEN, 0.0, -1.0)
