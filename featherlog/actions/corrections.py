@@ -7,17 +7,16 @@ from datetime import datetime
 from typing import TYPE_CHECKING, Any
 
 from featherlog import words
+from featherlog.actions.account import account_of, content_of, nothing_of
 from featherlog.actions.confirm import measured
 from featherlog.actions.delivered import (
     Delivery,
     Occasion,
-    account_of,
     check_number,
-    content_of,
     moment_of,
-    nothing_of,
     with_deliveries,
 )
+from featherlog.actions.desk import at_desk
 from featherlog.actions.record import (
     Recorded,
     confirmed_position,
@@ -100,6 +99,13 @@ def correct(
             meaning=f"We correct entry {number}, the record of fraction {old.content['fraction']}",
         )
     return recorded_of(entry.number, occasion, account, explained=True)
+
+
+def list_corrections(database: str | None, key: str) -> tuple[CorrectionLine, ...]:
+    """Return every correction of a course's records; NotFoundError where there is no course."""
+    with at_desk(database) as desk:
+        load(desk, key)
+        return corrections(desk, key)
 
 
 def corrections(desk: Desk, key: str) -> tuple[CorrectionLine, ...]:

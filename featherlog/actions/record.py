@@ -6,13 +6,11 @@ from dataclasses import dataclass
 from datetime import datetime
 from typing import TYPE_CHECKING
 
+from featherlog.actions.account import Account, account_of, content_of
 from featherlog.actions.delivered import (
-    Account,
     Delivery,
     Occasion,
-    account_of,
     check_number,
-    content_of,
     last_number,
     moment_of,
     with_deliveries,

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import Annotated
+from typing import TYPE_CHECKING, Annotated
 
 import typer
 
@@ -30,6 +30,9 @@ from featherlog.cli.options import (
 )
 from featherlog.cli.output import show, show_json, wrapped
 from featherlog.cli.physicist import course_app
+
+if TYPE_CHECKING:
+    from featherlog.actions.corrections import CorrectionLine
 
 
 def correct(
@@ -89,6 +92,24 @@ def correct(
     show(
         wrapped(f"Fraction {result.fraction} was not delivered.") if void else recorded_text(result)
     )
+
+
+def corrections(course: CourseKey, json: Json = False, database: Database = None) -> None:
+    """List the corrected records of a course, both versions of each.
+
+    \b
+    Example: featherlog corrections FH-2041
+    """
+    from featherlog.actions.corrections import list_corrections
+
+    lines = list_corrections(database, course)
+    show_json(lines) if json else show("\n".join(map(_correction, lines)) or "No corrections.")
+
+
+def _correction(line: CorrectionLine) -> str:
+    what = f"Entry {line.entry} corrects entry {line.corrects}: {line.reason}. {line.at}"
+    said = (f"{what}, {' and '.join(line.who)}.", f"Was: {line.was}.", f"Is: {line.became}.")
+    return "\n".join(wrapped(text) for text in said)
 
 
 @course_app.command()
@@ -213,3 +234,4 @@ def machine(
 def register(app: typer.Typer) -> None:
     """Put these commands on the program."""
     app.command()(correct)
+    app.command()(corrections)

@@ -31,6 +31,7 @@ READING = [
     ("today",),
     ("today", THIGH),
     ("departures", THIGH),
+    ("corrections", THIGH),
     ("events", THIGH),
     ("review", THIGH),
     ("dose", THIGH),
@@ -109,7 +110,7 @@ def test_no_command_asks_back() -> None:
 def test_every_reading_command_is_known_here() -> None:
     known = {path for path in LEAVES if any(words[: len(path)] == path for words in READING)}
     with_json = {path for path in LEAVES if any("--json" in p.opts for p in ALL[path].params)}
-    assert with_json == known | {("confirm",), ("record",), ("table", "read")}
+    assert with_json == known | {("confirm",), ("record",), ("correct",), ("table", "read")}
 
 
 @pytest.mark.parametrize("words", READING, ids=lambda words: " ".join(words[:2]))
