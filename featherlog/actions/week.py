@@ -174,4 +174,5 @@ def _unsigned(sign_offs: tuple[SignOffLine, ...]) -> Iterator[str]:
     for line in sign_offs:
         if line.role in _MUST_SIGN and line.entries_since:
             since = f"since {line.at[:10]}" if line.at else "and no earlier one"
-            yield f"sign-off by a {line.role}: {line.entries_since} entries {since}"
+            entries = "1 entry" if line.entries_since == 1 else f"{line.entries_since} entries"
+            yield f"sign-off by a {line.role}: {entries} {since}"

@@ -108,7 +108,8 @@ def break_words(pause: BreakLine) -> str:
 
 def sign_off_words(line: SignOffLine) -> str:
     """Say who of a role signed last, and how much came after."""
-    return f"{line.role} {line.who}, {line.at}, {line.entries_since} entries since"
+    since = "1 entry" if line.entries_since == 1 else f"{line.entries_since} entries"
+    return f"{line.role} {line.who}, {line.at}, {since} since"
 
 
 def week_words(week: WeekView) -> Iterator[str]:

@@ -110,7 +110,13 @@ def test_no_command_asks_back() -> None:
 def test_every_reading_command_is_known_here() -> None:
     known = {path for path in LEAVES if any(words[: len(path)] == path for words in READING)}
     with_json = {path for path in LEAVES if any("--json" in p.opts for p in ALL[path].params)}
-    assert with_json == known | {("confirm",), ("record",), ("correct",), ("table", "read")}
+    assert with_json == known | {
+        ("confirm",),
+        ("record",),
+        ("correct",),
+        ("table", "read"),
+        ("sheet-check",),
+    }
 
 
 @pytest.mark.parametrize("words", READING, ids=lambda words: " ".join(words[:2]))
