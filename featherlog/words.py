@@ -151,19 +151,25 @@ def table_move(
     return tuple(lines)
 
 
-def jaw_move(jaw: str, change_cm: float, end: str | None) -> str:
+# An edge that moves less than this part of its jaw's own move stays where it was, but for rounding.
+_STAYS = 0.3
+
+
+def jaw_move(jaw: str, change_cm: float, edge_cm: float | None) -> str:
     """Say how a jaw moves: opens or closes, by how much, and which way its edge goes.
 
-    ``end`` is superior or inferior for a jaw that forms an end of the field, None for a side jaw.
-    X1 and Y1 open toward negative positions, X2 and Y2 toward positive ones (IEC 61217).
+    ``edge_cm`` is how far the edge moves in the patient (+ toward the head), table move included;
+    None for a side jaw. X1 and Y1 open toward negative positions, X2 and Y2 toward positive ones
+    (IEC 61217).
     """
     if abs(change_cm) < STILL_CM:
         return ""
     outward = change_cm if jaw.endswith("2") else -change_cm
     what = f"{'opens' if outward > 0 else 'closes'} {figure(abs(change_cm))} cm"
-    if end is None:
+    if edge_cm is None:
         return what
-    return f"{what}, {toward(outward if end == 'superior' else -outward)}"
+    stays = abs(edge_cm) < _STAYS * abs(change_cm)
+    return f"{what}, {'its edge stays in the patient' if stays else toward(edge_cm)}"
 
 
 def console_value(name: str, value: float) -> str:

@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING
 
 from featherlog import words
 from featherlog.junction.display import shown_angle, shown_jaw
+from featherlog.junction.edges import edge_move_cm
 from featherlog.junction.points import point_at_depth
 from featherlog.views.day import (
     BeamView,
@@ -297,7 +298,8 @@ def _jaw_view(beam: BeamSetting, jaw: Jaw, last: BeamSetting | None) -> JawView:
     ends = {beam.superior_jaw: "superior", beam.inferior_jaw: "inferior"}
     value = beam.jaw_cm[jaw]
     previous = last.jaw_cm[jaw] if last else None
-    move = "" if previous is None else words.jaw_move(jaw, value - previous, ends.get(jaw))
+    edge = edge_move_cm(beam, last, ends[jaw]) if last and jaw in ends else None
+    move = "" if previous is None else words.jaw_move(jaw, value - previous, edge)
     by = beam.edges_by if jaw in ends else "jaws"
     return JawView(jaw.value, ends.get(jaw, "side"), by, value, previous, move)
 

@@ -107,13 +107,19 @@ def _status(stored: Stored, reasons: tuple[str, ...]) -> str:
 
 def stop_reasons(stored: Stored) -> tuple[str, ...]:
     """Return why the next fraction may not be treated as things stand; empty when it may."""
+    return _course_stops(stored) or _fraction_stops(stored)
+
+
+def _course_stops(stored: Stored) -> tuple[str, ...]:
+    row, revision = stored.row, stored.revision
     if not stored.approved:
-        revision = stored.revision
         return (f"revision {revision.number} of this design is {revision.state}, not approved",)
-    if stored.row.ended_reason:
-        return (f"the course was ended: {stored.row.ended_reason}",)
-    if stored.row.paused_reason:
-        return (f"the course is paused: {stored.row.paused_reason}",)
+    if row.ended_reason:
+        return (f"the course was ended: {row.ended_reason}",)
+    return (f"the course is paused: {row.paused_reason}",) if row.paused_reason else ()
+
+
+def _fraction_stops(stored: Stored) -> tuple[str, ...]:
     due = stored.progress
     if len(set(due.begun_at.values())) > 1:
         apart = _each(due.begun_at)

@@ -124,6 +124,8 @@ def test_each_field_has_one_table_order_that_says_what_changed(department: Progr
     assert upper.orders == ()
     move = "TABLE moves 30.0 cm toward the gantry (longitudinal +30.0 cm, CHANGED, was +29.0)"
     assert lower.orders == (f"{move} from upper thigh",)
+    [border] = [jaw for jaw in lower.beams[0].jaws if jaw.jaw == "Y1"]
+    assert border.words == "closes 1.0 cm, its edge stays in the patient"
 
 
 def test_a_broken_beam_says_what_is_left_of_this_step(department: Program) -> None:

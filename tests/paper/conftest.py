@@ -62,7 +62,8 @@ def move(lateral: float = 0.0, longitudinal: float = 0.0, vertical: float = 0.0)
 
 
 def jaws(superior: float, inferior: float, was_inferior: float | None) -> tuple[JawView, ...]:
-    words = "" if was_inferior is None else jaw_move("Y1", inferior - was_inferior, "inferior")
+    change = 0.0 if was_inferior is None else inferior - was_inferior
+    words = jaw_move("Y1", change, change)
     return (
         JawView("Y2", "superior", "jaws", superior, None if was_inferior is None else superior, ""),
         JawView("Y1", "inferior", "jaws", inferior, was_inferior, words),
