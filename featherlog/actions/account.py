@@ -79,15 +79,14 @@ def content_of(
 ) -> dict[str, Any]:
     """Return an account as the ledger keeps it; ``reasons`` explain kinds of departure."""
     after = account.after
-    gaps = measured(occasion.before, delivery.gaps_cm).items() if account.beams else ()
+    given = bool(account.beams)
+    gaps = measured(occasion.before, delivery.gaps_cm).items() if given else ()
+    tables = delivery.table_cm.items() if given else ()
     return {
         "fraction": occasion.fraction,
         "beams": [_without(asdict(beam), "fraction") for beam in account.beams],
         "gaps": [{"junction": name, "side": side, "gap_cm": gap} for (name, side), gap in gaps],
-        "tables": [
-            {"field": name, "longitudinal_cm": reading}
-            for name, reading in delivery.table_cm.items()
-        ],
+        "tables": [{"field": name, "longitudinal_cm": at} for name, at in tables],
         "departures": [
             {**asdict(departure), "reason": reasons.get(departure.kind, "")}
             for departure in account.departures

@@ -82,11 +82,12 @@ def correct(
         rows = [row for row in stored.deliveries if row.entry == number]
         occasion = _occasion(desk, stored, old, rows, delivery)
         whole = _completed(occasion, old, rows, delivery)
+        reasons = _reasons(desk, key, number)
         account = nothing_of(desk, occasion) if void else account_of(desk, whole, occasion)
         entry = desk.append(
             Kind.RECORD_CORRECTED,
             {
-                **content_of(occasion, whole, account, _reasons(desk, key, number)),
+                **content_of(occasion, whole, account, reasons),
                 "performer": by.name,
                 "verifier": verified_by.name,
                 "treated_by": [rows[0].performer, rows[0].verifier],
@@ -98,7 +99,8 @@ def correct(
             course=key,
             meaning=f"We correct entry {number}, the record of fraction {old.content['fraction']}",
         )
-    return recorded_of(entry.number, occasion, account, explained=True)
+    explained = all(departure.kind in reasons for departure in account.departures)
+    return recorded_of(entry.number, occasion, account, explained=explained)
 
 
 def list_corrections(database: str | None, key: str) -> tuple[CorrectionLine, ...]:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from datetime import datetime
 from typing import TYPE_CHECKING
 
 import msgspec
@@ -102,10 +103,16 @@ def _stored(desk: Desk, row: CourseRow, revision: RevisionRow) -> Stored:
 def _in_treatment_order(plan: Plan, rows: tuple[DeliveryRow, ...]) -> tuple[DeliveryRow, ...]:
     """Return deliveries by when they were treated, the beams of one record in field order.
 
-    The database knows no order within a record, and names sort otherwise than people treat.
+    A late entry or a correction belongs where it was treated. The database knows no order within a
+    record, and names sort otherwise than people treat.
     """
     beams = [beam.beam for one in plan.positions[0].fields for beam in one.beams]
-    return tuple(sorted(rows, key=lambda row: (row.entry, beams.index(row.beam))))
+    return tuple(
+        sorted(
+            rows,
+            key=lambda row: (datetime.fromisoformat(row.at), row.entry, beams.index(row.beam)),
+        )
+    )
 
 
 def delivered_beams(rows: Iterable[DeliveryRow]) -> list[DeliveredBeam]:

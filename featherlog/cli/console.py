@@ -107,6 +107,15 @@ def confirm(
     page: Annotated[
         str | None, typer.Option("--sheet", metavar="CODE", help="The code on the sheet in hand.")
     ] = None,
+    reading: Annotated[
+        list[str] | None,
+        typer.Option(
+            "--reading",
+            metavar="NAME=CM",
+            help="A value read back, IEC 61217: BEAM:JAW, such as 'AP upper:Y1=-14', or "
+            "FIELD:longitudinal.",
+        ),
+    ] = None,
     gap: Gaps = None,
     json: Json = False,
     database: Database = None,
@@ -121,7 +130,12 @@ def confirm(
     from featherlog.cli.passphrases import second, signer
     from featherlog.cli.show_day import confirmed_text
 
-    read_back = ReadBack(position, page, named_numbers(gap, "--gap", "cm"))
+    read_back = ReadBack(
+        position=position,
+        page=page,
+        gaps_cm=named_numbers(gap, "--gap", "cm"),
+        readings_cm=named_numbers(reading, "--reading", "cm"),
+    )
     performer, verifier = signer(by, passphrase_file), second(verified_by, second_file)
     view = action(database, course, by=performer, verified_by=verifier, read_back=read_back)
     show_json(view) if json else show(confirmed_text(view))
@@ -174,6 +188,11 @@ def record(
     show_json(result) if json else show(recorded_text(result))
     if told.reason and not result.departures:
         remark("Nothing differs from the plan, so the reason was not kept.")
+    remark_unexplained(course, result)
+
+
+def remark_unexplained(course: str, result: Recorded) -> None:
+    """Say how to give the reason for what differs, where it is not given yet."""
     if result.departures and not result.explained:
         remark(
             wrapped(

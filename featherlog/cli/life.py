@@ -67,7 +67,7 @@ def correct(
     Example: featherlog correct FH-2041 9 --void --reason slip --by "Ash Plover" --with "Maple Teal"
     """
     from featherlog.actions.corrections import correct as action
-    from featherlog.cli.console import recorded_text
+    from featherlog.cli.console import recorded_text, remark_unexplained
     from featherlog.cli.passphrases import second, signer
 
     told = delivery(
@@ -89,9 +89,8 @@ def correct(
         show_json(result)
         return
     show(f"Entry {result.entry} stands in place of entry {entry}.")
-    show(
-        wrapped(f"Fraction {result.fraction} was not delivered.") if void else recorded_text(result)
-    )
+    show(f"Fraction {result.fraction} was not delivered." if void else recorded_text(result))
+    remark_unexplained(course, result)
 
 
 def corrections(course: CourseKey, json: Json = False, database: Database = None) -> None:

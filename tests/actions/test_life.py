@@ -261,6 +261,14 @@ class TestCorrection:
         assert kinds(again) == ["other position", "meterset short"]
         assert (again.next_fraction, again.next_position) == (2, "A")
 
+    def test_a_corrected_beginning_stays_the_beginning(self, department: Program) -> None:
+        part = {"AP upper": 50.0}
+        first = treated(department.database, THIGH, "2026-03-02", position="B", metersets_mu=part)
+        recorded(department.database, THIGH, "2026-03-02T11:00", position="B")
+        corrected(department, first.entry, position="C")
+        state = now(department).states[1]
+        assert (state.began_at, state.last_position["upper thigh"]) == ("C", "B")
+
     def test_the_departures_of_the_wrong_version_are_closed(self, department: Program) -> None:
         wrong = treated(department.database, THIGH, "2026-03-02", position="B")
         assert now(department).row.open_departures == 1
