@@ -155,6 +155,15 @@ def table_move(
 _STAYS = 0.3
 
 
+def table_target(table_cm: tuple[float, float, float]) -> str:
+    """Say where the table must stand, absolute read-outs with their IEC 61217 signs."""
+    places = [
+        f"{axis} {signed(value)}"
+        for (axis, _, _), value in zip(_TABLE_WORDS, table_cm, strict=True)
+    ]
+    return f"TABLE to {', '.join(places)} cm"
+
+
 def jaw_move(jaw: str, change_cm: float, edge_cm: float | None) -> str:
     """Say how a jaw moves: opens or closes, by how much, and which way its edge goes.
 

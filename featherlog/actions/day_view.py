@@ -9,6 +9,7 @@ from itertools import pairwise
 from typing import TYPE_CHECKING
 
 from featherlog import words
+from featherlog.actions.table_reference import place_cm
 from featherlog.junction.display import shown_angle, shown_jaw
 from featherlog.junction.edges import edge_move_cm
 from featherlog.junction.points import point_at_depth
@@ -21,6 +22,7 @@ from featherlog.views.day import (
     JunctionView,
     SideView,
     TableMoveView,
+    TableTargetView,
 )
 
 if TYPE_CHECKING:
@@ -80,25 +82,29 @@ def field_views(
     due: Progress,
     parts: Mapping[str, float],
     display: DisplayScale | None,
+    *,
+    targets_cm: Mapping[str, Triple],
 ) -> tuple[FieldView, ...]:
     """Return every field's settings, with what changed since each field was treated last.
 
     ``parts`` is the part of each beam's meterset already given in this fraction. ``display`` is the
-    console's own scale, if it has one.
+    console's own scale, if it has one. ``targets_cm`` is where the table must stand for each field,
+    empty while that is not known.
     """
     return tuple(
-        _field_view(now, index, before, _Given(due, parts, display))
+        _field_view(now, index, before, _Given(due, parts, display, targets_cm))
         for index in range(len(now.treated))
     )
 
 
 @dataclass(frozen=True, slots=True)
 class _Given:
-    """What the beams of a step have had and are due, and how their console shows values."""
+    """What the beams of a step have had and are due, and what their console and table show."""
 
     due: Progress
     parts: Mapping[str, float]
     display: DisplayScale | None
+    targets_cm: Mapping[str, Triple]
 
 
 def _field_view(now: PositionSettings, index: int, before: Standing, given: _Given) -> FieldView:
@@ -130,7 +136,12 @@ def _field_view(now: PositionSettings, index: int, before: Standing, given: _Giv
         orders=orders,
         notes=notes,
         beams=tuple(_beam_view(beam, before.of(field.field), given) for beam in field.beams),
+        target=_target(given.targets_cm.get(field.field)),
     )
+
+
+def _target(target_cm: Triple | None) -> TableTargetView | None:
+    return TableTargetView(*target_cm, words.table_target(target_cm)) if target_cm else None
 
 
 def _orders(
@@ -201,17 +212,11 @@ def _label(before: Standing, field: str) -> str:
     return position.label if position else ""
 
 
-def _place(position: PositionSettings, field: str) -> Triple:
-    """Return where the table has a field, against the first field's place at position A (cm)."""
-    setting = next(one for one in position.fields if one.field == field)
-    return _sum(setting.table_from_first_field_cm, position.fields[0].table_from_a_cm)
-
-
 def _since(now: PositionSettings, field: FieldSetting, before: Standing) -> Triple:
     position = before.positions.get(field.field)
     if position is None:
         return (0.0, 0.0, 0.0)
-    return _difference(_place(now, field.field), _place(position, field.field))
+    return _difference(place_cm(now, field.field), place_cm(position, field.field))
 
 
 def _between(now: PositionSettings, index: int) -> TableMoveView | None:
@@ -219,7 +224,7 @@ def _between(now: PositionSettings, index: int) -> TableMoveView | None:
     if index == 0:
         return None
     field, other = now.treated[index], now.treated[index - 1]
-    return _table_move(_difference(_place(now, field.field), _place(now, other.field)), field)
+    return _table_move(_difference(place_cm(now, field.field), place_cm(now, other.field)), field)
 
 
 def _between_before(now: PositionSettings, index: int, before: Standing) -> TableMoveView | None:
@@ -228,14 +233,9 @@ def _between_before(now: PositionSettings, index: int, before: Standing) -> Tabl
     if index == 0 or not {field, other} <= set(before.positions):
         return None
     move = _difference(
-        _place(before.positions[field], field), _place(before.positions[other], other)
+        place_cm(before.positions[field], field), place_cm(before.positions[other], other)
     )
     return TableMoveView(*move, ())
-
-
-def _sum(one: Triple, other: Triple) -> Triple:
-    x, y, z = (a + b for a, b in zip(one, other, strict=True))
-    return (x, y, z)
 
 
 def _difference(one: Triple, other: Triple) -> Triple:

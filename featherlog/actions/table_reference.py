@@ -77,6 +77,15 @@ def table_reference(events: Iterable[EventRow], revision: int) -> TableReference
     )
 
 
+def targets_cm(
+    plan: Plan, reading: TableReading | None, now: PositionSettings
+) -> dict[str, Triple]:
+    """Return where the table must stand (cm) for every field at a position; empty without one."""
+    if reading is None:
+        return {}
+    return {one.field: target_cm(plan, reading, now, one.field) for one in now.treated}
+
+
 def target_cm(plan: Plan, reading: TableReading, now: PositionSettings, field: str) -> Triple:
     """Return where the table must stand (cm) for a field at a position."""
     there = place_cm(plan.position(reading.position), reading.field)

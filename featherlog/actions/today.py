@@ -8,7 +8,9 @@ from typing import TYPE_CHECKING
 from featherlog import words
 from featherlog.actions.day_view import field_views, junction_views, page_code, standing
 from featherlog.actions.desk import Desk, at_desk
+from featherlog.actions.events import raised_risk
 from featherlog.actions.stored import Stored, departure_lines, load
+from featherlog.actions.table_reference import table_reference, targets_cm
 from featherlog.errors import InputError, NotFoundError
 from featherlog.sequence.calendar import project_dates
 from featherlog.sequence.gate import unequal_sides
@@ -43,7 +45,7 @@ def due_list(database: str | None, *, day: str | None, machine: str | None) -> D
             raise NotFoundError(f"there is no machine {machine!r}; see `featherlog machine list`")
         on = _date(day) if day else desk.now.date()
         rows = [row for row in queries.due(desk.connection, machine) if _is_due(row, on)]
-        lines = tuple(_due_line(load(desk, row.key), on) for row in rows)
+        lines = tuple(_due_line(desk, load(desk, row.key), on) for row in rows)
         return DueList(on.isoformat(), machine or "", lines, desk.demo, words.CAUTION)
 
 
@@ -53,6 +55,8 @@ def day_view(desk: Desk, stored: Stored) -> DayView:
         row for row in queries.departures(desk.connection, stored.row.key) if row.status == "open"
     ]
     head = ledger.head(desk.connection)
+    events = queries.events(desk.connection, stored.row.key)
+    reference = table_reference(events, stored.revision.number)
     number = stored.progress.next_fraction or stored.plan.fractions[-1].number
     position = stored.progress.position or ""
     planned = stored.plan.fraction(number)
@@ -84,10 +88,11 @@ def day_view(desk: Desk, stored: Stored) -> DayView:
             stored.progress,
             state.parts if state else {},
             stored.machine.display,
+            targets_cm=targets_cm(stored.plan, reference.reading, now),
         )
         if now
         else (),
-        table_reference=words.RELATIVE_ONLY,
+        table_reference=reference.words,
         open_departures=departure_lines(departures),
         next_shift=next_shift(stored, desk.now.date()),
         page_code=page_code(
@@ -96,6 +101,10 @@ def day_view(desk: Desk, stored: Stored) -> DayView:
         ledger_head=f"{head.number}:{head.hash[:12]}" if head else "",
         printed_at=desk.stamp,
         caution=words.CAUTION,
+        call=words.stop_and_call(words.PHYSICIST, desk.policy.contacts.physicist)
+        if reasons
+        else "",
+        raised_risk=raised_risk(events),
     )
 
 
@@ -195,7 +204,7 @@ def _is_due(row: CourseRow, on: date) -> bool:
     return row.next_date is not None and date.fromisoformat(row.next_date) <= on
 
 
-def _due_line(stored: Stored, on: date) -> DueLine:
+def _due_line(desk: Desk, stored: Stored, on: date) -> DueLine:
     row, progress = stored.row, stored.progress
     position, number = progress.position or "", progress.next_fraction or 0
     last = last_positions(stored.plan, stored.states, progress)
@@ -205,6 +214,7 @@ def _due_line(stored: Stored, on: date) -> DueLine:
         attention.append(f"fraction {number} part delivered: finish it at {position}")
     if stop_reasons(stored):
         attention.insert(0, "STOP: see this course")
+    attention += raised_risk(queries.events(desk.connection, row.key))
     return DueLine(
         course=row.key,
         patient_name=row.patient_name,

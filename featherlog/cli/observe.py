@@ -34,7 +34,8 @@ note_app = typer.Typer(
     help="Note what happens around the treatment and is no departure.",
     no_args_is_help=True,
     rich_markup_mode=None,
-    epilog='\b\nExample: featherlog note imager-out FH-2041 --reason "tube fault" --by "Ash Plover"',
+    epilog='\b\nExample: featherlog note imager-out FH-2041 --reason "tube fault" '
+    '--by "Ash Plover"',
 )
 
 Field = Annotated[str, typer.Option("--field", metavar="NAME", help="The field.")]

@@ -43,13 +43,14 @@ def _day(view: DayView) -> Iterator[str]:
     else:
         yield from _settings(view)
     yield from _departures(view)
+    yield from (wrapped(f"RAISED RISK: {risk}.") for risk in view.raised_risk)
     yield rule()
     yield f"sheet code {view.page_code}   ledger {view.ledger_head}   {view.printed_at}"
     yield wrapped(view.caution)
 
 
 def _stop(view: DayView) -> Iterator[str]:
-    yield words.STOP_AND_CALL
+    yield wrapped(view.call)
     for reason in view.stop_reasons:
         yield wrapped(f"Reason: {reason}.")
 
@@ -98,6 +99,8 @@ def _field(field: FieldView) -> Iterator[str]:
     yield f"{field.field.upper()}   (moved by its {field.moved_by})"
     yield from (wrapped(order, "  ") for order in field.orders)
     yield from (wrapped(f"({note})", "  ") for note in field.notes)
+    if field.target:
+        yield wrapped(field.target.words, "  ")
     for beam in field.beams:
         yield from _beam(beam)
 

@@ -9,7 +9,7 @@ from featherlog.paper.fonts import safe, strong
 from featherlog.paper.ink import label_width
 from featherlog.paper.layout import space
 from featherlog.paper.style import display, grid, para, shares
-from featherlog.words import STOP_AND_CALL, figure
+from featherlog.words import figure
 
 if TYPE_CHECKING:
     from reportlab.platypus import Flowable, Table
@@ -126,7 +126,7 @@ def stop_page(view: DayView, width: float) -> list[Flowable]:
     body: list[Flowable] = [
         stop,
         space(14),
-        para(safe(STOP_AND_CALL), display(24)),
+        para(safe(view.call), display(24)),
         space(8),
         para(safe(f"Fraction {view.fraction} of {view.fractions}"), display(16)),
         space(12),

@@ -120,6 +120,7 @@ def _field_line(field: FieldView) -> list[Any]:
     return [
         para(join("  ·  ", facts), _FIELD_LINE),
         *(para(join(" ", [safe(TICK), strong(order)])) for order in field.orders),
+        *([para(join(" ", [safe(TICK), strong(field.target.words)]))] if field.target else []),
     ]
 
 

@@ -81,7 +81,7 @@ def _furniture(view: DayView) -> Furniture:
 def _closed(view: DayView, width: float) -> list[Flowable]:
     body = stop_page(view, width) if view.status == "stop" else [complete_box(view, width)]
     open_matters = _open_matters(view.open_departures) if view.open_departures else []
-    return [*body, space(14), *open_matters]
+    return [*body, space(14), *open_matters, *_raised_risk(view)]
 
 
 def _sheet(
@@ -92,7 +92,8 @@ def _sheet(
         body += [locked_banner(view, width), space(5)]
     body += [settings_table(view, width, padding), *_table_reference(view), space(4)]
     body += [*junction_blocks(view, width, diagram_height), space(4)]
-    body += [*_open_matters(view.open_departures), space(4), _sign_off(width)]
+    body += [*_open_matters(view.open_departures), *_raised_risk(view)]
+    body += [space(4), _sign_off(width)]
     if diagram_height is None:
         body += [PageBreak(), *diagrams(view, width, _ALONE_HEIGHT_PT)]
     return body
@@ -108,6 +109,10 @@ def _open_matters(departures: tuple[DepartureLine, ...]) -> list[Flowable]:
     if not departures:
         return [para(join(" ", [strong("Open matters:"), safe("none")]))]
     return [para(strong("Open matters"), style.LEAD), *map(departure_line, departures)]
+
+
+def _raised_risk(view: DayView) -> list[Flowable]:
+    return [para(join(" ", [strong("Raised risk:"), safe(risk)])) for risk in view.raised_risk]
 
 
 def _sign_off(width: float) -> Table:

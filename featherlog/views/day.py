@@ -63,6 +63,16 @@ class TableMoveView:
 
 
 @dataclass(frozen=True, slots=True)
+class TableTargetView:
+    """Where the table must stand (IEC 61217), in figures and in words."""
+
+    lateral_cm: float
+    longitudinal_cm: float
+    vertical_cm: float
+    words: str
+
+
+@dataclass(frozen=True, slots=True)
 class FieldView:
     """One field to set.
 
@@ -72,7 +82,8 @@ class FieldView:
     fields ``since_last`` only explains, it is part of the move already. ``previous_position`` is
     where the field stood last, empty at the first fraction; ``begun`` is true when it was treated
     already in this fraction and nothing of it moves. ``orders`` say in words what to do with the
-    table, each once, and ``notes`` explain.
+    table, each once, and ``notes`` explain. ``target`` is where the table must then stand, None
+    while moves are relative only.
     """
 
     field: str
@@ -85,6 +96,7 @@ class FieldView:
     orders: tuple[str, ...]
     notes: tuple[str, ...]
     beams: tuple[BeamView, ...]
+    target: TableTargetView | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -159,7 +171,9 @@ class DayView:
     stood apart it names each. ``step`` of ``steps`` counts the positions of a fraction that is
     split over several.
     ``part_delivered`` is true when this fraction was begun and its remainder is locked to
-    ``position``. ``page_code`` names this page's state of the course.
+    ``position``. ``table_reference`` says what absolute table targets rest on, or why there are
+    none. ``page_code`` names this page's state of the course. ``call`` says whom to call where the
+    day stops, ``raised_risk`` what makes a mistake more likely to go unseen.
     """
 
     heading: Heading
@@ -186,6 +200,8 @@ class DayView:
     ledger_head: str
     printed_at: str
     caution: str
+    call: str = ""
+    raised_risk: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)

@@ -202,7 +202,7 @@ def _at_the_end(clinic: Clinic) -> None:
     refused = clinic.confirm()
     assert (refused.code, refused.fault) == (
         4,
-        "all 15 prescribed fractions are complete. STOP. Do not treat. Call the physicist.",
+        "all 15 prescribed fractions are complete. STOP. Do not treat. Call the physician.",
     )
     assert "None." in program.must("today")
     _departures_are_told(clinic)

@@ -271,6 +271,8 @@ def stop_day(shift_day: DayView) -> DayView:
     return replace(
         shift_day,
         status="stop",
+        call="STOP. Do not treat. Call the physicist: telephone 4711.",
+        raised_risk=("imager out since 2031-03-09T16:00:00+01:00 (tube fault)",),
         stop_reasons=(
             "Fraction 5 is incomplete on field Upper spine. Call the physicist, Hazel Wren.",
             "The sequence was superseded by revision 3, which is not approved.",

@@ -11,10 +11,10 @@ from pypdf import PdfReader
 from featherlog.errors import InputError
 from featherlog.paper.shift_sheet import shift_sheet
 from featherlog.paper.style import MARGIN_PT, PAGE_SIZES, SMALLEST_PT
+from featherlog.views.day import TableTargetView
 from featherlog.words import (
     DEMO_NOTICE,
     RECORD_CAUTION,
-    STOP_AND_CALL,
     THIS_FRACTION_ONLY,
     figure,
     meterset,
@@ -144,12 +144,20 @@ def test_the_first_fraction_claims_nothing_about_a_fraction_before(first_day: Da
 def test_a_stop_page_says_stop_and_why_and_holds_nothing_to_set(stop_day: DayView) -> None:
     data = shift_sheet(stop_day)
     text = whole_text(data)
-    assert squeezed(STOP_AND_CALL) in text
+    assert squeezed(stop_day.call) in text
+    assert squeezed(stop_day.raised_risk[0]) in text
     assert all(squeezed(reason) in text for reason in stop_day.stop_reasons)
     assert max(run.size for run in page_runs(data)[0]) > 90
     settings = {fact for fact in numbers(stop_day) if fact not in {"0.0", "7.1"}}
     assert [fact for fact in settings if fact in text] == []
     assert "POSITIONB" not in text
+
+
+def test_absolute_targets_stand_with_their_fields(shift_day: DayView) -> None:
+    words = "TABLE to lateral +0.3, longitudinal +101.2, vertical −12.0 cm"
+    first = replace(shift_day.fields[0], target=TableTargetView(0.3, 101.2, -12.0, words))
+    sheet = shift_sheet(replace(shift_day, fields=(first, *shift_day.fields[1:])))
+    assert squeezed(words) in whole_text(sheet)
 
 
 def test_a_complete_fraction_holds_nothing_to_set(no_shift_day: DayView) -> None:
