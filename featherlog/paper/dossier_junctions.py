@@ -97,4 +97,4 @@ def _mismatches(setting: JunctionSetting, width: float) -> Table:
                     strong(mismatch_as_set(each)),
                 ]
             )
-    return ruled(heads, rows, width, (42, 16, 16, 21, 31), numbers_from=1)
+    return ruled(heads, rows, width, (36, 15, 15, 20, 40), numbers_from=1)

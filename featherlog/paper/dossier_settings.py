@@ -15,6 +15,8 @@ from featherlog.paper.style import grouped, para
 from featherlog.words import figure, meterset, table_move
 
 if TYPE_CHECKING:
+    from collections.abc import Iterator
+
     from reportlab.platypus import Flowable, Table
 
     from featherlog.junction.design import Course
@@ -34,12 +36,16 @@ _LEAVES = "leaf edges belong to the plan: not set by hand"
 
 def position_block(course: Course, position: PositionSettings, width: float) -> list[Flowable]:
     """Return the settings of one position, its borders and what is left at each junction."""
-    key = "Bold: as set. Below: exact, before rounding. IEC 61217."
+    key = (
+        "Bold: as set. Below: exact, before rounding. IEC 61217. Mismatch: of the worst pair of "
+        "beams, then the worst of the other sign."
+    )
     body = [
         *section(f"POSITION {position.label}"),
         para(safe(key), style.SMALL),
         _settings(position, width),
         space(3),
+        *(para(safe(line)) for line in _beside_set(position)),
         *(para(safe(_border(border))) for border in position.borders),
     ]
     for junction in course.junctions:
@@ -75,8 +81,6 @@ def _beam(beam: BeamSetting) -> list[Any]:
     name = [para(strong(beam.beam)), para(safe(beam.energy), style.SMALL)]
     if _by_leaves(beam):
         name.append(para(safe(_LEAVES), style.SMALL))
-    if beside := angles_beside_set(beam):
-        name.append(para(safe(beside), style.SMALL))
     return [
         name,
         para(safe(figure(beam.gantry_deg)), style.VALUE),
@@ -106,6 +110,12 @@ def _pair(as_set: float, exact: float) -> list[Flowable]:
         para(strong(figure(as_set)), style.VALUE),
         para(safe(figure(exact, _EXACT_DECIMALS, _EXACT_DECIMALS)), style.SMALL_RIGHT),
     ]
+
+
+def _beside_set(position: PositionSettings) -> Iterator[str]:
+    for beam in (beam for field in position.treated for beam in field.beams):
+        if beside := angles_beside_set(beam):
+            yield f"{beam.beam}, {beside}."
 
 
 def _border(border: BorderSetting) -> str:
