@@ -16,7 +16,7 @@ from featherlog.words import signed
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterator
 
-    from featherlog.junction.design import Position
+    from featherlog.junction.design import Course, Position
     from featherlog.junction.machine import Machine, Range
     from featherlog.junction.placing import Chain, PlacedBeam, Task
 
@@ -52,7 +52,7 @@ def limit_faults(task: Task, chain: Chain) -> tuple[Fault, ...]:
         if field.field.earlier is None
         for beam in field.beams
         for fault in (
-            *_jaw_faults(task.machine, beam),
+            *_jaw_faults(task.machine, beam, _still(task.course, index, beam)),
             *_angle_faults(task.machine, beam, turned=index in following),
         )
     )
@@ -123,7 +123,17 @@ def _offset(value_cm: float) -> str:
     return f"{signed(value_cm, 2, 6)} cm"
 
 
-def _jaw_faults(machine: Machine, placed: PlacedBeam) -> Iterator[Fault]:
+def _still(course: Course, index: int, placed: PlacedBeam) -> set[Jaw]:
+    """Return the jaws that no offset moves: side jaws, and those set by their border's reach."""
+    still = set(Jaw) - {placed.superior.jaw, placed.inferior.jaw}
+    if index == 0 and course.superior_border.point_cm is None:
+        still.add(placed.superior.jaw)
+    if index == len(course.fields) - 1 and course.inferior_border.point_cm is None:
+        still.add(placed.inferior.jaw)
+    return still
+
+
+def _jaw_faults(machine: Machine, placed: PlacedBeam, still: set[Jaw]) -> Iterator[Fault]:
     settings = placed.jaws
     ends = (placed.superior.jaw, placed.inferior.jaw)
     for jaw, value in settings.items():
@@ -134,20 +144,20 @@ def _jaw_faults(machine: Machine, placed: PlacedBeam) -> Iterator[Fault]:
             yield Fault(
                 f"jaw {jaw} of beam {placed.beam.name} would stand at {signed(value, 2)} cm, "
                 f"beyond its travel {_range(travel)} cm",
-                fixed=jaw not in ends,
+                fixed=jaw in still,
             )
     for low, high in ((Jaw.X1, Jaw.X2), (Jaw.Y1, Jaw.Y2)):
         opening = settings[high] - settings[low]
         if opening <= 0:
             yield Fault(
                 f"jaws {low} and {high} of beam {placed.beam.name} would close on each other",
-                fixed=low not in ends,
+                fixed={low, high} <= still,
             )
         elif opening > machine.largest_opening_cm + 1e-9:
             yield Fault(
                 f"jaws {low} and {high} of beam {placed.beam.name} would open {opening:.2f} cm, "
                 f"wider than {machine.largest_opening_cm:.2f} cm",
-                fixed=low not in ends,
+                fixed={low, high} <= still,
             )
 
 

@@ -204,8 +204,10 @@ def with_beams(
         (with_beams(side_jaws_cm=(-5.0, 5.0)), machine(travel={Jaw.X1: Range(-4, 0)})),
         (with_beams(side_jaws_cm=(6.0, 5.0)), machine()),
         (with_beams(side_jaws_cm=(-50.0, 50.0)), machine()),
+        # The outer jaws of both fields stand 15 cm from their axis, by their borders' reach.
+        (with_beams(), machine(travel={Jaw.Y2: Range(-60, 14)})),
     ],
-    ids=["gantry", "side jaw", "side jaws closed", "side jaws too wide"],
+    ids=["gantry", "side jaw", "side jaws closed", "side jaws too wide", "reach"],
 )
 def test_what_no_offset_changes_starts_no_search(
     of: Course, on: Machine, monkeypatch: pytest.MonkeyPatch
