@@ -1,7 +1,8 @@
 """An owner of the tables switches the triggers off and changes the ledger: it is found.
 
 Every column of every entry, one character at a time: up to a hundred places of each value in the
-long form, the first and the last in the short one. Then the same for a cut tail, which only an earlier head can show.
+long form, the first and the last in the short one. And a cut tail, which only an earlier head can
+show.
 """
 
 from __future__ import annotations
