@@ -21,12 +21,30 @@ _SILENT = ("signed_by", "after", "next_date", "next_fraction", "next_position", 
 
 def entry_words(entry: Entry) -> str:
     """Return what an entry says in a phrase: which fraction, revision or departure, and why."""
-    return _PHRASES.get(entry.kind, _anything)(entry.content)
+    return content_words(entry.kind, entry.content)
+
+
+def content_words(kind: str, content: Mapping[str, Any]) -> str:
+    """Return what an entry of a kind says with its content; see ``entry_words``."""
+    return _PHRASES.get(kind, _anything)(content)
 
 
 def _fraction(content: Mapping[str, Any]) -> str:
     late = ", entered late" if content.get("late") else ""
     return f"fraction {content['fraction']}{late}"
+
+
+def _confirmation(content: Mapping[str, Any]) -> str:
+    """Return the fraction with everything that was read back before it."""
+    read = [
+        f"{one['name']} read as {signed(one['read_cm'])} cm (planned {signed(one['planned_cm'])})"
+        for one in content.get("readings", ())
+    ]
+    read += [
+        f"{one['side']} gap at {one['junction']} {signed(one['gap_cm'], 2)} cm"
+        for one in content.get("gaps", ())
+    ]
+    return ", ".join([_fraction(content), *read])
 
 
 def _correction(content: Mapping[str, Any]) -> str:
@@ -72,7 +90,7 @@ def _value(name: str, value: object) -> str:
 
 
 _PHRASES: dict[str, Callable[[Mapping[str, Any]], str]] = {
-    Kind.FRACTION_CONFIRMED: _fraction,
+    Kind.FRACTION_CONFIRMED: _confirmation,
     Kind.FRACTION_RECORDED: _fraction,
     Kind.RECORD_CORRECTED: _correction,
     Kind.DESIGN_PREPARED: _revision,

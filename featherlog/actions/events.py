@@ -7,6 +7,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
 from featherlog.actions.desk import at_desk
+from featherlog.actions.entry_words import content_words
 from featherlog.errors import NotFoundError
 from featherlog.store import queries
 from featherlog.store.entry import Kind
@@ -20,13 +21,14 @@ if TYPE_CHECKING:
 
 @dataclass(frozen=True, slots=True)
 class EventLine:
-    """One event; ``content`` is what its entry says, units in the keys, without the signers."""
+    """One event: in ``words``, and in ``content`` as its entry says it, without the signers."""
 
     entry: int
     at: str
     kind: str
     fraction: int | None
     signed_by: tuple[str, ...]
+    words: str
     content: dict[str, Any]
 
 
@@ -71,4 +73,5 @@ def physics_present(events: Iterable[EventRow], fraction: int, on: date) -> bool
 def _line(event: EventRow) -> EventLine:
     content = json.loads(event.content)
     signers = tuple(content.pop("signed_by", ()))
-    return EventLine(event.entry, event.at, event.kind, event.fraction, signers, content)
+    said = content_words(event.kind, content)
+    return EventLine(event.entry, event.at, event.kind, event.fraction, signers, said, content)

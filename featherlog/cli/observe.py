@@ -237,24 +237,8 @@ def events(course: CourseKey, json: Json = False, database: Database = None) -> 
 
 
 def _event(line: EventLine) -> str:
-    of = f" (fraction {line.fraction})" if line.fraction else ""
-    facts = [
-        _fact(name, value)
-        for name, value in line.content.items()
-        if name != "fraction" and isinstance(value, str | int | float)
-    ]
-    return wrapped(
-        f"{line.entry}. {line.at} {line.kind}{of}: {', '.join([*facts, ''])}"
-        f"signed by {' and '.join(line.signed_by)}"
-    )
-
-
-def _fact(name: str, value: object) -> str:
-    from featherlog import words
-
-    if isinstance(value, int | float) and name.endswith("_cm"):
-        return f"{name.removesuffix('_cm')} {words.signed(value)} cm"
-    return f"{name.replace('_', ' ')} {value}"
+    signed = f"signed by {' and '.join(line.signed_by)}"
+    return wrapped(f"{line.entry}. {line.at} {line.kind}: {line.words}; {signed}")
 
 
 def register(app: typer.Typer) -> None:

@@ -27,6 +27,7 @@ from featherlog.actions.designs import approve, check, prepare
 from featherlog.actions.desk import at_desk, practice_time
 from featherlog.actions.observations import attest_presence, note_imager, read_table
 from featherlog.actions.policy import set_policy
+from featherlog.actions.review import review
 from featherlog.actions.today import due_list, today
 from featherlog.errors import InputError, RefusedError
 from featherlog.exchange.template import POLICY_TEMPLATE
@@ -137,6 +138,11 @@ class TestReadBackAtAShift:
         assert last.content["gaps"] == [
             {"junction": "mid thigh", "side": "anterior", "gap_cm": 2.3}
         ]
+        changes = {one.kind: one.words for one in review(strict.database, THIGH).week.changes}
+        assert changes[Kind.FRACTION_CONFIRMED][-1] == (
+            "fraction 6, AP upper:Y1 read as −15.0 cm (planned −15.0), anterior gap at mid thigh "
+            "+2.30 cm"
+        )
 
     def test_a_value_that_stays_does_not_show_the_shift(self, strict: Program) -> None:
         fault = _refused(

@@ -57,11 +57,11 @@ def test_events_are_listed_with_their_figures_and_signers(run: Run) -> None:
     ]
     text = " ".join(run("events", THIGH).out.split())
     assert (
-        "image shift (fraction 1): field upper thigh, lateral 0.0 cm, longitudinal −0.5 cm, "
-        "vertical +0.25 cm, signed by Ash Plover" in text
+        "image shift: field upper thigh, fraction 1, lateral 0.0 cm, longitudinal −0.5 cm, "
+        "vertical +0.25 cm; signed by Ash Plover" in text
     )
-    assert "physics present (fraction 1): signed by Rowan Finch" in text
-    assert "marks redrawn: position A, reason faded, signed by Ash Plover" in text
+    assert "physics present: fraction 1; signed by Rowan Finch" in text
+    assert "marks redrawn: position A, faded; signed by Ash Plover" in text
 
 
 def test_fields_shifted_apart_are_pointed_out_beside_the_data(run: Run) -> None:
