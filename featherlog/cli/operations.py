@@ -1,4 +1,4 @@
-"""Keeping the database safe: backup, restore, health."""
+"""Keeping the database safe: backup, restore, health, what roles may do."""
 
 from __future__ import annotations
 
@@ -79,6 +79,26 @@ def health(json: Json = False, database: Database = None) -> None:
         raise IntegrityError(f"the database is not sound: {failed}")
 
 
+def grants(
+    recording: Annotated[
+        str, typer.Option("--recording", metavar="ROLE", help="Who records; reads as well.")
+    ],
+    reading: Annotated[
+        str | None,
+        typer.Option("--reading", metavar="ROLE", help="Who only reads.", show_default=False),
+    ] = None,
+    database: Database = None,
+) -> None:
+    """Print the SQL that lets roles of PostgreSQL work without owning the tables.
+
+    \b
+    Example: featherlog database grants --recording featherlog > grants.sql
+    """
+    from featherlog.actions.grants import grants as action
+
+    show(action(database, recording=recording, reading_role=reading))
+
+
 def _line(grade: str, name: str, text: str) -> str:
     import textwrap
 
@@ -88,5 +108,5 @@ def _line(grade: str, name: str, text: str) -> str:
 
 def register(group: typer.Typer) -> None:
     """Put these commands into the group of database commands."""
-    for command in (backup, restore, health):
+    for command in (backup, restore, health, grants):
         group.command()(command)

@@ -35,6 +35,9 @@ _MIGRATE = ("PRAGMA foreign_keys = OFF", "BEGIN IMMEDIATE")
 # One arbitrary number, shared by every featherlog that migrates the same PostgreSQL database.
 _MIGRATION_LOCK = 7_145_300_214
 
+# PostgreSQL's code for a privilege that is missing.
+_NOT_ALLOWED = "42501"
+
 
 def default_url() -> str:
     """Return the database to use when none is named.
@@ -118,8 +121,9 @@ def writing(engine: Engine) -> Iterator[Connection]:
             connection.exec_driver_sql(
                 f"SET LOCAL lock_timeout = {max(1, int(BUSY_SECONDS * 1000))}"
             )
-            # Readers pass this lock, other writers wait: the last number stays the last.
-            connection.exec_driver_sql("LOCK TABLE ledger_entry IN EXCLUSIVE MODE")
+            # Readers pass this lock, other writers wait: the last number stays the last. It needs
+            # UPDATE on its table, which on the ledger nobody but its owner shall have.
+            connection.exec_driver_sql("LOCK TABLE policy IN EXCLUSIVE MODE")
         yield connection
 
 
@@ -224,7 +228,13 @@ def masked(url: URL) -> str:
 def _sentence(url: URL, error: DBAPIError) -> str:
     # The driver's first line says what; those after it may quote values of a row.
     lines = str(error.orig).strip().splitlines()
-    return f"The database {masked(url)} cannot do this: {lines[0] if lines else 'no reason given'}."
+    reason = lines[0] if lines else "no reason given"
+    if getattr(error.orig, "sqlstate", None) == _NOT_ALLOWED:
+        return (
+            f"The database {masked(url)} does not let this role do this ({reason}); who reads "
+            "cannot record, and only the owner changes tables: see `featherlog database grants`."
+        )
+    return f"The database {masked(url)} cannot do this: {reason}."
 
 
 def _file_url(path: Path) -> str:
