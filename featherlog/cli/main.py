@@ -20,7 +20,10 @@ from featherlog.cli import (
     setup,
 )
 from featherlog.cli.output import remark, show, write_any_terminal
-from featherlog.errors import FeatherlogError
+from featherlog.errors import FeatherlogError, InputError
+
+# So much of a word is repeated in a message.
+_SHOWN = 60
 
 app = typer.Typer(
     name="featherlog",
@@ -53,10 +56,21 @@ def main(
         show(context.get_help())
 
 
+def _check_words() -> None:
+    # Bytes of the shell that are no text could be stored nowhere, and break whoever looks for them.
+    for word in sys.argv[1:]:
+        try:
+            word.encode()
+        except UnicodeEncodeError:
+            shown = ascii(word[:_SHOWN])
+            raise InputError(f"{shown} is not text in UTF-8; write it in UTF-8") from None
+
+
 def run() -> None:
     """Run the command line; failures become one sentence and an exit code."""
     write_any_terminal()
     try:
+        _check_words()
         app(prog_name="featherlog")
     except FeatherlogError as error:
         remark("\n".join(f"featherlog: {line}" for line in str(error).splitlines()))
@@ -64,8 +78,14 @@ def run() -> None:
     except Exception as error:
         if os.environ.get("FEATHERLOG_DEBUG"):
             raise
-        remark(
-            f"featherlog: the program failed ({type(error).__name__}); `featherlog database "
-            "status` shows whether anything was written, `featherlog --debug ...` the details."
-        )
+        remark(f"featherlog: {_failure(error)}")
         sys.exit(FeatherlogError.exit_code)
+
+
+def _failure(error: Exception) -> str:
+    if isinstance(error, OSError) and error.filename is not None:
+        return f"{str(error.filename)[:_SHOWN]!r} cannot be used: {error.strerror}"
+    return (
+        f"the program failed ({type(error).__name__}); `featherlog database status` shows whether "
+        "anything was written, `featherlog --debug ...` the details."
+    )
