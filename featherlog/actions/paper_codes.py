@@ -137,6 +137,7 @@ def _read(code: str) -> str:
     plain = code.strip().upper().replace("-", "").translate(_MISREAD)
     if len(plain) != _LENGTH or not set(plain) <= _LETTERS:
         raise InputError(
-            f"CODE is {code!r}, but a page's code is eight letters and figures, such as K7Q2-M3ZD"
+            f"the page's code is {code!r}, but a code has eight letters and figures, such as "
+            "K7Q2-M3ZD"
         )
     return f"{plain[:4]}-{plain[4:]}"

@@ -120,7 +120,7 @@ def test_an_unknown_code_is_told(department: Program) -> None:
 
 @pytest.mark.parametrize("code", ["", "AAAA", "AAAA-AAAA-AAAA", "AAAA-AAA9"])
 def test_what_is_no_code_is_refused(department: Program, code: str) -> None:
-    with pytest.raises(InputError, match="a page's code is eight letters and figures"):
+    with pytest.raises(InputError, match="but a code has eight letters and figures"):
         _check(department, code)
 
 
