@@ -168,6 +168,7 @@ def confirmed_text(view: DayView) -> str:
         f"POSITION {view.position}",
         *(junction.words for junction in view.junctions),
         *(wrapped(f"{field.field}: {move}") for field in view.fields for move in field.orders),
+        *(wrapped(f"{one.field}: {one.target.words}") for one in view.fields if one.target),
         "After the beam: featherlog record " + view.heading.course,
     ]
     return "\n".join(lines)

@@ -28,6 +28,8 @@ from featherlog.actions.desk import at_desk, practice_time
 from featherlog.actions.observations import attest_presence, note_imager, read_table
 from featherlog.actions.policy import set_policy
 from featherlog.actions.review import review
+from featherlog.actions.stored import load
+from featherlog.actions.table_reference import TableReading, target_cm
 from featherlog.actions.today import due_list, today
 from featherlog.errors import InputError, RefusedError
 from featherlog.exchange.template import POLICY_TEMPLATE
@@ -242,6 +244,23 @@ class TestTableOnly:
             )
         value = {"upper thigh:longitudinal": 102.2}
         assert _confirm(department, SHIFT_DAY, **read, readings_cm=value).fraction == 6
+
+
+def test_targets_are_the_same_whichever_field_was_read_at_whichever_position(
+    department: Program, tmp_path: Path
+) -> None:
+    _couch_course(department, tmp_path, "FH-2049")
+    with at_desk(department.database) as desk:
+        plan = load(desk, "FH-2049").plan
+    places = [(one, field.field) for one in plan.positions for field in one.treated]
+    origin = TableReading("upper thigh", "A", 1, 0.3, 101.2, -12.0, 1, "", ())
+    known = {(at.label, name): target_cm(plan, origin, at, name) for at, name in places}
+    assert len(set(known.values())) == len(places)
+    for read_at, read in places:
+        reading = TableReading(read, read_at.label, 1, *known[read_at.label, read], 1, "", ())
+        for at, name in places:
+            found = target_cm(plan, reading, at, name)
+            assert found == pytest.approx(known[at.label, name])
 
 
 class TestStops:

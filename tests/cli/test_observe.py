@@ -34,6 +34,8 @@ def test_a_table_reading_gives_the_targets_of_the_day(run: Run) -> None:
     day = run("today", THIGH)
     assert "TABLE to lateral +0.3, longitudinal +130.2, vertical −12.0 cm" in day.out
     assert "Table positions are absolute, by the read-out of upper thigh at A" in day.out
+    confirmed = run("confirm", THIGH, *PAIR).out
+    assert "lower thigh: TABLE to lateral +0.3, longitudinal +130.2, vertical −12.0 cm" in confirmed
     target = run("today", THIGH, "--json").json["fields"][1]["target"]
     assert target["longitudinal_cm"] == pytest.approx(130.2)
 
