@@ -44,8 +44,10 @@ def copy_file(source: Path, target: Path) -> None:
 
 
 def _copy(source: Path, target: Path) -> None:
+    # Without a mode of its own a file that is not there would be made.
+    there = f"{source.absolute().as_uri()}?mode=rw"
     with (
-        closing(sqlite3.connect(source, timeout=engine.BUSY_SECONDS)) as old,
+        closing(sqlite3.connect(there, timeout=engine.BUSY_SECONDS, uri=True)) as old,
         closing(sqlite3.connect(target)) as new,
     ):
         # A lock of our own first: the backup itself would wait for a busy file without end.

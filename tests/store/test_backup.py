@@ -89,6 +89,11 @@ class TestBackup:
                 back_up(file, tmp_path / "busy.backup")
         assert names(tmp_path) == {file.name}
 
+    def test_a_file_that_is_not_there_is_not_made(self, tmp_path: Path) -> None:
+        with pytest.raises(StoreError, match=r"cannot be copied .* unable to open"):
+            back_up(tmp_path / "none.db", None)
+        assert names(tmp_path) == set()
+
     @pytest.mark.parametrize(
         ("statement", "fault"),
         [
