@@ -37,13 +37,14 @@ STRIP_COUNT = "strip coverage so far, a count and not a dose"
 
 def dose_words(dose: PlaceDose) -> str:
     """Say what a departure did to the dose of one place, in the fraction and in the course."""
-    width = "" if dose.width_cm is None else f"{figure(dose.width_cm)} cm wide, "
-    return (
-        f"{dose.place}: {width}{figure(dose.fraction_gy, 2)} Gy in this fraction "
-        f"({dose.fraction_percent:.0f} %), {figure(dose.total_gy, 2)} of "
-        f"{figure(dose.total_planned_gy, 2)} Gy in the course ({dose.total_percent:.1f} %), "
-        "ideal edges"
+    said = (
+        f"{figure(dose.fraction_gy, 2)} Gy in this fraction ({dose.fraction_percent:.0f} %), "
+        f"{figure(dose.total_gy, 2)} of {figure(dose.total_planned_gy, 2)} Gy in the course "
+        f"({dose.total_percent:.1f} %)"
     )
+    if dose.width_cm is None:
+        return f"{dose.place}: {said}"
+    return f"{dose.place}: {figure(dose.width_cm)} cm wide, {said}, ideal edges"
 
 
 def departure_notes(line: DepartureLine) -> Iterator[str]:
