@@ -163,7 +163,7 @@ def due_in(
         next_fraction=number,
         step=step + 1,
         steps=len(ends),
-        position=next(iter(begun_at.values()), fraction.steps[step].position),
+        position=_place(state, begun_at, fraction.steps[step].position, whole=len(ends) == 1),
         part_delivered=bool(begun_at),
         begun_at=begun_at,
         due={name: max(0.0, ends[step] - part) for name, part in parts.items()},
@@ -171,6 +171,15 @@ def due_in(
         expected=ends[step],
         begun_beams=frozenset(here),
     )
+
+
+def _place(
+    state: FractionState | None, begun_at: Mapping[str, str], planned: str, *, whole: bool
+) -> str:
+    """Return where the step is to be treated: where it began, wherever it went on since."""
+    if state is not None and begun_at and whole:
+        return state.began_at
+    return next(iter(begun_at.values()), planned)
 
 
 def _begun_at(plan: Plan, state: FractionState, beams: set[str]) -> dict[str, str]:

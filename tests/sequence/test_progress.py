@@ -50,6 +50,12 @@ def test_a_broken_fraction_keeps_its_number_and_the_position_where_it_began(plan
     assert told(standing(plan, *given)) == due(2, 3, "A", part_delivered=True)
 
 
+def test_the_remainder_stays_where_the_fraction_began_wherever_it_went_on(plan: Plan) -> None:
+    gone_on = deliver(plan, 1, part=0.25, **dict.fromkeys(FIELDS, "B"))
+    given = [deliver(plan, 1, part=0.25), gone_on]
+    assert told(standing(plan, *given)) == due(0, 1, "A", part_delivered=True)
+
+
 def test_parts_that_add_up_complete_a_fraction(plan: Plan) -> None:
     first, rest = deliver(plan, 1, part=0.4), deliver(plan, 1, part=0.6)
     assert told(standing(plan, first, rest)) == due(1, 2, "A")
