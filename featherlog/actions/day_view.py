@@ -111,7 +111,8 @@ def _field_view(now: PositionSettings, index: int, before: Standing, given: _Giv
     field = now.treated[index]
     since = _table_move(_since(now, field, before), field)
     between, earlier = _between(now, index), _between_before(now, index, before)
-    begun = field.field in before.begun
+    # One that went on elsewhere has to come back to where the fraction began.
+    begun = field.field in before.begun and _label(before, field.field) == now.label
     last = "the last fraction" if given.due.step == 1 else "the last step"
     if between is None:
         orders = tuple(f"{move} since {last}" for move in since.words)

@@ -61,7 +61,7 @@ def read_table(
     def note(desk: Desk, stored: Stored) -> _Note:
         _known_field(stored, field)
         number = _fraction_read(desk, stored, fraction)
-        position = _position_of(stored, number, field)
+        position = _position_of(desk, stored, number, field)
         return _Note(
             Kind.TABLE_READ,
             {
@@ -243,10 +243,11 @@ def _confirmed(desk: Desk, stored: Stored, due: int) -> bool:
     return bool(found) and found[-1].entry > last
 
 
-def _position_of(stored: Stored, number: int, field: str) -> str:
+def _position_of(desk: Desk, stored: Stored, number: int, field: str) -> str:
     due = stored.progress
     if number == due.next_fraction:
-        return due.begun_at.get(field, due.position or "")
+        begun = {} if _confirmed(desk, stored, number) else due.begun_at
+        return begun.get(field, due.position or "")
     place = stored.states[number].last_position.get(field)
     if place is None:
         raise InputError(f"field {field!r} was not treated in fraction {number}")

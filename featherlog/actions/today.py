@@ -167,6 +167,8 @@ def _shift_words(last: Mapping[str, str], due: Progress) -> str:
     position, number = due.position, due.next_fraction
     if position is None or number is None:
         return "No fraction is left to treat."
+    if due.part_delivered and set(due.begun_at.values()) != {position}:
+        return f"Fraction {number} was begun at {position}: what remains belongs there."
     if due.part_delivered:
         begun = ", ".join(due.begun_at)
         return f"Fraction {number} was begun at {position} ({begun}): what was begun stays there."

@@ -210,6 +210,17 @@ def test_json_screen_and_sheet_hold_the_same_numbers(shift_day: tuple[Program, s
         assert word in paper
 
 
+def test_a_fraction_that_went_on_elsewhere_comes_back_to_where_it_began(
+    department: Program,
+) -> None:
+    parts = dict.fromkeys(("AP upper", "PA upper", "AP lower", "PA lower"), 25.0)
+    for place in "AB":
+        treated(department.database, THIGH, "2026-03-02", position=place, metersets_mu=parts)
+    view = _view(department, THIGH, "2026-03-02")
+    assert (view.fraction, view.position, view.shift) == (1, "A", "yes")
+    assert [(field.previous_position, field.begun) for field in view.fields] == [("B", False)] * 2
+
+
 def test_two_people_are_named_in_the_record(department: Program) -> None:
     from featherlog.actions.review import review  # noqa: PLC0415 - this test alone reviews
 
