@@ -68,7 +68,7 @@ def full(database: str) -> float:
 
 @pytest.mark.parametrize(
     ("courses", "fractions"),
-    [(1, 5), pytest.param(30, 30, marks=pytest.mark.long)],
+    [(1, 11), pytest.param(30, 30, marks=pytest.mark.long)],
     ids=["short", "long"],
 )
 def test_verify_beside_hashes_and_signatures(courses: int, fractions: int, tmp_path: Path) -> None:
