@@ -167,11 +167,11 @@ def _shift_words(last: Mapping[str, str], due: Progress) -> str:
     position, number = due.position, due.next_fraction
     if position is None or number is None:
         return "No fraction is left to treat."
-    if due.part_delivered and set(due.begun_at.values()) != {position}:
-        return f"Fraction {number} was begun at {position}: what remains belongs there."
     if due.part_delivered:
-        begun = ", ".join(due.begun_at)
-        return f"Fraction {number} was begun at {position} ({begun}): what was begun stays there."
+        begun = f" ({', '.join(due.begun_at)}): what was begun stays there."
+        stays = set(due.begun_at.values()) == {position}
+        rest = begun if stays else ": what remains belongs there."
+        return f"Fraction {number} was begun at {position}{rest}"
     if not last:
         return f"First fraction: set position {position}."
     earlier = f"fraction {number - 1}" if due.step == 1 else f"step {due.step - 1}"

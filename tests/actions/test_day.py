@@ -218,6 +218,7 @@ def test_a_fraction_that_went_on_elsewhere_comes_back_to_where_it_began(
         treated(department.database, THIGH, "2026-03-02", position=place, metersets_mu=parts)
     view = _view(department, THIGH, "2026-03-02")
     assert (view.fraction, view.position, view.shift) == (1, "A", "yes")
+    assert view.shift_words == "Fraction 1 was begun at A: what remains belongs there."
     assert [(field.previous_position, field.begun) for field in view.fields] == [("B", False)] * 2
 
 
