@@ -54,7 +54,9 @@ def _role(connection: Connection) -> HealthLine:
     user = connection.exec_driver_sql("SELECT current_user").scalar()
     if connection.exec_driver_sql(_OWNER).scalar():
         found = f"{user} owns the tables, and so could switch the append-only triggers off"
-        return HealthLine("role", WARN, found, "work as the recording role; see `featherlog database grants`")
+        return HealthLine(
+            "role", WARN, found, "work as the recording role; see `featherlog database grants`"
+        )
     return HealthLine("role", OK, f"{user} does not own the tables")
 
 
