@@ -38,6 +38,8 @@ _LEAVE_CONFIRMED = frozenset(
         Kind.DEPARTURE_DECIDED,
         Kind.TABLE_READ,
         Kind.IMAGE_SHIFT,
+        Kind.IMAGER_OUT,
+        Kind.IMAGER_BACK,
         Kind.PHYSICS_PRESENT,
         Kind.POSITION_CHECKED,
         Kind.REVIEW_SIGNED,

@@ -55,7 +55,7 @@ class Stored:
             identifiers=tuple(self.course.identifiers.items()),
             site=self.course.site,
             patient_position=self.course.patient_position.value,
-            machine=self.course.machine,
+            machine=self.row.machine if self.approved else self.course.machine,
             plan_label=self.course.plan_label,
             state=self.revision.state,
             revision=self.revision.code or f"R{self.revision.number} (not approved)",

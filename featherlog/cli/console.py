@@ -215,7 +215,7 @@ def recorded_text(result: Recorded) -> str:
         for line in result.departures
     ]
     lines.append(
-        "All prescribed fractions are complete."
+        "No further fraction is due."
         if result.next_fraction is None
         else f"Next: fraction {result.next_fraction} at position {result.next_position}, "
         f"projected {result.next_date}."

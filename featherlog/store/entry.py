@@ -124,7 +124,10 @@ def content_hash(design: object, plan: object, machine: object) -> str:
 def hash_of(entry: Entry) -> str:
     """Return the hash that ``entry`` should bear: over every field but hash and signatures."""
     fields = {name: getattr(entry, name) for name in _HASHED} | {"content": entry.text}
-    return sha256(_flat(fields).encode()).hexdigest()
+    try:
+        return sha256(_flat(fields).encode()).hexdigest()
+    except (TypeError, UnicodeError):
+        return ""  # a damaged value that is no text has no hash, and so fits none
 
 
 _HASHED = ("number", "course", "kind", "who", "role", "meaning", "at", "previous_hash")

@@ -13,6 +13,7 @@ from sqlalchemy import (
     Column,
     Double,
     ForeignKey,
+    Index,
     Integer,
     MetaData,
     Table,
@@ -151,6 +152,7 @@ course = Table(
     _one_of("state", "prepared", "checked", "approved", "returned", "complete"),
     CheckConstraint("fractions >= 1", name="fractions"),
     CheckConstraint("fractions_complete >= 0", name="fractions_complete"),
+    Index(None, "state", "next_date"),
 )
 
 revision = Table(

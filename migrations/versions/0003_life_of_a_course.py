@@ -34,6 +34,7 @@ def upgrade() -> None:
     op.create_index(op.f("ix_event_course"), "event", ["course"])
     op.add_column("course", sa.Column("paused_reason", sa.Text))
     op.add_column("course", sa.Column("ended_reason", sa.Text))
+    op.create_index(op.f("ix_course_state_next_date"), "course", ["state", "next_date"])
     op.add_column(
         "delivery", sa.Column("late", sa.Boolean, nullable=False, server_default=sa.false())
     )
@@ -57,6 +58,7 @@ def downgrade() -> None:
         departure.drop_column("decided_entry")
         departure.drop_column("decision")
     op.drop_column("delivery", "late")
+    op.drop_index(op.f("ix_course_state_next_date"), "course")
     op.drop_column("course", "ended_reason")
     op.drop_column("course", "paused_reason")
     op.drop_table("event")
