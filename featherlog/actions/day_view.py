@@ -124,6 +124,8 @@ def _field_view(now: PositionSettings, index: int, before: Standing, given: _Giv
             for move in _orders(between, earlier, field)
         )
         notes = tuple(f"part of that, since {last}: {move}" for move in since.words)
+        if not orders:
+            notes = (f"TABLE: stays as for {now.treated[index - 1].field}",)
     if begun:
         notes = ("treated already in this fraction: nothing of it moves",)
     return FieldView(

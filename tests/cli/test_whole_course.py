@@ -54,7 +54,7 @@ BREAST = Life(
     positions="ABCABCABCABCABC",
     days=_DAYS[2:],
     dose_gy=40.05,
-    first_table_words="TABLE does not move",
+    first_table_words="TABLE: stays as for supraclavicular",
     broken=(4, "medial tangent", 100.0),
     apart=(8, "tangents", "A"),
 )
