@@ -12,8 +12,8 @@ from typing import TYPE_CHECKING, Any
 
 from featherlog.actions.confirm import measured
 from featherlog.actions.delivered import beams_of, meterset_percent, states_of
+from featherlog.actions.next_date import projected_date
 from featherlog.actions.stored import delivered_beams
-from featherlog.sequence.calendar import next_date_after
 from featherlog.sequence.departures import (
     COHERENT,
     Departure,
@@ -193,7 +193,7 @@ def _next_date(desk: Desk, occasion: Occasion, after: Progress) -> str | None:
     given |= {occasion.fraction} if occasion.at.date() == today else set()
     if after.next_fraction in given:
         return today.isoformat()  # what remains of a fraction is due the same day
-    return next_date_after(course.sequence, course.fractions_a_day, today, len(given)).isoformat()
+    return projected_date(desk, course, given)
 
 
 def _without(values: dict[str, Any], key: str) -> dict[str, Any]:

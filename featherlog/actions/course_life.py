@@ -2,19 +2,18 @@
 
 from __future__ import annotations
 
-import json
 from dataclasses import replace
-from datetime import date, timedelta
+from datetime import date
 from typing import TYPE_CHECKING
 
 from featherlog.actions.machines import machine_named
+from featherlog.actions.next_date import missed_days, projected_date
 from featherlog.actions.signing import signing_desk
 from featherlog.actions.stored import Stored, load
 from featherlog.actions.typed import required
 from featherlog.errors import InputError, RefusedError
 from featherlog.policy import Act
-from featherlog.sequence.calendar import is_treatment_day, next_date_after
-from featherlog.store import queries
+from featherlog.sequence.calendar import is_treatment_day
 from featherlog.store.entry import Kind
 
 if TYPE_CHECKING:
@@ -172,27 +171,15 @@ def _missed_day(desk: Desk, stored: Stored, text: str | None) -> date:
         raise RefusedError(f"{day} is no treatment day of course {key}")
     if len(given) >= stored.course.fractions_a_day:
         raise RefusedError(f"course {key} was treated on {day}: fraction {max(given)}")
-    if day.isoformat() in _missed_days(desk, key):
+    if day.isoformat() in missed_days(desk, key):
         raise RefusedError(f"{day} is on record as missed already")
     return day
 
 
-def _missed_days(desk: Desk, key: str) -> set[str]:
-    return {
-        json.loads(row.content)["date"]
-        for row in queries.events(desk.connection, key)
-        if row.kind == Kind.FRACTION_MISSED
-    }
-
-
 def _next_date(desk: Desk, stored: Stored, *missed: str) -> str:
-    """Return the next treatment day from today on that was not missed."""
-    course, first = stored.course, desk.now.date()
-    known = {*missed, *_missed_days(desk, stored.row.key)}
-    while first.isoformat() in known:
-        first += timedelta(days=1)
-    given = {row.fraction for row in stored.deliveries if row.at[:10] == first.isoformat()}
-    return next_date_after(course.sequence, course.fractions_a_day, first, len(given)).isoformat()
+    today = desk.now.date().isoformat()
+    given = {row.fraction for row in stored.deliveries if row.at[:10] == today}
+    return projected_date(desk, stored.course, given, missed)
 
 
 def _date(text: str) -> date:

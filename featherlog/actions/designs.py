@@ -8,13 +8,13 @@ import msgspec
 
 from featherlog import words
 from featherlog.actions.machines import machine_named
+from featherlog.actions.next_date import projected_date
 from featherlog.actions.signing import signing_desk
 from featherlog.actions.stored import Stored, load, load_latest
 from featherlog.actions.typed import printable_everywhere, required
 from featherlog.errors import RefusedError
 from featherlog.exchange.design_file import named_machine, read_design
 from featherlog.policy import Act
-from featherlog.sequence.calendar import next_date_after
 from featherlog.sequence.planning import plan_course
 from featherlog.sequence.revision import continued, revision_faults, unfinished_faults
 from featherlog.store import queries
@@ -166,7 +166,7 @@ def _next_date(desk: Desk, stored: Stored) -> str | None:
     course, today = stored.course, desk.now.date()
     given = {row.fraction for row in stored.deliveries if row.at[:10] == today.isoformat()}
     given.discard(stored.progress.next_fraction)
-    return next_date_after(course.sequence, course.fractions_a_day, today, len(given)).isoformat()
+    return projected_date(desk, course, given)
 
 
 def send_back(

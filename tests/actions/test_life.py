@@ -524,3 +524,17 @@ def _revise(
 def _approve(department: Program, day: str, key: str = THIGH) -> None:
     with practice_time(moment(day)):
         approve(department.database, key, by=by(PHYSICIAN), verified_by=by(CHECKER))
+
+
+def test_a_missed_day_does_not_come_back_after_a_late_record(department: Program) -> None:
+    treated(department.database, THIGH, "2026-03-02")
+    with practice_time(moment("2026-03-04")):
+        life.miss(department.database, THIGH, by=by(THERAPIST), day=None, reason="machine down")
+    late = recorded(
+        department.database,
+        THIGH,
+        "2026-03-04T10:00:00",
+        position="A",
+        treated_at="2026-03-03T09:00",
+    )
+    assert (late.next_fraction, late.next_date) == (3, "2026-03-05")
