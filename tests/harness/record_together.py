@@ -1,6 +1,7 @@
-"""Many processes that record at the same instant. Usage: record_together.py URL COURSE...
+"""Many processes that record at the same instant. Usage: record_together.py URL WHERE COURSE...
 
-One process for each course named. Each prints ``ok COURSE ENTRY SECONDS`` or ``error COURSE WHY``.
+WHERE is a position, or ``confirmed`` for where the fraction was confirmed. One process for each
+course named. Each prints ``ok COURSE ENTRY SECONDS`` or ``error COURSE WHY``.
 """
 
 from __future__ import annotations
@@ -20,17 +21,18 @@ from featherlog.errors import FeatherlogError
 DAY = "2026-03-02"
 
 
-def record(url: str, key: str) -> str:
+def record(url: str, where: str, key: str) -> str:
     start = time.perf_counter()
+    position = None if where == "confirmed" else where
     try:
-        done = recorded(url, key, DAY, position="A", reason="harness")
+        done = recorded(url, key, DAY, position=position, reason="harness" if position else "")
     except FeatherlogError as error:
         return f"error {key} {error}"
     return f"ok {key} {done.entry} {time.perf_counter() - start:.3f}"
 
 
 def main() -> None:
-    url, *keys = sys.argv[1:]
+    url, where, *keys = sys.argv[1:]
     status(url)  # loads the driver here and not in every process
     gate, opener = os.pipe()
     recorders = []
@@ -39,7 +41,7 @@ def main() -> None:
         if recorder == 0:
             os.close(opener)
             os.read(gate, 1)  # returns when the gate is closed on the other side, for all at once
-            os.write(1, f"{record(url, key)}\n".encode())
+            os.write(1, f"{record(url, where, key)}\n".encode())
             os._exit(0)
         recorders.append(recorder)
     os.close(opener)

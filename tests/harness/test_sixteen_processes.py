@@ -1,4 +1,4 @@
-"""Sixteen processes record at the same instant, each another course: all succeed in time."""
+"""Sixteen processes record at once: each another course, or all of them one fraction."""
 
 from __future__ import annotations
 
@@ -7,7 +7,7 @@ import sys
 from pathlib import Path
 
 import pytest
-from department import THIGH, add_course, build
+from department import THIGH, add_course, build, confirmed
 
 from featherlog.store.engine import BUSY_SECONDS, open_engine, reading
 from featherlog.store.verify import verify
@@ -16,10 +16,9 @@ TOGETHER = Path(__file__).with_name("record_together.py")
 KEYS = (THIGH, *(f"FH-31{number:02}" for number in range(15)))
 
 
-def together(url: str, *keys: str) -> list[list[str]]:
-    done = subprocess.run(
-        [sys.executable, str(TOGETHER), url, *keys], check=True, capture_output=True, text=True
-    )
+def together(url: str, where: str, *keys: str) -> list[list[str]]:
+    command = [sys.executable, str(TOGETHER), url, where, *keys]
+    done = subprocess.run(command, check=True, capture_output=True, text=True)
     return [line.split(maxsplit=3) for line in done.stdout.splitlines()]
 
 
@@ -30,7 +29,7 @@ def test_on_sixteen_courses(empty_database_url: str, backend: str, rounds: int) 
     build(empty_database_url)
     for key in KEYS[1:]:
         add_course(empty_database_url, key)
-    answers = [answer for _ in range(rounds) for answer in together(empty_database_url, *KEYS)]
+    answers = [answer for _ in range(rounds) for answer in together(empty_database_url, "A", *KEYS)]
     assert [answer for answer in answers if answer[0] != "ok"] == []
     assert sorted(answer[1] for answer in answers) == sorted(KEYS * rounds)
     entries = sorted(int(answer[2]) for answer in answers)
@@ -42,3 +41,16 @@ def test_on_sixteen_courses(empty_database_url: str, backend: str, rounds: int) 
     )
     with reading(open_engine(empty_database_url)) as connection:
         assert verify(connection).fault == ""
+
+
+def test_on_one_fraction(empty_database_url: str, backend: str) -> None:
+    build(empty_database_url)
+    confirmed(empty_database_url, THIGH, "2026-03-02")
+    answers = together(empty_database_url, "confirmed", *[THIGH] * 16)
+    others = [" ".join(answer[2:]) for answer in answers if answer[0] != "ok"]
+    assert len(others) == 15
+    told = "fraction 1 was recorded at 2026-03-02T09:00:00+01:00 by Ash Plover with Maple Teal"
+    assert all(told in why for why in others)
+    print(  # noqa: T201 - a harness prints its figures
+        f"\n16 processes, one fraction, {backend}: 1 recorded it, 15 were told who had and when"
+    )
