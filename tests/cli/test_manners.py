@@ -16,7 +16,7 @@ import typer
 from department import BREAST, THIGH, treated
 from program import PAIR, SCENARIO, Program, signed
 
-from featherlog.cli.main import app
+from featherlog.cli.main import CONSOLE_WORDS, app, program
 from featherlog.errors import EXIT_CODES
 from featherlog.words import CAUTION, DOSE_CAUTION
 
@@ -308,3 +308,11 @@ def begun(department: Program) -> Program:
     treated(department.database, BREAST, "2026-03-05", position="B")
     treated(department.database, BREAST, "2026-03-06", metersets_mu={"SCV anterior": 100.0})
     return department.at("2026-03-09")
+
+
+def test_the_consoles_words_are_its_commands() -> None:
+    registered = program("console").registered_commands
+    names = [
+        command.name or str(getattr(command.callback, "__name__", "")) for command in registered
+    ]
+    assert tuple(names) == CONSOLE_WORDS
